@@ -1,0 +1,132 @@
+"""Where a material is found: by bundled name, in a table, as a number, or in the open database."""
+
+from collections.abc import Mapping
+from difflib import get_close_matches
+from functools import cache
+from pathlib import Path
+
+import numpy as np
+
+from optics.errors import InputError
+from optics.media.card import read_card
+from optics.media.dispersion import Constant
+from optics.media.labtable import read_hashed
+from optics.media.material import Material
+
+__all__ = ["MaterialLike", "bundled", "bundled_names", "find"]
+
+MaterialLike = Material | str | Path | complex | Mapping[str, object]
+"""What `find` takes: a material, a name or path, a number (also complex), {n, k} or {published}."""
+
+_TABLE_SUFFIXES = (".csv", ".txt", ".dat", ".tsv")
+_SPECS = 'a bundled name, a table file, a number, { n = ..., k = ... } or { published = "shelf/book/page" }'
+
+
+def find(spec: MaterialLike, *, folder: str | Path | None = None) -> Material:
+    """The material that a specification means.
+
+    Parameters
+    ----------
+    spec
+        A `Material` (returned as it is); the name of a bundled card; the path of a CSV table, that is text with a
+        slash or ending in .csv, .txt, .dat or .tsv; a real or complex number n + i k;
+        ``{"n": ..., "k": ...}``; ``{"published": "main/Ag/Johnson"}``, a page of the open index database.
+        The constant index 1 is vacuum and counts as a gas.
+    folder
+        Where relative paths start, the working directory when None.
+
+    Raises
+    ------
+    InputError
+        When nothing is found (with the nearest names), or what is found cannot be used.
+    """
+    if isinstance(spec, Material):
+        return spec
+    if isinstance(spec, Path):
+        return _table(str(spec), folder)
+    if isinstance(spec, str):
+        return _table(spec, folder) if _is_path(spec) else bundled(spec)
+    if isinstance(spec, Mapping):
+        return _described(spec)
+    if isinstance(spec, complex | int | float | np.number) and not isinstance(spec, bool):
+        return _constant(complex(spec).real, complex(spec).imag)
+    raise InputError(f"material: found {spec!r}, expected {_SPECS}")
+
+
+def bundled_names() -> tuple[str, ...]:
+    """Names of the bundled materials, sorted."""
+    return tuple(sorted(_cards()))
+
+
+def bundled(name: str) -> Material:
+    """The bundled material of this name or alias; InputError with the nearest names when there is none."""
+    wanted = name.strip()
+    cards = _cards()
+    stem = wanted.lower() if wanted.lower() in cards else _aliases().get(wanted.lower(), "")
+    if stem:
+        return read_card(cards[stem])
+    near = get_close_matches(wanted.lower(), [*cards, *_aliases()], n=3, cutoff=0.6)
+    names = dict.fromkeys(_aliases().get(word, word) for word in near)
+    hint = f"did you mean {' or '.join(names)}?" if names else f"expected one of {', '.join(bundled_names())}"
+    raise InputError(f'material: no bundled material is called "{wanted}"; {hint} (a table ends in .csv)')
+
+
+@cache
+def _cards() -> dict[str, Path]:
+    """Cards by name. An installed package carries them inside; a source checkout has them beside the package."""
+    package = Path(__file__).resolve().parents[1]
+    folder = next((f for f in (package / "_materials", package.parent / "materials") if f.is_dir()), None)
+    if folder is None:
+        raise InputError("the bundled materials are missing; install the package again")
+    return {card.stem: card for card in folder.glob("*.toml")}
+
+
+@cache
+def _aliases() -> dict[str, str]:
+    """Card names by alias, lower case."""
+    import tomllib
+
+    headers = {stem: tomllib.loads(card.read_text(encoding="utf-8")) for stem, card in _cards().items()}
+    return {alias.lower(): stem for stem, header in headers.items() for alias in header.get("aliases", [])}
+
+
+def _is_path(spec: str) -> bool:
+    return spec.lower().endswith(_TABLE_SUFFIXES) or "/" in spec or "\\" in spec
+
+
+def _table(spec: str, folder: str | Path | None) -> Material:
+    path = Path(folder or ".") / spec
+    medium, sha256 = read_hashed(path, place=spec)
+    return Material(name=Path(spec).stem, medium=medium, source=f"table {spec}", sha256=sha256, path=str(path))
+
+
+def _described(spec: Mapping[str, object]) -> Material:
+    known = ("n", "k", "published")
+    faults = [_unknown_key(str(key), known) for key in spec if key not in known]
+    if not faults and set(spec) == {"published"}:
+        from optics.media.published import published
+
+        return published(spec["published"])
+    if not faults and "published" in spec:
+        faults = ["material: found published together with n or k, expected one or the other"]
+    if not faults and "n" not in spec:
+        faults = [f"material: found no n, expected {_SPECS}"]
+    if faults:
+        raise InputError(faults)
+    return _constant(spec["n"], spec.get("k", 0.0))
+
+
+def _unknown_key(key: str, known: tuple[str, ...]) -> str:
+    near = get_close_matches(key, known, n=1)
+    hint = f'; did you mean "{near[0]}"?' if near else ""
+    return f'material: key "{key}" is not known, expected n and k, or published{hint}'
+
+
+def _constant(n: object, k: object) -> Material:
+    try:
+        medium = Constant(n, k)  # type: ignore[arg-type]  # Constant checks
+    except InputError as error:
+        raise InputError(f"material: {fault}" for fault in error.faults) from None
+    name = f"{medium.n:.10g}" + (f"+{medium.k:.10g}i" if medium.k else "")
+    gas = medium.n == 1.0 and medium.k == 0.0  # vacuum
+    return Material(name=name, medium=medium, title="constant index", source="given as a number", gas=gas)
