@@ -1,15 +1,17 @@
 """Checking what was handed in: every fault of an object collected, each said in one line of one form."""
 
 import math
-from collections.abc import Collection, Iterator
+from collections.abc import Collection, Iterable, Iterator
 from contextlib import contextmanager
-from difflib import get_close_matches
+from difflib import SequenceMatcher
 from numbers import Real
+from typing import TypeGuard
 
 import numpy as np
 
 from optics.errors import InputError
 
+LEAST_LIKENESS = 0.6  # of a misspelt name to a valid one, as difflib measures it
 LONGEST_QUOTE = 40  # characters of a wrong value that a message shows
 
 
@@ -20,10 +22,9 @@ def found(value: object) -> str:
     if isinstance(value, bool | np.bool_):
         return f"{str(bool(value)).lower()} (true or false)"
     if isinstance(value, str):
-        quoted = value if len(value) <= LONGEST_QUOTE else value[:LONGEST_QUOTE] + "..."
-        return '"' + quoted.encode("unicode_escape").decode("ascii") + '" (text)' if value else "empty text"
+        return f"{quoted(value)} (text)" if value else "empty text"
     if isinstance(value, Real):
-        return f"{float(value):.12g}"
+        return f"{as_float(value):.12g}"
     if isinstance(value, dict):
         return "a table" if value else "an empty table"
     if isinstance(value, list | tuple | np.ndarray):
@@ -31,13 +32,29 @@ def found(value: object) -> str:
     return f"{str(value)[:LONGEST_QUOTE]} ({type(value).__name__})"
 
 
-def nearest(name: str, valid: Collection[str]) -> str:
-    """Give the cure for a name that is not known: the valid one that it most resembles, or all of them."""
-    close = get_close_matches(name.lower(), [v.lower() for v in valid], n=1, cutoff=0.6)
-    for candidate in valid:
-        if close and candidate.lower() == close[0]:
-            return f'did you mean "{candidate}"?'
-    return "valid here: " + ", ".join(valid)
+def quoted(text: str) -> str:
+    """Return text in quotes, cut when long."""
+    return f'"{text}"' if len(text) <= LONGEST_QUOTE else f'"{text[:LONGEST_QUOTE]}..."'
+
+
+def is_number(value: object) -> TypeGuard[Real]:
+    """Say whether a value is a real number; true and false are none."""
+    return isinstance(value, Real) and not isinstance(value, bool | np.bool_)
+
+
+def as_float(number: Real) -> float:
+    """Return a real number as a float, infinite when it is too large for one."""
+    try:
+        return float(number)
+    except OverflowError:
+        return math.inf
+
+
+def closest(name: str, valid: Iterable[str]) -> str | None:
+    """Return the valid name that a misspelt one most resembles, the first of several, if any does."""
+    likeness = {candidate: SequenceMatcher(None, name.lower(), candidate.lower()).ratio() for candidate in valid}
+    best = max(likeness, key=lambda candidate: likeness[candidate])
+    return best if likeness[best] >= LEAST_LIKENESS else None
 
 
 class Faults:
@@ -55,7 +72,9 @@ class Faults:
 
     def add(self, key: str, message: str) -> None:
         """Note a fault of `key` (empty when the fault is of the whole object)."""
-        self.lines.append(": ".join(part for part in (self.place, key, message) if part))
+        line = ": ".join(part for part in (self.place, key, message) if part)
+        # A fault is one line, whatever the names in the input hold.
+        self.lines.append("".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in line))
 
     @contextmanager
     def collecting(self, key: str = "") -> Iterator[None]:
@@ -65,6 +84,14 @@ class Faults:
         except InputError as error:
             for line in error.faults:
                 self.add(key, line)
+
+    @contextmanager
+    def taking_over(self) -> Iterator[None]:
+        """Note the faults of whatever refuses inside the ``with`` block, whose lines name their place already."""
+        try:
+            yield
+        except InputError as error:
+            self.lines += error.faults
 
     def settle(self) -> None:
         """Raise `InputError` with everything noted, if anything was."""
@@ -85,10 +112,10 @@ class Faults:
         """Return `value` as a float, or note why it is none and return nan."""
         kind = f"a number in {unit}" if unit else "a number"
         like = "" if example is None else f", for example {example:g}"
-        if isinstance(value, bool | np.bool_) or not isinstance(value, Real):
+        if not is_number(value):
             self.add(key, f"found {found(value)}, expected {kind}{like}{_decimal_cure(value)}")
             return math.nan
-        number = float(value)
+        number = as_float(value)
         rules = {
             "": math.isfinite(number),
             f" above {above:g}" if above is not None else "": above is None or number > above,
@@ -118,19 +145,31 @@ class Faults:
         if not isinstance(value, bool | np.bool_):
             self.add(key, f"found {found(value)}, expected true or false")
 
-    def known_keys(self, table: Collection[str], valid: Collection[str]) -> None:
-        """Note every key of `table` that is not `valid`."""
+    def kind(self, key: str, value: object, *kinds: type) -> None:
+        """Note a `value` that is an instance of none of the `kinds`."""
+        if not isinstance(value, kinds):
+            self.add(key, f"found {found(value)}, expected {' or '.join(kind.__name__ for kind in kinds)}")
+
+    def known_keys(self, table: Collection[str], valid: Collection[str]) -> set[str]:
+        """Note every key of `table` that is not `valid`; return the valid ones that were probably meant."""
+        meant = set()
         for key in table:
-            if key not in valid:
-                self.add(key, f"unknown key; {nearest(key, valid)}")
+            if key in valid:
+                continue
+            close = closest(str(key), valid)
+            self.add(
+                str(key), f"unknown key; {f'did you mean {close}?' if close else 'valid here: ' + ', '.join(valid)}"
+            )
+            meant |= {close} if close else set()
+        return meant
 
 
 def _decimal_cure(value: object) -> str:
-    """Return the cure for a number written as text with a decimal comma, else nothing."""
+    """Return the cure for a number written as text, else nothing."""
     if not isinstance(value, str):
         return ""
     try:
         number = float(value.replace(",", ".", 1))
     except ValueError:
         return ""
-    return f"; write it without quotes and with a decimal point: {number:g}"
+    return f"; write {number:g} without quotes{' and with a decimal point' if ',' in value else ''}"

@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike
 
 from optics.byvalue import ByValue, FloatArray, read_only
 from optics.errors import InputError
-from optics.faults import Faults, found
+from optics.faults import Faults, as_float, found, is_number
 
 PLACE = "light.spectrum"
 SEEN = ("inside",)
@@ -172,14 +172,10 @@ def numbers(faults: Faults, key: str, values: object) -> FloatArray:
         faults.add(key, f"found {found(values)}, expected a list of numbers")
         return nothing
     for place, value in enumerate(values, start=1):
-        if not _is_number(value):
+        if not is_number(value) or not math.isfinite(as_float(value)):
             faults.add(key, f"value {place}: found {found(value)}, expected a number")
             return nothing
     return read_only(values)
-
-
-def _is_number(value: object) -> bool:
-    return isinstance(value, int | float | np.number) and not isinstance(value, bool) and bool(np.isfinite(value))
 
 
 def _raw(spectrum: Spectrum, wavelength: FloatArray) -> FloatArray:
@@ -208,6 +204,8 @@ def _check_reach(spectrum: Spectrum, wavelength: FloatArray) -> None:
 
 def _check_seen(faults: Faults, seen: object) -> None:
     if isinstance(seen, str) and seen in SEEN_LATER:
-        faults.add("seen", f'found "{seen}": not available yet; expected "inside", the spectrum the film gives birth to')
+        faults.add(
+            "seen", f'found "{seen}": not available yet; expected "inside", the spectrum the film gives birth to'
+        )
     else:
         faults.choice("seen", seen, SEEN)

@@ -1,25 +1,28 @@
 """The stack: layers between two outer media, the light asked for and how it is emitted. No file is needed to have one."""
 
-from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, field, replace
+from collections.abc import Callable, Iterable, Sequence
+from dataclasses import dataclass, field, fields, replace
 from typing import Any, Literal, TypeAlias
 
 import numpy as np
 
-from optics.byvalue import ByValue, FloatArray, read_only
+from optics.byvalue import FloatArray
 from optics.errors import InputError
-from optics.faults import Faults, found
+from optics.faults import Faults, quoted
+from optics.light import Light
+from optics.media.cabinet import MaterialLike, find
 from optics.media.domain import RANGE_SLACK
 from optics.media.material import Material
-from optics.spectrum import Gaussian, Spectrum, SpectrumTable, ascending, births_per_nm
 from optics.units import nm_from_mm, nm_from_um
 
 PLATE_LIMIT_NM = 20_000.0  # a thicker layer carries intensities, not phases
 ISOTROPIC = 2.0 / 3.0  # share of in-plane dipoles when all directions are alike
-THICKNESS_TO_NM = {"thickness_nm": float, "thickness_um": nm_from_um, "thickness_mm": nm_from_mm}
+THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
+    "thickness_nm": float,
+    "thickness_um": nm_from_um,
+    "thickness_mm": nm_from_mm,
+}
 THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
-LIGHT_RANGE_NM = (10.0, 1e6)  # outside it a wavelength is a slip of the unit
-MOST_WAVELENGTHS = 100_000
 OUTER_NAMES = ("above", "below")
 DEPTHS_LATER = ("pump_nm", "decay_nm", "at_nm", "table")
 
@@ -52,17 +55,10 @@ class Layer:
     phases: Phases | None = None
 
     def __post_init__(self) -> None:
-        faults = Faults(f'layer "{self.name}"' if isinstance(self.name, str) else "layer")
-        faults.text("name", self.name, expected='a short text, for example "film"')
-        if self.name in OUTER_NAMES:
-            faults.add("name", f'found "{self.name}", which names an outer medium; choose another name')
-        _check_type(faults, "material", self.material, Material)
-        thickness = faults.number("thickness_nm", self.thickness_nm, unit="nm", above=0, example=480)
-        faults.flag("emits", self.emits)
-        if self.phases is not None:
-            faults.choice("phases", self.phases, ("keep", "ignore"))
+        faults = Faults(layer_place(self.name))
+        check_layer(faults, **{part.name: getattr(self, part.name) for part in fields(self)})
         faults.settle()
-        object.__setattr__(self, "thickness_nm", thickness)
+        object.__setattr__(self, "thickness_nm", float(self.thickness_nm))
         object.__setattr__(self, "emits", bool(self.emits))
 
     @property
@@ -90,7 +86,7 @@ class Outer:
 
     def __post_init__(self) -> None:
         faults = Faults()
-        _check_type(faults, "material", self.material, Material)
+        faults.kind("material", self.material, Material)
         if self.counts_as is not None:
             faults.choice("counts_as", self.counts_as, ("free", "held"))
         faults.settle()
@@ -99,41 +95,6 @@ class Outer:
     def free(self) -> bool:
         """Whether light that reaches it counts as free."""
         return self.material.gas if self.counts_as is None else self.counts_as == "free"
-
-
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Light(ByValue):
-    """The wavelengths asked for and the spectrum born on them.
-
-    Parameters
-    ----------
-    wavelengths_nm
-        Ascending wavelengths in vacuum [nm]; even steps are not needed.
-    spectrum
-        What the film gives birth to.
-    """
-
-    wavelengths_nm: FloatArray
-    spectrum: Spectrum
-
-    def __post_init__(self) -> None:
-        faults = Faults("light")
-        wavelengths = ascending(faults, "wavelengths_nm", self.wavelengths_nm)
-        _check_range(faults, wavelengths)
-        _check_type(faults, "spectrum", self.spectrum, Gaussian, SpectrumTable)
-        faults.settle()
-        births_per_nm(self.spectrum, wavelengths)
-        object.__setattr__(self, "wavelengths_nm", wavelengths)
-
-    @classmethod
-    def even(cls, *, from_nm: float, to_nm: float, step_nm: float, spectrum: Spectrum) -> "Light":
-        """Return light on even steps; see `even_wavelengths`."""
-        return cls(wavelengths_nm=even_wavelengths(from_nm=from_nm, to_nm=to_nm, step_nm=step_nm), spectrum=spectrum)
-
-    @property
-    def range_nm(self) -> tuple[float, float]:
-        """First and last wavelength [nm]."""
-        return float(self.wavelengths_nm[0]), float(self.wavelengths_nm[-1])
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -193,14 +154,14 @@ class Stack:
     def __post_init__(self) -> None:
         object.__setattr__(self, "layers", tuple(self.layers))
         faults = Faults()
-        faults.text("title", self.title, expected="a line of text", empty=True)
         for key, kind in (("above", Outer), ("below", Outer), ("light", Light), ("emission", Emission)):
-            _check_type(faults, key, getattr(self, key), kind)
+            faults.kind(key, getattr(self, key), kind)
         for layer in self.layers:
-            _check_type(faults, "layer", layer, Layer)
+            faults.kind("layer", layer, Layer)
         faults.settle()
+        check_title(faults, self.title)
         check_layers(faults, names=[layer.name for layer in self.layers], emits=[layer.emits for layer in self.layers])
-        check_media(faults, media=self.media, light=self.light)
+        check_media(faults, media=self.media, wavelengths_nm=self.light.wavelengths_nm)
         faults.settle()
 
     @property
@@ -216,7 +177,7 @@ class Stack:
     @property
     def media(self) -> tuple[tuple[str, Material, bool], ...]:
         """Place, material and whether it emits, of the outer media and every layer, from above to below."""
-        layers = [(f'layer "{layer.name}"', layer.material, layer.emits) for layer in self.layers]
+        layers = [(layer_place(layer.name), layer.material, layer.emits) for layer in self.layers]
         return (("above", self.above.material, False), *layers, ("below", self.below.material, False))
 
     def with_layer(self, name: str, **changes: Any) -> "Stack":
@@ -232,10 +193,14 @@ class Stack:
         """
         names = [layer.name for layer in self.layers]
         if name not in names:
-            raise InputError(f'layer "{name}": not in this stack, which has {", ".join(names)}')
-        faults = Faults(f'layer "{name}"')
+            raise InputError(f"{layer_place(name)}: not in this stack, which has {', '.join(names)}")
+        faults = Faults(layer_place(name))
         faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases"))
-        changes = _in_nm(faults, changes)
+        given = [key for key in THICKNESS_TO_NM if key in changes]
+        if len(given) > 1:
+            faults.add(given[0], f"found {' and '.join(given)}, expected one of them")
+        elif given:
+            changes["thickness_nm"] = in_nm(faults, given[0], changes.pop(given[0]))
         if "material" in changes:
             with faults.collecting("material"):
                 changes["material"] = find(changes["material"])
@@ -247,14 +212,14 @@ class Stack:
     def with_film(self, name: str) -> "Stack":
         """Return the stack with the layer of this name emitting instead."""
         if name not in [layer.name for layer in self.layers]:
-            raise InputError(f'layer "{name}": not in this stack')
+            raise InputError(f"{layer_place(name)}: not in this stack")
         return replace(self, layers=tuple(replace(layer, emits=layer.name == name) for layer in self.layers))
 
-    def with_above(self, material: Any, counts_as: CountsAs | None = None) -> "Stack":
+    def with_above(self, material: MaterialLike | Outer, counts_as: CountsAs | None = None) -> "Stack":
         """Return the stack under another outer medium (an `Outer`, or anything `find` takes)."""
         return replace(self, above=outer(material, counts_as=counts_as, place="above"))
 
-    def with_below(self, material: Any, counts_as: CountsAs | None = None) -> "Stack":
+    def with_below(self, material: MaterialLike | Outer, counts_as: CountsAs | None = None) -> "Stack":
         """Return the stack on another outer medium (an `Outer`, or anything `find` takes)."""
         return replace(self, below=outer(material, counts_as=counts_as, place="below"))
 
@@ -273,27 +238,7 @@ class Stack:
         return replace(self, above=self.below, below=self.above, layers=self.layers[::-1])
 
 
-def even_wavelengths(*, from_nm: float, to_nm: float, step_nm: float) -> FloatArray:
-    """Return wavelengths [nm] from `from_nm` to `to_nm`, both included, a whole number of steps apart."""
-    faults = Faults("light")
-    first = faults.number("from_nm", from_nm, unit="nm", above=0, example=700)
-    last = faults.number("to_nm", to_nm, unit="nm", above=0, example=860)
-    step = faults.number("step_nm", step_nm, unit="nm", above=0, example=1)
-    if last <= first:
-        faults.add("to_nm", f"found {last:.12g}, expected more than from_nm, {first:.12g}")
-    faults.settle()
-    steps = (last - first) / step
-    whole = round(steps)
-    if whole > MOST_WAVELENGTHS:
-        faults.add("step_nm", f"found {step:.12g}, {whole} steps, expected at most {MOST_WAVELENGTHS}; widen the step")
-    elif whole < 1 or abs(steps - whole) > 1e-9 * whole:  # a step like 0.1 is exact to 1e-16 only
-        cure = f"to_nm = {first + max(1, int(steps)) * step:.12g} does"
-        faults.add("step_nm", f"found {step:.12g}, whose steps from {first:.12g} do not end at {last:.12g}; {cure}")
-    faults.settle()
-    return read_only(np.linspace(first, last, whole + 1))
-
-
-def outer(material: Any, *, counts_as: CountsAs | None = None, place: str = "outer") -> Outer:
+def outer(material: MaterialLike | Outer, *, counts_as: CountsAs | None = None, place: str = "outer") -> Outer:
     """Return an outer medium from an `Outer` or anything `optics.media.cabinet.find` takes."""
     faults = Faults(place)
     with faults.collecting():
@@ -303,11 +248,35 @@ def outer(material: Any, *, counts_as: CountsAs | None = None, place: str = "out
     raise InputError(faults.lines)
 
 
-def find(spec: Any) -> Material:
-    """Return the material that `spec` means, as `optics.media.cabinet.find` does."""
-    from optics.media import cabinet  # reads files: not needed to hold a stack
+def in_nm(faults: Faults, key: str, thickness: object) -> float:
+    """Return a thickness in nm; `key`, such as ``thickness_mm``, says its unit. Nan when it is none."""
+    unit = key.removeprefix("thickness_")
+    number = faults.number(key, thickness, unit=unit, above=0, example=THICKNESS_EXAMPLES[key])
+    return float(THICKNESS_TO_NM[key](number))
 
-    return cabinet.find(spec)
+
+def layer_place(name: object) -> str:
+    """Return how messages call the layer of this name."""
+    return f"layer {quoted(name)}" if isinstance(name, str) and name else "layer"
+
+
+def check_title(faults: Faults, title: object) -> None:
+    """Note a title that is not one line of text."""
+    faults.text("title", title, expected="a line of text", empty=True)
+
+
+def check_layer(
+    faults: Faults, *, name: object, material: object, thickness_nm: object, emits: object, phases: object
+) -> None:
+    """Note what is wrong with the parts of one layer."""
+    faults.text("name", name, expected='a short text, for example "film"')
+    if name in OUTER_NAMES:
+        faults.add("name", f'found "{name}", which names an outer medium; choose another name')
+    faults.kind("material", material, Material)
+    faults.number("thickness_nm", thickness_nm, unit="nm", above=0, example=480)
+    faults.flag("emits", emits)
+    if phases is not None:
+        faults.choice("phases", phases, ("keep", "ignore"))
 
 
 def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool]) -> None:
@@ -316,7 +285,7 @@ def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool])
         faults.add("layer", "found no layer, expected at least one; begin each with [[layer]]")
         return
     for name in dict.fromkeys(name for name in names if names.count(name) > 1):
-        faults.add(f'layer "{name}"', f"name: used {names.count(name)} times, expected a name of its own for each")
+        faults.add(layer_place(name), f"name: used {names.count(name)} times, expected a name of its own for each")
     emitting = [name for name, emit in zip(names, emits, strict=True) if emit]
     if not emitting:
         faults.add("layer", f"emits: no layer emits, expected one; set emits = true in one of {', '.join(names)}")
@@ -324,9 +293,9 @@ def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool])
         faults.add("layer", f"emits: {len(emitting)} layers emit ({', '.join(emitting)}), expected one")
 
 
-def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], light: Light) -> None:
+def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], wavelengths_nm: FloatArray) -> None:
     """Note materials that do not cover the light, and an emitting one without a positive refractive index."""
-    first, last = light.range_nm
+    first, last = float(wavelengths_nm[0]), float(wavelengths_nm[-1])
     for place, material, emits in media:
         low, high = material.range_nm
         if first < low * (1 - RANGE_SLACK) or last > high * (1 + RANGE_SLACK):
@@ -337,25 +306,11 @@ def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], 
             )
             continue
         with faults.collecting(f"{place}: material"):
-            index = material.index(light.wavelengths_nm).real
+            index = material.index(wavelengths_nm).real
             if emits and index.min() <= 0:
                 where = int(np.argmin(index))
-                said = f"n = {index[where]:.6g} at {light.wavelengths_nm[where]:.12g} nm"
+                said = f"n = {index[where]:.6g} at {wavelengths_nm[where]:.12g} nm"
                 faults.add(f"{place}: material", f"found {said}, expected n above 0 in the layer that emits")
-
-
-def _check_type(faults: Faults, key: str, value: object, *kinds: type) -> None:
-    if not isinstance(value, kinds):
-        faults.add(key, f"found {found(value)}, expected {' or '.join(kind.__name__ for kind in kinds)}")
-
-
-def _check_range(faults: Faults, wavelengths: FloatArray) -> None:
-    low, high = LIGHT_RANGE_NM
-    if wavelengths.size > MOST_WAVELENGTHS:
-        faults.add("wavelengths_nm", f"found {wavelengths.size}, expected at most {MOST_WAVELENGTHS}")
-    for value in wavelengths[[0, -1]] if wavelengths.size else ():
-        if not low <= value <= high:
-            faults.add("wavelengths_nm", f"found {value:.12g}, expected nm between {low:g} and {high:g}; is the unit nm?")
 
 
 def _check_depth(faults: Faults, depth: object) -> None:
@@ -370,16 +325,3 @@ def _settle_keys(place: str, changes: Iterable[str], valid: tuple[str, ...]) -> 
     faults = Faults(place)
     faults.known_keys(tuple(changes), valid)
     faults.settle()
-
-
-def _in_nm(faults: Faults, changes: dict[str, Any]) -> dict[str, Any]:
-    """Return `changes` with the thickness, if there is one, in nm; note two of them."""
-    given = [key for key in THICKNESS_TO_NM if key in changes]
-    if len(given) > 1:
-        faults.add(given[0], f"found {' and '.join(given)}, expected one of them")
-    rest = {key: value for key, value in changes.items() if key not in THICKNESS_TO_NM}
-    for key in given[:1]:
-        unit = key.removeprefix("thickness_")
-        number = faults.number(key, changes[key], unit=unit, above=0, example=THICKNESS_EXAMPLES[key])
-        rest["thickness_nm"] = float(THICKNESS_TO_NM[key](number))
-    return rest

@@ -1,0 +1,62 @@
+"""What a stack takes for granted, in words: every default and convention that shapes the answer."""
+
+import math
+
+from optics.media.dispersion import Constant, Joined, Tabulated
+from optics.spectrum import spectrum_notes
+from optics.stack import ISOTROPIC, PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
+
+
+def assumptions(stack: Stack) -> tuple[str, ...]:
+    """Return one sentence for each assumption that the answer for this stack rests on."""
+    said = [_outer("above", stack.above), _outer("below", stack.below)]
+    said += [sentence for layer in stack.layers if (sentence := _plate(layer))]
+    said += [_births(stack), 'the spectrum is the one born inside the film (seen = "inside")']
+    said += spectrum_notes(stack.light.spectrum, stack.light.wavelengths_nm)
+    said += _indices(stack)
+    return tuple(said)
+
+
+def _outer(side: str, outer: Outer) -> str:
+    fate = "counts as free space" if outer.free else "holds the light that enters it; it does not count as free space"
+    why = "" if outer.counts_as else " (counts_as not given)"
+    return f"{side} = {outer.material.name}: {fate}{why}"
+
+
+def _plate(layer: Layer) -> str:
+    """Say how a layer of more than 20 um, or one told otherwise, is treated."""
+    limit = f"{PLATE_LIMIT_NM / 1e3:g} um"
+    if layer.phases is None and not layer.plate:
+        return ""
+    why = f"over {limit}, phases not given" if layer.phases is None else f'phases = "{layer.phases}"'
+    rays = "; it emits, so ray optics alone" if layer.plate and layer.emits else ""
+    kind = "a plate, without phases" if layer.plate else "a thin layer, with phases"
+    return f"{layer_place(layer.name)}, {_length(layer.thickness_nm)}: {kind} ({why}){rays}"
+
+
+def _length(nm: float) -> str:
+    if nm >= 1e6:
+        return f"{nm / 1e6:.6g} mm"
+    return f"{nm / 1e3:.6g} um" if nm >= 1e4 else f"{nm:.6g} nm"
+
+
+def _births(stack: Stack) -> str:
+    share = stack.emission.horizontal_share
+    isotropic = math.isclose(share, ISOTROPIC, abs_tol=5e-5)  # 0.6667, as people write it
+    kind = "isotropic, the default" if isotropic else "of the dipoles lie in the plane"
+    return f"horizontal_share = {share:.4g} ({kind}); births spread evenly over the depth of the film"
+
+
+def _indices(stack: Stack) -> list[str]:
+    """Say how tables are read between their rows, and which indices do not depend on wavelength."""
+    media = {material.name: material.medium for _, material, _ in stack.media}
+    tables = [name for name, medium in media.items() if isinstance(medium, Tabulated | Joined)]
+    constant = [
+        name for name, medium in media.items() if isinstance(medium, Constant) and (medium.n, medium.k) != (1.0, 0.0)
+    ]
+    said = []
+    if tables:
+        said.append(f"n and k between the rows of a table by monotone cubic interpolation: {', '.join(tables)}")
+    if constant:
+        said.append(f"the same index at every wavelength: {', '.join(constant)}")
+    return said

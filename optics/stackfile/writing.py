@@ -1,0 +1,160 @@
+"""Writing a stack as TOML that reads back as the same stack."""
+
+import os
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+from optics.byvalue import FloatArray
+from optics.errors import InputError
+from optics.light import Light, even_wavelengths
+from optics.media.cabinet import bundled_names, find
+from optics.media.dispersion import Constant
+from optics.media.material import Material
+from optics.spectrum import Gaussian, Spectrum
+from optics.stack import PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
+from optics.units import nm_from_mm
+
+
+def write_stack(stack: Stack, *, folder: str | Path | None = None) -> str:
+    """Return the content of a stack file that describes the stack.
+
+    Parameters
+    ----------
+    stack
+        What to write.
+    folder
+        Where the file will stand: tables are named from there. None names them by their full paths.
+
+    Raises
+    ------
+    InputError
+        When a material was made in Python and is in no file from which it could be read back.
+    """
+    import tomlkit
+
+    home = None if folder is None else Path(folder).resolve()
+    document = tomlkit.document()
+    if stack.title:
+        document["title"] = stack.title
+    for side, outer in (("above", stack.above), ("below", stack.below)):
+        document[side] = _inline(_outer(outer, side, home))
+    document["light"] = _light(stack.light, home)
+    document["emission"] = {
+        "horizontal_share": _number(stack.emission.horizontal_share),
+        "depth": stack.emission.depth,
+    }
+    layers = tomlkit.aot()
+    for layer in stack.layers:
+        table = tomlkit.table()
+        for key, value in _layer(layer, home).items():
+            table[key] = _inline(value)
+        layers.append(table)
+    document["layer"] = layers
+    return tomlkit.dumps(document)
+
+
+def _inline(value: Any) -> Any:
+    import tomlkit
+
+    if not isinstance(value, dict):
+        return value
+    table = tomlkit.inline_table()
+    for key, part in value.items():
+        table[key] = _inline(part)
+    return table
+
+
+def _outer(outer: Outer, side: str, home: Path | None) -> Any:
+    spec = _spec(outer.material, side, home)
+    return spec if outer.counts_as is None else {"material": spec, "counts_as": outer.counts_as}
+
+
+def _layer(layer: Layer, home: Path | None) -> dict[str, Any]:
+    table = {"name": layer.name, "material": _spec(layer.material, layer_place(layer.name), home)}
+    table |= _thickness(layer.thickness_nm)
+    if layer.emits:
+        table["emits"] = True
+    if layer.phases is not None:
+        table["phases"] = layer.phases
+    return table
+
+
+def _thickness(thickness_nm: float) -> dict[str, Any]:
+    """Return the thickness in mm for what is thick, when that loses nothing."""
+    in_mm = thickness_nm / 1e6
+    if thickness_nm > PLATE_LIMIT_NM and float(nm_from_mm(in_mm)) == thickness_nm:
+        return {"thickness_mm": _number(in_mm)}
+    return {"thickness_nm": _number(thickness_nm)}
+
+
+def _light(light: Light, home: Path | None) -> dict[str, Any]:
+    return _grid(light.wavelengths_nm) | {"spectrum": _spectrum(light.spectrum, home)}
+
+
+def _grid(wavelengths: FloatArray) -> dict[str, Any]:
+    """Return first, last and step when these give back the very same wavelengths, else the list."""
+    if wavelengths.size > 1:
+        span = float(wavelengths[-1] - wavelengths[0])
+        step = round(span / (wavelengths.size - 1), 9)
+        even = {"from_nm": float(wavelengths[0]), "to_nm": float(wavelengths[-1]), "step_nm": step}
+        try:
+            same = step > 0 and even_wavelengths(**even).tolist() == wavelengths.tolist()
+        except InputError:
+            same = False  # a step that cannot be written in nine decimals
+        if same:
+            return {key: _number(value) for key, value in even.items()}
+    return {"wavelengths_nm": [_number(value) for value in wavelengths.tolist()]}
+
+
+def _spectrum(spectrum: Spectrum, home: Path | None) -> dict[str, Any]:
+    table: dict[str, Any] = {"seen": spectrum.seen}
+    if isinstance(spectrum, Gaussian):
+        return table | {
+            "kind": "gaussian",
+            "peak_nm": _number(spectrum.peak_nm),
+            "fwhm_nm": _number(spectrum.fwhm_nm),
+        }
+    table["kind"] = "table"
+    if spectrum.path:
+        return table | {"file": _from_home(spectrum.path, home)}
+    rows = {"wavelength_nm": spectrum.wavelength_nm, "per_nm": spectrum.per_nm}
+    return table | {key: [_number(value) for value in values.tolist()] for key, values in rows.items()}
+
+
+def _spec(material: Material, place: str, home: Path | None) -> Any:
+    """Return the way to name a material under which it is found again, the same in every part."""
+    for spec in _candidates(material, home):
+        try:
+            if find(spec, folder=home) == material:
+                return spec
+        except InputError:
+            continue
+    raise InputError(
+        f'{place}: material: "{material.name}" was made in Python, or its file has changed since; '
+        "save its n and k as a table and name that file"
+    )
+
+
+def _candidates(material: Material, home: Path | None) -> Iterator[Any]:
+    if isinstance(material.medium, Constant):
+        yield {"n": _number(material.medium.n), "k": _number(material.medium.k)}
+    if material.name in bundled_names():
+        yield material.name
+    if material.path:
+        yield _from_home(material.path, home)
+    yield {"published": material.name}
+
+
+def _from_home(path: str, home: Path | None) -> str:
+    if home is None:
+        return str(Path(path).absolute())
+    try:
+        return Path(os.path.relpath(path, home)).as_posix()
+    except ValueError:  # on another drive
+        return str(Path(path).absolute())
+
+
+def _number(value: float) -> float | int:
+    """Return whole numbers as people write them."""
+    return int(value) if value.is_integer() and abs(value) < 1e15 else value
