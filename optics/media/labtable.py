@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from optics.errors import InputError
 from optics.media.dispersion import Tabulated
-from optics.media.sheet import Sheet, decode, parse_sheet, read_bytes, shortened
+from optics.media.sheet import Sheet, decode, parse_sheet, read_bytes, shortened, shown
 from optics.units import nm_from_um, wavelength_nm
 
 __all__ = ["AXES", "Columns", "parse_columns", "read_hashed", "read_table"]
@@ -40,6 +40,10 @@ AXES: dict[str, _Axis] = {
     "energy_eV": _Axis(wavelength_nm, lambda values: _if(values.min() > 60.0, "nanometres")),
 }
 """The accepted columns of wavelength or energy."""
+
+
+K_LIMIT = 2000.0
+"""No k is that large from the ultraviolet to 1 mm; absorption coefficients [1/cm] of absorbers are."""
 
 
 @dataclass(frozen=True)
@@ -109,7 +113,9 @@ def _header_faults(header: tuple[str, ...], wanted: tuple[str, ...]) -> list[str
     if all(_is_float(name) for name in header):
         return [f"found numbers, expected a header that names {expected}"]
     faults = [_unknown(name, (*AXES, *wanted)) for name in header if name not in (*AXES, *wanted)]
-    faults += [f'column "{name}" stands twice' for name in sorted({name for name in header if header.count(name) > 1})]
+    faults += [
+        f"column {shown(name)} stands twice" for name in sorted({name for name in header if header.count(name) > 1})
+    ]
     axes = [name for name in AXES if name in header]
     if len(axes) > 1:
         faults.append(f"found {' and '.join(axes)}, expected one of them")
@@ -129,13 +135,12 @@ def _is_float(cell: str) -> bool:
 
 
 def _unknown(name: str, known: tuple[str, ...]) -> str:
-    shown = name if len(name) <= 40 else name[:37] + "..."
     plain = name.lower()
     if plain.startswith(("wave", "lambda", "wl", "energy", "photon", "λ")):
-        return f'column "{shown}" names no accepted unit, expected one of {", ".join(AXES)}'
+        return f"column {shown(name)} names no accepted unit, expected one of {', '.join(AXES)}"
     near = get_close_matches(plain, known, n=1)
     hint = f'; did you mean "{near[0]}"?' if near else ""
-    return f'column "{shown}" is not known, expected {", ".join(known)}{hint}'
+    return f"column {shown(name)} is not known, expected {', '.join(known)}{hint}"
 
 
 def _value_faults(sheet: Sheet, axis: str, wanted: tuple[str, ...]) -> list[str]:
@@ -173,8 +178,12 @@ def _order_faults(sheet: Sheet, axis: str) -> list[str]:
 
 def _unit_faults(sheet: Sheet, axis: str) -> list[str]:
     values = sheet.column(axis)
+    faults = []
     looks_like = AXES[axis].betrayed(values)
-    if not looks_like:
-        return []
-    found = f"values from {values.min():.7g} to {values.max():.7g}, which look like {looks_like}"
-    return [f"column {axis}: found {found}; name the column after its unit ({', '.join(AXES)})"]
+    if looks_like:
+        found = f"values from {values.min():.7g} to {values.max():.7g}, which look like {looks_like}"
+        faults.append(f"column {axis}: found {found}; name the column after its unit ({', '.join(AXES)})")
+    if "k" in sheet.columns and sheet.column("k").max() > K_LIMIT:
+        found = f"values up to {sheet.column('k').max():.4g}, which look like an absorption coefficient"
+        faults.append(f"column k: found {found}, expected the imaginary part of the index")
+    return faults

@@ -1,6 +1,6 @@
 """A medium with its name and where its numbers come from."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -44,7 +44,7 @@ class Material:
     licence: str = ""
     gas: bool = False
     sha256: str = ""
-    path: str = ""
+    path: str = field(default="", compare=False)  # where a file lies does not change what it holds
     cautions: str = ""
 
     @property

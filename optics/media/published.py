@@ -96,7 +96,11 @@ def _material(entry: "MaterialEntry", name: str, medium: Medium, version: str) -
 
 def _plain(text: str | None) -> str:
     """A reference without its HTML, on one line, links to a DOI written out."""
-    linked = re.sub(r'<a href=.{0,2}https?://(?:dx\.)?doi\.org/([^">\s]+)"?>(.*?)</a>', r"\2, doi:\1", text or "")
+
+    def with_doi(link: re.Match[str]) -> str:
+        return f"{link[2]}, doi:{html.escape(link[1])}"  # some DOIs hold < and >, which are no tags
+
+    linked = re.sub(r'<a href=.?https?://(?:dx\.)?doi\.org/([^"]+)">(.*?)</a>', with_doi, text or "")
     return " ".join(html.unescape(re.sub(r"<[^>]*>", "", linked)).split())
 
 

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 
 from optics.errors import InputError
 
-__all__ = ["LIMIT_BYTES", "SHOWN_FAULTS", "Sheet", "decode", "parse_sheet", "read_bytes", "shortened"]
+__all__ = ["LIMIT_BYTES", "SHOWN_FAULTS", "Sheet", "decode", "parse_sheet", "read_bytes", "shortened", "shown"]
 
 LIMIT_BYTES = 50_000_000
 """Larger files are refused: a table of n and k at every 0.1 nm from 200 nm to 3 um has 1 MB."""
@@ -163,7 +163,7 @@ def _row(cells: list[str], columns: tuple[str, ...]) -> tuple[list[float], list[
         return [], [f"found {len(cells)} cells, expected {len(columns)} ({', '.join(columns)}){cure}"]
     numbers = [_number(cell) for cell in cells]
     faults = [
-        f"{column}: found {_shown(cell)}, expected a finite number{_comma_cure(cell)}"
+        f"{column}: found {shown(cell)}, expected a finite number{_comma_cure(cell)}"
         for column, cell, number in zip(columns, cells, numbers, strict=True)
         if not math.isfinite(number)
     ]
@@ -178,10 +178,12 @@ def _number(cell: str) -> float:
         return math.nan
 
 
-def _shown(cell: str) -> str:
+def shown(cell: str) -> str:
+    """A cell as messages quote it: short, and without characters that would move a terminal's cursor."""
     if not cell:
         return "nothing"
-    return repr(cell if len(cell) <= 40 else cell[:37] + "...")
+    printable = "".join(letter if letter.isprintable() else "?" for letter in cell[:41])
+    return f'"{printable}"' if len(cell) <= 40 else f'"{printable[:37]}..."'
 
 
 def _comma_cure(cell: str) -> str:
