@@ -1,0 +1,83 @@
+"""Photonfate: where light born in a thin film goes.
+
+Import what you need from here. A name is loaded when it is first used, so that importing the package costs nothing.
+"""
+
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from optics.errors import InputError
+    from optics.fate.solve import Result, solve
+    from optics.light import Light
+    from optics.media.cabinet import bundled_names
+    from optics.media.cabinet import find as find_material
+    from optics.media.labtable import read_table
+    from optics.media.material import Material
+    from optics.output.folder import write_result
+    from optics.spectrum import Gaussian, SpectrumTable
+    from optics.stack import Emission, Layer, Outer, Stack
+    from optics.stackfile.reading import parse_stack, read_stack
+    from optics.stackfile.writing import write_stack
+
+    __version__: str
+
+__all__ = [
+    "Emission",
+    "Gaussian",
+    "InputError",
+    "Layer",
+    "Light",
+    "Material",
+    "Outer",
+    "Result",
+    "SpectrumTable",
+    "Stack",
+    "bundled_names",
+    "find_material",
+    "parse_stack",
+    "read_stack",
+    "read_table",
+    "solve",
+    "write_result",
+    "write_stack",
+]
+
+_HOMES = {
+    "Emission": "optics.stack:Emission",
+    "Gaussian": "optics.spectrum:Gaussian",
+    "InputError": "optics.errors:InputError",
+    "Layer": "optics.stack:Layer",
+    "Light": "optics.light:Light",
+    "Material": "optics.media.material:Material",
+    "Outer": "optics.stack:Outer",
+    "Result": "optics.fate.solve:Result",
+    "SpectrumTable": "optics.spectrum:SpectrumTable",
+    "Stack": "optics.stack:Stack",
+    "bundled_names": "optics.media.cabinet:bundled_names",
+    "find_material": "optics.media.cabinet:find",
+    "parse_stack": "optics.stackfile.reading:parse_stack",
+    "read_stack": "optics.stackfile.reading:read_stack",
+    "read_table": "optics.media.labtable:read_table",
+    "solve": "optics.fate.solve:solve",
+    "write_result": "optics.output.folder:write_result",
+    "write_stack": "optics.stackfile.writing:write_stack",
+}
+
+
+def __getattr__(name: str) -> Any:
+    if name == "__version__":
+        from importlib.metadata import version
+
+        return version("photonfate")
+    if name not in _HOMES:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    from importlib import import_module
+
+    module, _, attribute = _HOMES[name].partition(":")
+    value = getattr(import_module(module), attribute)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    return sorted({*globals(), *__all__, "__version__"})
