@@ -1,8 +1,7 @@
 """Checking what was handed in: every fault of an object collected, each said in one line of one form."""
 
 import math
-from collections.abc import Collection, Iterable, Iterator
-from contextlib import contextmanager
+from collections.abc import Callable, Collection, Iterable
 from difflib import SequenceMatcher
 from numbers import Real
 from typing import TypeGuard
@@ -76,22 +75,13 @@ class Faults:
         # A fault is one line, whatever the names in the input hold.
         self.lines.append("".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in line))
 
-    @contextmanager
-    def collecting(self, key: str = "") -> Iterator[None]:
-        """Note the faults of whatever refuses inside the ``with`` block instead of letting it raise."""
-        try:
-            yield
-        except InputError as error:
-            for line in error.faults:
-                self.add(key, line)
+    def collecting(self, key: str = "") -> "_Noting":
+        """Return a context that notes the faults of whatever refuses in it, as faults of `key`."""
+        return _Noting(lambda line: self.add(key, line))
 
-    @contextmanager
-    def taking_over(self) -> Iterator[None]:
-        """Note the faults of whatever refuses inside the ``with`` block, whose lines name their place already."""
-        try:
-            yield
-        except InputError as error:
-            self.lines += error.faults
+    def taking_over(self) -> "_Noting":
+        """Return a context that notes the faults of whatever refuses in it, whose lines name their place already."""
+        return _Noting(self.lines.append)
 
     def settle(self) -> None:
         """Raise `InputError` with everything noted, if anything was."""
@@ -162,6 +152,23 @@ class Faults:
             )
             meant |= {close} if close else set()
         return meant
+
+
+class _Noting:
+    """A ``with`` block that an `InputError` ends without being raised, its faults noted."""
+
+    def __init__(self, note: Callable[[str], None]) -> None:
+        self.note = note
+
+    def __enter__(self) -> None:
+        return None
+
+    def __exit__(self, _kind: object, error: object, _trace: object) -> bool:
+        if not isinstance(error, InputError):
+            return False
+        for line in error.faults:
+            self.note(line)
+        return True
 
 
 def _decimal_cure(value: object) -> str:

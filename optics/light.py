@@ -57,9 +57,7 @@ def checked_wavelengths(values: object) -> FloatArray:
     low, high = LIGHT_RANGE_NM
     outside = wavelengths[(wavelengths < low) | (wavelengths > high)]
     if outside.size:
-        faults.add(
-            "wavelengths_nm", f"found {outside[0]:.12g}, expected nm between {low:g} and {high:g}; is the unit nm?"
-        )
+        faults.add("wavelengths_nm", f"found {outside[0]:.12g}, expected {low:.12g} to {high:.12g} nm; is the unit nm?")
     faults.settle()
     return wavelengths
 

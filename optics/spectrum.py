@@ -198,7 +198,7 @@ def _check_reach(spectrum: Spectrum, wavelength: FloatArray) -> None:
     if wavelength[0] < first or wavelength[-1] > last:
         raise InputError(
             f"{PLACE}: the table covers {first:.12g} to {last:.12g} nm, the light asks for {wavelength[0]:.12g} to "
-            f"{wavelength[-1]:.12g} nm; shorten the light's range, or give rows (of zeros where nothing is born) that reach"
+            f"{wavelength[-1]:.12g} nm; shorten the light's range, or add rows that reach, zeros where nothing is born"
         )
 
 

@@ -1,4 +1,4 @@
-"""The stack: layers between two outer media, the light asked for and how it is emitted. No file is needed to have one."""
+"""The stack: layers between two outer media, the light asked for and how it is emitted; no file is needed."""
 
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field, fields, replace

@@ -114,7 +114,7 @@ def _file(keys: Keys, home: Path) -> dict[str, Any]:
         return {}
     with keys.faults.collecting("file"):
         wavelength, per_nm, sha256 = read_births(home / name, place=name)
-        return {"wavelength_nm": wavelength, "per_nm": per_nm, "path": str(home / name), "sha256": sha256}
+        return {"wavelength_nm": wavelength, "per_nm": per_nm, "path": str((home / name).resolve()), "sha256": sha256}
     return {}
 
 

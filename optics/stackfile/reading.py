@@ -66,6 +66,8 @@ def _content(file: Path) -> str:
                 f"found {size}, expected at most {LIMIT_BYTES / 1e6:g} MB; keep tables in files of their own"
             )
         content = file.read_bytes()
+    except InputError:
+        raise  # it is a ValueError too
     except (FileNotFoundError, NotADirectoryError):
         raise InputError("no such file, expected a stack file; `photonfate start FOLDER` makes one") from None
     except (OSError, ValueError) as error:  # ValueError: a path with a null character
@@ -97,14 +99,15 @@ def _toml(text: str) -> dict[str, Any]:
         reason = said[: place.start()] if place else said
         line = place.group(1) if place and place.group(1) else str(text.count("\n") + 1)
         column = f", column {place.group(2)}" if place and place.group(2) else ""
-        raise InputError(f"line {line}{column}: not TOML: {reason}; {_cure(text, int(line))}") from None
-    except (RecursionError, ValueError) as error:  # nested, or a number written out, beyond what Python reads
-        reason = "nested too deeply" if isinstance(error, RecursionError) else str(error)
-        raise InputError(f"not TOML that can be read: {reason}") from None
+        raise InputError(f"line {line}{column}: not TOML: {reason}; {_cure(reason, text, int(line))}") from None
+    except RecursionError:
+        raise InputError("not TOML that can be read: nested too deeply") from None
+    except ValueError:  # Python refuses to read whole numbers of more than 4300 digits
+        raise InputError("not TOML that can be read: a number has too many digits") from None
 
 
-def _cure(text: str, line: int) -> str:
-    """Guess the slip from the line at which reading stopped."""
+def _cure(reason: str, text: str, line: int) -> str:
+    """Guess the slip from the reason and the line at which reading stopped."""
     lines = text.splitlines()
     here = lines[line - 1] if line <= len(lines) else ""
     if re.search(r"=\s*[-+]?\d+,\d", here):
@@ -113,4 +116,6 @@ def _cure(text: str, line: int) -> str:
         return "write the number alone; its unit is in the key"
     if re.search(r"=\s*[A-Za-z]", here):
         return 'write text in quotes, "air", and true or false in small letters'
+    if "Cannot" in reason:  # overwrite, declare or expand what stands there already
+        return "the same key or table stands twice"
     return 'expected lines like key = value, tables like [light] and text in "quotes"'

@@ -124,10 +124,10 @@ def _spectrum(spectrum: Spectrum, home: Path | None) -> dict[str, Any]:
 
 def _spec(material: Material, place: str, home: Path | None) -> Any:
     """Return the way to name a material under which it is found again, the same in every part."""
-    for spec in _candidates(material, home):
+    for spec in _candidates(material):
         try:
-            if find(spec, folder=home) == material:
-                return spec
+            if find(spec) == material:
+                return _from_home(spec, home) if spec == material.path else spec
         except InputError:
             continue
     raise InputError(
@@ -136,13 +136,13 @@ def _spec(material: Material, place: str, home: Path | None) -> Any:
     )
 
 
-def _candidates(material: Material, home: Path | None) -> Iterator[Any]:
+def _candidates(material: Material) -> Iterator[Any]:
     if isinstance(material.medium, Constant):
         yield {"n": _number(material.medium.n), "k": _number(material.medium.k)}
     if material.name in bundled_names():
         yield material.name
     if material.path:
-        yield _from_home(material.path, home)
+        yield material.path
     yield {"published": material.name}
 
 
