@@ -7,10 +7,12 @@ Nothing here knows about optics: `read_bytes` refuses what is no ordinary file o
 import csv
 import io
 import math
+import os
 import stat
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,6 +20,8 @@ from numpy.typing import NDArray
 from optics.errors import InputError
 
 __all__ = ["LIMIT_BYTES", "SHOWN_FAULTS", "Sheet", "decode", "parse_sheet", "read_bytes", "shortened", "shown"]
+
+Result = TypeVar("Result")
 
 LIMIT_BYTES = 50_000_000
 """Larger files are refused: a table of n and k at every 0.1 nm from 200 nm to 3 um has 1 MB."""
@@ -54,21 +58,28 @@ class Sheet:
 
 def read_bytes(path: Path, *, place: str) -> bytes:
     """The bytes of an ordinary file of at most `LIMIT_BYTES`, or InputError saying what is wrong with it."""
+    _refuse_unfit(_attempt(path.stat, path, place), place)
+    return _attempt(path.read_bytes, path, place)
+
+
+def _attempt(act: Callable[[], Result], path: Path, place: str) -> Result:
     try:
-        state = path.stat()
-        if stat.S_ISDIR(state.st_mode):
-            raise InputError(f"{place}: found a directory, expected a CSV file")
-        if not stat.S_ISREG(state.st_mode):
-            raise InputError(f"{place}: found a device or pipe, expected a CSV file")
-        if state.st_size > LIMIT_BYTES:
-            size = f"{state.st_size / 1e6:.0f} MB"
-            raise InputError(f"{place}: found {size}, expected at most {LIMIT_BYTES / 1e6:.0f} MB; thin the table out")
-        return path.read_bytes()
+        return act()
     except (FileNotFoundError, NotADirectoryError):
         raise InputError(f"{place}: no such file; looked for {path.absolute()}") from None
     except (OSError, ValueError) as error:  # ValueError: a path with a null character
         reason = getattr(error, "strerror", None) or str(error)
         raise InputError(f"{place}: cannot be read ({reason}), expected a readable CSV file") from None
+
+
+def _refuse_unfit(state: os.stat_result, place: str) -> None:
+    if stat.S_ISDIR(state.st_mode):
+        raise InputError(f"{place}: found a directory, expected a CSV file")
+    if not stat.S_ISREG(state.st_mode):
+        raise InputError(f"{place}: found a device or pipe, expected a CSV file")
+    if state.st_size > LIMIT_BYTES:
+        size = f"{state.st_size / 1e6:.1f} MB"
+        raise InputError(f"{place}: found {size}, expected at most {LIMIT_BYTES / 1e6:.0f} MB; thin the table out")
 
 
 def decode(content: bytes, *, place: str) -> str:
