@@ -97,9 +97,8 @@ def _is_path(spec: str) -> bool:
 def _table(spec: str, folder: str | Path | None) -> Material:
     path = Path(folder or ".") / spec
     medium, sha256 = read_hashed(path, place=spec)
-    return Material(
-        name=Path(spec).stem, medium=medium, source=f"table {path.name}", sha256=sha256, path=str(path.resolve())
-    )
+    where = str(path.resolve())  # good from any working directory
+    return Material(name=path.stem, medium=medium, source=f"table {path.name}", sha256=sha256, path=where)
 
 
 def _described(spec: Mapping[str, object]) -> Material:

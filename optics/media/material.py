@@ -47,6 +47,14 @@ class Material:
     path: str = field(default="", compare=False)  # where a file lies does not change what it holds
     cautions: str = ""
 
+    def __post_init__(self) -> None:
+        if not isinstance(self.name, str) or not self.name.strip():
+            raise InputError(f"material: name: found {self.name!r}, expected a name")
+        if not (hasattr(self.medium, "index") and hasattr(self.medium, "range_nm")):
+            raise InputError(
+                f'material "{self.name}": medium: found {self.medium!r}, expected an index, as Constant(1.5)'
+            )
+
     @property
     def range_nm(self) -> tuple[float, float]:
         """First and last wavelength [nm] at which the index is known."""

@@ -86,6 +86,17 @@ def test_every_kind_of_material_compares_by_value_hashes_and_pickles(tmp_path: P
         assert np.array_equal(copy.index(450.0), material.index(450.0))
 
 
+@pytest.mark.parametrize("name", ["", "  ", None, 3])
+def test_a_material_needs_a_name(name: object) -> None:
+    with pytest.raises(InputError, match="name: found"):
+        Material(name=name, medium=Constant(1.5))  # type: ignore[arg-type]
+
+
+def test_a_material_needs_an_index() -> None:
+    with pytest.raises(InputError, match=r'material "mine": medium: found 1\.5, expected an index'):
+        Material(name="mine", medium=1.5)  # type: ignore[arg-type]
+
+
 def test_a_material_names_itself_when_it_refuses() -> None:
     with pytest.raises(InputError) as caught:
         find("silver").index([500.0, 2500.0])

@@ -162,7 +162,8 @@ def test_a_missing_file_is_named_with_the_place_looked_at(tmp_path: Path) -> Non
 
 def test_a_directory_is_refused(tmp_path: Path) -> None:
     (tmp_path / "film.csv").mkdir()
-    assert "found a directory" in _faults(tmp_path / "film.csv")[0]
+    path = tmp_path / "film.csv"
+    assert _faults(path) == (f"{path}: found a directory, expected a CSV file",)
 
 
 @pytest.mark.skipif(not hasattr(os, "mkfifo"), reason="no named pipes here")
@@ -186,7 +187,7 @@ def test_a_huge_file_is_refused_unread(tmp_path: Path) -> None:
     path = tmp_path / "film.csv"
     with path.open("wb") as file:
         file.truncate(LIMIT_BYTES + 1)
-    assert "expected at most 50 MB" in _faults(path)[0]
+    assert _faults(path) == (f"{path}: found 50.0 MB, expected at most 50 MB; thin the table out",)
 
 
 def test_a_path_that_is_no_path_is_refused() -> None:
@@ -205,5 +206,5 @@ def test_find_reads_a_table_beside_its_folder_and_records_its_hash(tmp_path: Pat
     assert Path(material.path).read_text() == GOOD
     assert material.range_nm == (400.0, 500.0)
     assert find(tmp_path / "tables" / "red-film.csv").medium == material.medium
-    with pytest.raises(InputError, match="tables/other.csv: no such file"):
+    with pytest.raises(InputError, match=r"tables/other\.csv: no such file"):
         find("tables/other.csv", folder=tmp_path)
