@@ -76,8 +76,8 @@ class Faults:
         self.lines.append("".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in line))
 
     def collecting(self, key: str = "") -> "_Noting":
-        """Return a context that notes the faults of whatever refuses in it, as faults of `key`."""
-        return _Noting(lambda line: self.add(key, line))
+        """Return a context that notes the faults of whatever refuses in it, as faults of `key`, said once."""
+        return _Noting(lambda line: self.add(key, line.removeprefix(f"{key}: ")))
 
     def taking_over(self) -> "_Noting":
         """Return a context that notes the faults of whatever refuses in it, whose lines name their place already."""

@@ -180,7 +180,7 @@ class Stack:
         layers = [(layer_place(layer.name), layer.material, layer.emits) for layer in self.layers]
         return (("above", self.above.material, False), *layers, ("below", self.below.material, False))
 
-    def with_layer(self, name: str, **changes: Any) -> "Stack":
+    def with_layer(self, name: str, /, **changes: Any) -> "Stack":
         """Return the stack with one layer changed.
 
         Parameters

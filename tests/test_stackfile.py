@@ -211,7 +211,7 @@ MATERIALS = st.one_of(
 )
 OUTERS = st.builds(Outer, material=MATERIALS, counts_as=st.sampled_from([None, "free", "held"]))
 SPECTRA = st.one_of(
-    st.builds(Gaussian, peak_nm=_positive(600, 900), fwhm_nm=_positive(20, 300)),
+    st.builds(Gaussian, peak_nm=_positive(600, 900), fwhm_nm=_positive(60, 300)),
     st.lists(st.floats(0.01, 1e6), min_size=2, max_size=6).map(
         lambda values: SpectrumTable(wavelength_nm=np.linspace(400, 1200, len(values)), per_nm=np.array(values))
     ),

@@ -98,11 +98,8 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
 
 def _material(faults: Faults, key: str, spec: Any, home: Path) -> Material:
     """Return the material meant, or note why there is none."""
-    found_one = Faults()
-    with found_one.collecting():
+    with faults.collecting(key):
         return find(spec, folder=home)
-    for line in found_one.lines:
-        faults.add(key, line.removeprefix("material: "))
     return _MATERIAL
 
 
