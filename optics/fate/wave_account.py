@@ -1,0 +1,112 @@
+"""Which integrals the ledger of wave optics needs, and the cases in which an exact answer makes one needless."""
+
+import numpy as np
+
+from optics.fate import wave
+from optics.fate.exits import Layout
+from optics.fate.ledger import Account, merge
+from optics.fate.wave import Settings
+from optics.waves.coherent import Real
+from optics.waves.paths import Index, Integral
+from optics.waves.scene import Scene
+
+THINNEST_ZONE = 1e-12
+"""A bound zone narrower than this, in units of k0, is none."""
+
+
+def account(scene: Scene, settings: Settings) -> Account:
+    """Integrate everything, wavelengths that need the same integrals together."""
+    film = scene.film_index
+    bound = scene.far_end - scene.open_end > THINNEST_ZONE
+    kinds = np.stack([film.imag > 0.0, scene.far_end > film.real, bound, absorbers(scene) > 0])
+    parts = []
+    for kind in np.unique(kinds, axis=1).T:
+        chosen = np.flatnonzero((kinds == kind[:, None]).all(axis=0))
+        alike = scene.at(chosen)
+        parts.append((chosen, _bounded(alike, settings) if kind[2] else _unbounded(alike, settings)))
+    return merge(parts, scene.wavelengths)
+
+
+def absorbers(scene: Scene) -> Index:
+    """Count per wavelength what can take bound light apart from the film."""
+    count = np.zeros(scene.wavelengths, dtype=np.intp)
+    for medium in scene.group:
+        count += scene.index[medium].imag > 0.0
+    return count + sum(side.absorbs and not side.plates for side in scene.sides)
+
+
+def _unbounded(scene: Scene, settings: Settings) -> Account:
+    """Everything can leave: the film keeps what is not handed on."""
+    dip = wave.dip(scene, scene.far_end, settings)
+    rise = wave.riser(scene, scene.far_end, settings)
+    zone = wave.open_zone(scene, settings)
+    nothing = np.zeros(scene.wavelengths)
+    no = np.zeros(scene.wavelengths, dtype=bool)
+    miss = zone.values[Layout.power] - dip.values[0]
+    return Account(
+        power=dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene),
+        zone=zone.values,
+        bound_first_flight=nothing,
+        bound_taken=np.zeros((scene.media, scene.wavelengths)),
+        has_bound=no,
+        unfinished=no,
+        miss=miss,
+        error=dip.error + rise.error + zone.error + np.abs(miss),
+    )
+
+
+def _bounded(scene: Scene, settings: Settings) -> Account:
+    film = scene.film_index
+    absorbing = bool(film[0].imag > 0.0)
+    past_film = bool(scene.far_end[0] > film[0].real)
+    dip = wave.dip(scene, scene.far_end, settings, flights=absorbing and not past_film)
+    rise = wave.riser(scene, scene.far_end, settings, flights=absorbing and not past_film)
+    power = dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene)
+    own = wave.dip(scene, scene.far_end, settings, start=scene.open_end)
+    zone = wave.open_zone(scene, settings)
+    miss = zone.values[Layout.power] + own.values[0] - dip.values[0]
+    error = dip.error + rise.error + own.error + zone.error + np.abs(miss)
+    flown = np.zeros(scene.wavelengths)
+    if absorbing:
+        if past_film:
+            dip = wave.dip(scene, film.real, settings, flights=True)
+            rise = wave.riser(scene, film.real, settings, flights=True)
+            error = error + dip.error + rise.error
+        flown = dip.values[1] + rise.values[1] - zone.values[Layout.first_flight]
+    taken, missed = _taken_while_bound(scene, settings, power - zone.values[Layout.power], own)
+    yes = np.ones(scene.wavelengths, dtype=bool)
+    return Account(
+        power=power,
+        zone=zone.values,
+        bound_first_flight=flown,
+        bound_taken=taken,
+        has_bound=yes,
+        unfinished=yes & (absorbers(scene) == 0) & (not absorbing),
+        miss=miss,
+        error=error + missed,
+    )
+
+
+def _taken_while_bound(scene: Scene, settings: Settings, power: Real, own: Integral) -> tuple[Real, Real]:
+    """Return what each medium but the film takes of bound light, and the error made.
+
+    Exact cases first: nobody but the film absorbs, or a clear film has one absorbing neighbour. Elsewhere fluxes are
+    integrated on the real axis; the power integrated at the same nodes, against the same on its own path, tells
+    what the nodes missed.
+    """
+    taken = np.zeros((scene.media, scene.wavelengths))
+    missed = np.zeros(scene.wavelengths)
+    clear = scene.film_index.imag == 0.0
+    count = absorbers(scene)
+    takers = [m for m in scene.group if scene.index[m].imag.any()]
+    takers += [s.outer for s in scene.sides if s.absorbs and not s.plates]
+    alone = clear & (count == 1)
+    for medium in takers:
+        wall = medium not in scene.group
+        taken[medium] = np.where(alone & (wall | (scene.index[medium].imag > 0.0)), power, 0.0)
+    shared = np.flatnonzero((count > 0) & ~alone)
+    if len(shared):
+        zone = wave.bound_zone(scene.at(shared), settings)
+        taken[:, shared] = zone.values[1:]
+        missed[shared] = zone.error + np.abs(zone.values[0] - own.values[0, shared])
+    return taken, missed

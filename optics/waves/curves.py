@@ -1,0 +1,81 @@
+"""Curves in the plane of the in-plane wave number on which the densities are integrated.
+
+``panel`` stays on the real axis between two light lines; ``dip`` runs below it; ``riser`` climbs from the end of a
+dip to a point that moves with the film's complex wave number. Every one is analytic in its parameter u in (0, 1) and
+clusters its nodes where a square-root end of the density may sit.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optics.waves.paths import Index, Rows
+
+Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+DEPTH = 0.5
+"""How far a dip leaves the real axis, in units of the angle it runs through over pi/2."""
+
+
+@dataclass(frozen=True)
+class Points:
+    """Nodes of a path: the in-plane wave number, its derivative, and the film's wave number less it."""
+
+    q: Complex
+    slope: Complex
+    short_of_film: Complex  # film index - q, without cancellation
+
+
+def panels(owner: Index, low: Real, high: Real) -> Rows:
+    """Return rows for real-axis panels from ``low`` to ``high``."""
+    return Rows(owner, np.zeros(len(owner)), np.ones(len(owner)), np.stack([low, high]))
+
+
+def on_panel(rows: Rows, u: Real) -> tuple[Real, Real]:
+    """Return q = low + (high - low) sin^2(pi u/2) and its derivative: square-root ends turn analytic."""
+    low, high = rows.shape[0][:, None], rows.shape[1][:, None]
+    angle = 0.5 * np.pi * u
+    sine, cosine = np.sin(angle), np.cos(angle)
+    width = high - low
+    return low + width * (sine * sine), np.pi * width * (sine * cosine)
+
+
+def middle(q: Real) -> Real:
+    """Return a q inside each row's panel, (row, 1): on which side of a light line the row lies."""
+    return q[:, q.shape[1] // 2, None]
+
+
+def on_dip(rows: Rows, u: Real, film: Complex, start: Real | None = None) -> Points:
+    """Return nodes below the real axis from ``start`` (0 if None) to the real end ``rows.shape[0]``.
+
+    q = end sin(phi); from 0 the nodes cluster at the end alone, from a light line at both ends.
+    """
+    end = rows.shape[0][:, None]
+    if start is None:
+        first, rest, step = 0.0, (1.0 - u) ** 2, 2.0 * (1.0 - u)
+    else:
+        first = np.arcsin(np.minimum(start / end, 1.0))
+        rest, step = np.cos(0.5 * np.pi * u) ** 2, 0.5 * np.pi * np.sin(np.pi * u)
+    run = 0.5 * np.pi - first
+    dip = DEPTH * run / (0.5 * np.pi)
+    to_go = run * rest + 1j * dip * np.sin(np.pi * rest)
+    q = end * np.cos(to_go)
+    slope = end * np.sin(to_go) * (run + 1j * np.pi * dip * np.cos(np.pi * rest)) * step
+    return Points(q, slope, (film - end) + 2.0 * end * np.sin(0.5 * to_go) ** 2)
+
+
+def on_riser(rows: Rows, u: Real, film: Complex) -> Points:
+    """Return nodes straight up from the real end ``rows.shape[0]``, as high as ``end / Re(film)`` times Im(film)."""
+    end = rows.shape[0][:, None]
+    reach = end / film.real
+    rest = 1.0 - u
+    height = reach * film.imag
+    q = np.empty(u.shape, dtype=complex)
+    q.real = end
+    q.imag = height * (1.0 - rest * rest)
+    short = np.empty(u.shape, dtype=complex)
+    short.real = film.real - end
+    short.imag = film.imag * (1.0 - reach) + height * (rest * rest)
+    return Points(q, 2j * height * rest, short)

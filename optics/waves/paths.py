@@ -1,0 +1,134 @@
+"""Quadrature over the in-plane wave number: nested rules, curves in the complex plane, refinement row by row."""
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from functools import cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+Real = NDArray[np.float64]
+Index = NDArray[np.intp]
+
+BLOCK = 3000
+"""Nodes evaluated at a time: enough to hide the cost of a call, few enough for the arrays to stay in cache."""
+
+
+@cache
+def fejer(order: int) -> tuple[Real, Real]:
+    """Return nodes on (0, 1) and two columns of weights: Fejer's second rule and the half-order rule nested in it.
+
+    Waldvogel, BIT 46, 195 (2006), eq. 2.3, mapped from (-1, 1). Neither rule uses the end points, where a
+    map and an integrand can meet as zero times infinity.
+    """
+    if order % 4:
+        raise ValueError("the order of a nested rule is a multiple of four")
+    theta = np.pi * np.arange(1, order) / order
+    weights = np.zeros((order - 1, 2))
+    weights[:, 0] = _fejer_weights(theta, order)
+    weights[1::2, 1] = _fejer_weights(theta[1::2], order // 2)
+    # 1 - cos loses digits near zero, where curves start at square-root ends
+    nodes = np.sin(0.5 * theta) ** 2
+    nodes.setflags(write=False)
+    weights.setflags(write=False)
+    return nodes, weights
+
+
+def _fejer_weights(theta: Real, order: int) -> Real:
+    odd = 2.0 * np.arange(1, order // 2 + 1) - 1.0
+    terms = np.sin(np.outer(theta, odd)) / odd
+    weights: Real = 2.0 * np.sin(theta) / order * terms.sum(axis=1)
+    return weights
+
+
+@dataclass(frozen=True)
+class Rows:
+    """Pieces of integration paths: one row is one wavelength on one piece.
+
+    ``owner`` is the wavelength a row belongs to; ``start`` and ``stop`` bound the curve parameter; ``shape`` holds
+    what the curve needs, (parameter, row).
+    """
+
+    owner: Index
+    start: Real
+    stop: Real
+    shape: Real
+
+    def __len__(self) -> int:
+        return len(self.owner)
+
+    def take(self, which: Index | NDArray[np.bool_] | slice) -> "Rows":
+        """Return the chosen rows."""
+        return Rows(self.owner[which], self.start[which], self.stop[which], self.shape[:, which])
+
+    def halves(self) -> "Rows":
+        """Return both halves of every row."""
+        middle = 0.5 * (self.start + self.stop)
+        lower, upper = replace(self, stop=middle), replace(self, start=middle)
+        return join((lower, upper))
+
+
+def join(parts: tuple[Rows, ...]) -> Rows:
+    """Return the rows of several sets as one."""
+    return Rows(
+        np.concatenate([p.owner for p in parts]),
+        np.concatenate([p.start for p in parts]),
+        np.concatenate([p.stop for p in parts]),
+        np.concatenate([p.shape for p in parts], axis=1),
+    )
+
+
+@dataclass(frozen=True)
+class Integral:
+    """Integrals per quantity and wavelength, with an error estimate per wavelength (largest over the quantities)."""
+
+    values: Real  # (quantity, wavelength)
+    error: Real  # (wavelength,)
+
+
+Density = Callable[[Rows, Real], Real]
+"""Takes rows and curve parameters (row, node); returns (quantity, row, node), the Jacobian included."""
+
+
+def integrate(
+    density: Density, rows: Rows, *, wavelengths: int, order: int, tolerance: float, halvings: int = 30
+) -> Integral:
+    """Integrate ``density`` along every row, halving the rows whose two nested rules disagree.
+
+    The error of a row is the rules' difference to the power 3/2: for a density that is analytic about the row the
+    difference is the error of the half-order rule, whose square is that of the full one; the power in between
+    leaves room (the habit of QUADPACK, Piessens et al. 1983). Rows that still disagree after ``halvings`` are
+    counted with their plain difference.
+    """
+    values: Real | None = None
+    error = np.zeros(wavelengths)
+    for left in range(halvings, -1, -1):
+        if not len(rows):
+            break
+        fine, coarse = _evaluate(density, rows, order)
+        if not np.isfinite(fine).all():
+            raise FloatingPointError("a density is not finite on its path")
+        if values is None:
+            values = np.zeros((len(fine), wavelengths))
+        gap = np.abs(fine - coarse).max(axis=0)
+        guess = np.minimum(gap, gap**1.5)
+        done = (guess <= tolerance) if left else np.ones(len(rows), dtype=bool)
+        np.add.at(values, (slice(None), rows.owner[done]), fine[:, done])
+        np.add.at(error, rows.owner[done], np.where(guess <= tolerance, guess, gap)[done])
+        rows = rows.take(~done).halves()
+    if values is None:
+        raise ValueError("nothing to integrate: no rows")
+    return Integral(values, error)
+
+
+def _evaluate(density: Density, rows: Rows, order: int) -> tuple[Real, Real]:
+    nodes, weights = fejer(order)
+    step = max(1, BLOCK // len(nodes))
+    both = []
+    for first in range(0, len(rows), step):
+        part = rows.take(slice(first, first + step))
+        width = (part.stop - part.start)[:, None]
+        sums = density(part, part.start[:, None] + width * nodes) @ weights
+        both.append(sums * width)
+    total = np.concatenate(both, axis=1)
+    return total[..., 0], total[..., 1]

@@ -1,0 +1,158 @@
+"""Plates: thick slabs that carry intensities, with thin coatings between them, as the thin group sees them.
+
+Per polarisation and in-plane wave number every interface (coatings included) has reflectances from both sides and one
+transmittance; multiple passes are summed as geometric series from the outermost interface inwards.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optics.waves.coherent import Complex, Outlook, Real, admittances, look, normal_on_axis, reflection, squared
+from optics.waves.curves import middle
+from optics.waves.scene import Side, View
+
+Mask = NDArray[np.bool_]
+
+
+class Waves:
+    """Admittances and layer phases of a view's media at real ``q``, each computed once when first asked for."""
+
+    def __init__(self, view: View, q: Real) -> None:
+        self.view, self.q = view, q
+        self._kz: dict[int, Complex] = {}
+        self._own: dict[int, Complex] = {}
+        self._turn: dict[int, Complex] = {}
+
+    def kz(self, medium: int) -> Complex:
+        """Normal wave number of a medium."""
+        if medium not in self._kz:
+            self._kz[medium] = normal_on_axis(self.view.eps[medium], self.q)
+        return self._kz[medium]
+
+    def own(self, medium: int) -> Complex:
+        """Admittance of a medium, (polarisation, row, node)."""
+        if medium not in self._own:
+            self._own[medium] = admittances(self.kz(medium), self.view.eps[medium])
+        return self._own[medium]
+
+    def layer(self, medium: int) -> tuple[Complex, Complex]:
+        """Admittance and exp(2 i kz d) of a thin layer."""
+        if medium not in self._turn:
+            self._turn[medium] = np.exp(2j * self.view.phase[medium] * self.kz(medium))
+        return self.own(medium), self._turn[medium]
+
+    def look(self, layers: tuple[int, ...], behind: int) -> Outlook:
+        """Look outwards through ``layers`` (nearest first) at the medium ``behind``."""
+        return look([self.layer(j) for j in layers], self.own(behind))
+
+
+@dataclass(frozen=True)
+class Meeting:
+    """What one unit of power does when it meets layers: reflected, passed on, taken by each medium."""
+
+    back: Real
+    on: Real
+    taken: dict[int, Real]
+
+
+def meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Meeting:
+    """Send light from the lossless medium ``origin`` through coherent ``layers`` to ``behind``."""
+    outlook = waves.look(layers, behind)
+    own = waves.own(origin)
+    amplitude = reflection(own, outlook.face)
+    incoming = own.real
+    unit = squared(1.0 + amplitude) / np.where(incoming > 0.0, incoming, 1.0)
+    fluxes = outlook.fluxes(unit)
+    taken = {j: fluxes[i] - fluxes[i + 1] for i, j in enumerate(layers) if waves.view.eps[j].imag.any()}
+    return Meeting(squared(amplitude), fluxes[-1], taken)
+
+
+@dataclass(frozen=True)
+class _Stage:
+    """One plate and what lies behind it, on its way outwards."""
+
+    plate: int
+    pass_through: Real  # attenuation of one pass
+    outward: Meeting
+    inward: Meeting | None
+    beyond: Real  # reflectance seen from inside the next plate, zero before an outer medium
+    far_face: Real  # reflectance at this plate's far face, everything beyond included
+
+    @property
+    def seen(self) -> Real:
+        """Reflectance of the plate and all beyond, seen from just inside its near face."""
+        return self.pass_through * self.pass_through * self.far_face
+
+    @property
+    def onward(self) -> Real:
+        """Power that enters the next medium, all orders, per unit that enters this plate."""
+        series = 1.0 if self.inward is None else 1.0 - self.inward.back * self.beyond
+        out: Real = self.pass_through * self.outward.on / series
+        return out
+
+
+@dataclass(frozen=True)
+class Shell:
+    """All plates of one side as the thin group sees them."""
+
+    side: Side
+    stages: tuple[_Stage, ...]
+    reflects: Real
+    passes: Real
+
+    def taken(self, entering: Real) -> dict[int, Real]:
+        """Return what each medium takes of the power ``entering`` the first plate, all orders summed."""
+        out: dict[int, Real] = {}
+        for stage in self.stages:
+            lost = 1.0 - stage.pass_through
+            out[stage.plate] = entering * lost * (1.0 + stage.pass_through * stage.far_face)
+            arriving = entering * stage.pass_through
+            entering = entering * stage.onward
+            for medium, share in stage.outward.taken.items():
+                out[medium] = arriving * share
+            if stage.inward is not None:
+                for medium, share in stage.inward.taken.items():
+                    out[medium] = out.get(medium, 0.0) + entering * stage.beyond * share
+        return out
+
+
+def shell(waves: Waves, side: Side) -> Shell:
+    """Fold the plates of ``side``, outermost first."""
+    stages: list[_Stage] = []
+    behind = side.outer
+    for plate, coating in zip(reversed(side.plates), reversed(side.coatings), strict=True):
+        outward = meet(waves, plate, coating, behind)
+        inward = meet(waves, behind, coating[::-1], plate) if stages else None
+        # where this plate is dark nothing gets past it: no series to sum behind it
+        beyond = stages[-1].seen * (waves.kz(plate).real > 0.0) if stages else np.zeros_like(outward.back)
+        far = outward.back
+        if inward is not None:
+            far = far + outward.on * outward.on * beyond / (1.0 - inward.back * beyond)
+        stages.append(_Stage(plate, _one_pass(waves, plate), outward, inward, beyond, far))
+        behind = plate
+    stages.reverse()
+    passes = np.ones_like(stages[0].far_face)
+    for stage in stages:
+        passes = passes * stage.onward
+    return Shell(side, tuple(stages), stages[0].seen, passes)
+
+
+def _one_pass(waves: Waves, plate: int) -> Real:
+    """Return exp(-alpha t/cos(theta)); zero where light cannot travel in the plate."""
+    kz = waves.kz(plate).real
+    view = waves.view
+    travels = kz > 0.0
+    depth = 2.0 * view.loss[plate] * view.phase[plate] * view.index[plate].real
+    out: Real = np.exp(-depth / np.where(travels, kz, 1.0)) * travels
+    return out
+
+
+def is_sink(view: View, side: Side, q: Real) -> Mask:
+    """Tell per row whether light of this side cannot leave it: q beyond an index on its way out."""
+    inside = middle(q)
+    out: Mask = np.zeros(inside.shape, dtype=bool)
+    for medium in side.clear:
+        out |= inside > view.index[medium].real
+    return out

@@ -1,0 +1,137 @@
+"""A stack as arrays over wavelength: what the kernels see.
+
+Media run from the outer medium above (position 0) to the one below. The film and the thin layers that touch it form
+the thin group; outside it stand plates, which carry intensities, with thin coatings between them.
+"""
+
+from dataclasses import dataclass, replace
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optics.waves.source import Film, Moments
+
+Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+Index = NDArray[np.intp]
+
+
+@dataclass(frozen=True)
+class Side:
+    """One side of the thin group, from the group outwards.
+
+    ``plates`` are positions of plates, ``coatings[i]`` those of the thin layers behind plate i (outwards), and
+    ``outer`` that of the medium that ends the side. ``absorbs``: the outer medium swallows what enters it.
+    """
+
+    plates: tuple[int, ...]
+    coatings: tuple[tuple[int, ...], ...]
+    outer: int
+    absorbs: bool
+    free: bool
+
+    @property
+    def touching(self) -> int:
+        """Position of the medium that touches the thin group."""
+        return self.plates[0] if self.plates else self.outer
+
+    @property
+    def clear(self) -> tuple[int, ...]:
+        """Positions of the media that light must be able to enter to leave by this side."""
+        return self.plates if self.absorbs else (*self.plates, self.outer)
+
+
+@dataclass(frozen=True)
+class Scene:
+    """Arrays of a stack; ``index`` and ``phase`` are (medium, wavelength).
+
+    ``index`` is what waves see: plates and outer media that pass light on enter with the real part; ``loss`` holds
+    the imaginary part that attenuates plates. ``phase`` is k0 d, zero for outer media.
+    """
+
+    index: Complex
+    loss: Real
+    phase: Real
+    film: int
+    above: Side
+    below: Side
+    layers_up: tuple[int, ...]  # thin layers from the film upwards
+    layers_down: tuple[int, ...]
+    in_plane: float
+    moments: Moments
+
+    @property
+    def media(self) -> int:
+        """Number of media, outer ones included."""
+        return len(self.index)
+
+    @property
+    def wavelengths(self) -> int:
+        """Number of wavelengths."""
+        return self.index.shape[1]
+
+    @property
+    def sides(self) -> tuple[Side, Side]:
+        """Both sides, above first."""
+        return self.above, self.below
+
+    @cached_property
+    def eps(self) -> Complex:
+        """Permittivity, (medium, wavelength)."""
+        return self.index * self.index
+
+    @cached_property
+    def film_index(self) -> Complex:
+        """Film index, (wavelength,)."""
+        return self.index[self.film]
+
+    @cached_property
+    def group(self) -> tuple[int, ...]:
+        """Thin layers of the group without the film."""
+        return (*self.layers_up, *self.layers_down)
+
+    @cached_property
+    def open_end(self) -> Real:
+        """Largest q at which light can leave the thin group, (wavelength,); zero if it cannot."""
+        ends = [self.index[s.touching].real for s in self.sides if not (s.absorbs and not s.plates)]
+        return np.max(ends, axis=0) if ends else np.zeros(self.wavelengths)
+
+    @cached_property
+    def far_end(self) -> Real:
+        """Where photons end and near field begins: the largest real index in or touching the group, metals apart."""
+        return np.maximum(self.film_index.real, self.highest_neighbour)
+
+    @cached_property
+    def highest_neighbour(self) -> Real:
+        """Largest real index of the other media of the group and those that touch it, metals (Re eps < 0) apart."""
+        others = [*self.group, *(s.touching for s in self.sides)]
+        real = np.where(self.eps[others].real < 0.0, 0.0, self.index[others].real)
+        return real.max(axis=0)
+
+    def view(self, rows: Index) -> "View":
+        """Return the scene at chosen wavelengths, shaped to broadcast over nodes."""
+        return View(self, rows)
+
+    def at(self, which: Index) -> "Scene":
+        """Return the scene at some of its wavelengths only."""
+        return replace(
+            self, index=self.index[:, which], loss=self.loss[:, which], phase=self.phase[:, which]
+        )
+
+
+class View:
+    """A scene at the wavelengths of some rows, (medium, row, 1)."""
+
+    def __init__(self, scene: Scene, owner: Index) -> None:
+        self.scene = scene
+        self.index = scene.index[:, owner, None]
+        self.eps = scene.eps[:, owner, None]
+        self.loss = scene.loss[:, owner, None]
+        self.phase = scene.phase[:, owner, None]
+
+    @cached_property
+    def film(self) -> Film:
+        """The emitting film."""
+        at = self.scene.film
+        return Film(self.eps[at], self.index[at], self.phase[at], self.scene.in_plane, self.scene.moments)
