@@ -33,7 +33,12 @@ def found(value: object) -> str:
 
 def quoted(text: str) -> str:
     """Return text in quotes, cut when long."""
-    return f'"{text}"' if len(text) <= LONGEST_QUOTE else f'"{text[:LONGEST_QUOTE]}..."'
+    return f'"{cut(text)}"'
+
+
+def cut(text: str) -> str:
+    """Return text, cut when too long to be quoted in a message."""
+    return text if len(text) <= LONGEST_QUOTE else f"{text[:LONGEST_QUOTE]}..."
 
 
 def is_number(value: object) -> TypeGuard[Real]:
@@ -71,9 +76,7 @@ class Faults:
 
     def add(self, key: str, message: str) -> None:
         """Note a fault of `key` (empty when the fault is of the whole object)."""
-        line = ": ".join(part for part in (self.place, key, message) if part)
-        # A fault is one line, whatever the names in the input hold.
-        self.lines.append("".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in line))
+        self.lines.append(_one_line(": ".join(part for part in (self.place, key, message) if part)))
 
     def collecting(self, key: str = "") -> "_Noting":
         """Return a context that notes the faults of whatever refuses in it, as faults of `key`, said once."""
@@ -81,7 +84,7 @@ class Faults:
 
     def taking_over(self) -> "_Noting":
         """Return a context that notes the faults of whatever refuses in it, whose lines name their place already."""
-        return _Noting(self.lines.append)
+        return _Noting(lambda line: self.lines.append(_one_line(line)))
 
     def settle(self) -> None:
         """Raise `InputError` with everything noted, if anything was."""
@@ -117,12 +120,12 @@ class Faults:
         self.add(key, f"found {found(value)}, expected {kind}{''.join(rules)}{like}")
         return math.nan
 
-    def text(self, key: str, value: object, *, expected: str, empty: bool = False) -> str:
-        """Return `value` as a line of text, or note why it is none and return an empty one."""
-        if isinstance(value, str) and (value.strip() == value != "" or (empty and not value)) and value.isprintable():
-            return value
-        self.add(key, f"found {found(value)}, expected {expected}")
-        return ""
+    def text(self, key: str, value: object, *, expected: str, longest: int, empty: bool = False) -> None:
+        """Note a `value` that is not one line of text of at most `longest` characters, without blanks around it."""
+        if not isinstance(value, str) or not value.isprintable() or value.strip() != value or not (value or empty):
+            self.add(key, f"found {found(value)}, expected {expected}")
+        elif len(value) > longest:
+            self.add(key, f"found {len(value)} characters, expected {expected} of at most {longest}")
 
     def choice(self, key: str, value: object, valid: Collection[str]) -> None:
         """Note a `value` that is none of the `valid` words."""
@@ -169,6 +172,11 @@ class _Noting:
         for line in error.faults:
             self.note(line)
         return True
+
+
+def _one_line(text: str) -> str:
+    """Return text as one line, whatever the names in the input hold."""
+    return "".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in text)
 
 
 def _decimal_cure(value: object) -> str:

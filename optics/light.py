@@ -72,9 +72,11 @@ def even_wavelengths(*, from_nm: float, to_nm: float, step_nm: float) -> FloatAr
         faults.add("to_nm", f"found {last:.12g}, expected more than from_nm, {first:.12g}")
     faults.settle()
     steps = (last - first) / step
-    whole = round(steps)
+    whole = round(min(steps, 2 * MOST_WAVELENGTHS))
     if whole > MOST_WAVELENGTHS:
-        faults.add("step_nm", f"found {step:.12g}, {whole} steps, expected at most {MOST_WAVELENGTHS}; widen the step")
+        faults.add(
+            "step_nm", f"found {step:.12g}, {steps:.3g} steps, expected at most {MOST_WAVELENGTHS}; widen the step"
+        )
     elif whole < 1 or abs(steps - whole) > 1e-9 * whole:  # a step like 0.1 is exact to 1e-16 only
         cure = f"to_nm = {first + max(1, int(steps)) * step:.12g} does"
         faults.add("step_nm", f"found {step:.12g}, whose steps from {first:.12g} do not end at {last:.12g}; {cure}")

@@ -14,6 +14,7 @@ from optics.faults import Faults, as_float, found, is_number
 PLACE = "light.spectrum"
 SEEN = ("inside",)
 SEEN_LATER = ("above", "below")
+NARROWEST_NM = 1e-3  # a narrower Gaussian is a slip, and its exponents leave the range of floats
 TAIL_WORTH_SAYING = 1e-3  # share of a Gaussian's births outside the light's range that is mentioned
 FWHM_PER_SIGMA = 2.0 * math.sqrt(2.0 * math.log(2.0))
 
@@ -38,11 +39,12 @@ class Gaussian:
 
     def __post_init__(self) -> None:
         faults = Faults(PLACE)
-        for key, example in (("peak_nm", 768), ("fwhm_nm", 40)):
-            number = faults.number(key, getattr(self, key), unit="nm", above=0, example=example)
-            object.__setattr__(self, key, number)
+        peak = faults.number("peak_nm", self.peak_nm, unit="nm", above=0, example=768)
+        width = faults.number("fwhm_nm", self.fwhm_nm, unit="nm", at_least=NARROWEST_NM, example=40)
         _check_seen(faults, self.seen)
         faults.settle()
+        object.__setattr__(self, "peak_nm", peak)
+        object.__setattr__(self, "fwhm_nm", width)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -182,7 +184,8 @@ def _raw(spectrum: Spectrum, wavelength: FloatArray) -> FloatArray:
     if isinstance(spectrum, SpectrumTable):
         return np.interp(wavelength, spectrum.wavelength_nm, spectrum.per_nm)
     sigma = spectrum.fwhm_nm / FWHM_PER_SIGMA
-    births: FloatArray = np.exp(-0.5 * ((wavelength - spectrum.peak_nm) / sigma) ** 2)
+    with np.errstate(over="ignore"):  # a peak out of all reach: its births are zero
+        births: FloatArray = np.exp(-0.5 * ((wavelength - spectrum.peak_nm) / sigma) ** 2)
     return births
 
 

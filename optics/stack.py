@@ -8,7 +8,7 @@ import numpy as np
 
 from optics.byvalue import FloatArray
 from optics.errors import InputError
-from optics.faults import Faults, quoted
+from optics.faults import Faults, cut, quoted
 from optics.light import Light
 from optics.media.cabinet import MaterialLike, find
 from optics.media.domain import RANGE_SLACK
@@ -23,6 +23,7 @@ THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
     "thickness_mm": nm_from_mm,
 }
 THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
+LONGEST_NAME, LONGEST_TITLE = 60, 200  # characters that columns and figures have room for
 OUTER_NAMES = ("above", "below")
 DEPTHS_LATER = ("pump_nm", "decay_nm", "at_nm", "table")
 
@@ -262,14 +263,14 @@ def layer_place(name: object) -> str:
 
 def check_title(faults: Faults, title: object) -> None:
     """Note a title that is not one line of text."""
-    faults.text("title", title, expected="a line of text", empty=True)
+    faults.text("title", title, expected="a line of text", longest=LONGEST_TITLE, empty=True)
 
 
 def check_layer(
     faults: Faults, *, name: object, material: object, thickness_nm: object, emits: object, phases: object
 ) -> None:
     """Note what is wrong with the parts of one layer."""
-    faults.text("name", name, expected='a short text, for example "film"')
+    faults.text("name", name, expected='a short text, for example "film"', longest=LONGEST_NAME)
     if name in OUTER_NAMES:
         faults.add("name", f'found "{name}", which names an outer medium; choose another name')
     faults.kind("material", material, Material)
@@ -286,9 +287,11 @@ def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool])
         return
     for name in dict.fromkeys(name for name in names if names.count(name) > 1):
         faults.add(layer_place(name), f"name: used {names.count(name)} times, expected a name of its own for each")
-    emitting = [name for name, emit in zip(names, emits, strict=True) if emit]
+    emitting = [cut(name) for name, emit in zip(names, emits, strict=True) if emit]
     if not emitting:
-        faults.add("layer", f"emits: no layer emits, expected one; set emits = true in one of {', '.join(names)}")
+        faults.add(
+            "layer", f"emits: no layer emits, expected one; set emits = true in one of {', '.join(map(cut, names))}"
+        )
     if len(emitting) > 1:
         faults.add("layer", f"emits: {len(emitting)} layers emit ({', '.join(emitting)}), expected one")
 

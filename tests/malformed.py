@@ -280,7 +280,7 @@ CASES = [
     Case("kind that is to come", edited(('"gaussian"', '"from-absorption"')), ("not available yet",)),
     Case("seen from above", edited(('"inside"', '"above"')), ("light.spectrum: seen", "not available yet")),
     Case("seen from nowhere", edited(('"inside"', '"outside"')), ("light.spectrum: seen", 'expected "inside"')),
-    Case("width of zero", edited(("fwhm_nm = 40", "fwhm_nm = 0")), ("light.spectrum: fwhm_nm: found 0", "above 0")),
+    Case("width of zero", edited(("fwhm_nm = 40", "fwhm_nm = 0")), ("light.spectrum: fwhm_nm: found 0", "from 0.001")),
     Case("no peak", edited(("peak_nm = 768\n", "")), ("light.spectrum: peak_nm: missing",)),
     Case("peak far from the light", edited(("peak_nm = 768", "peak_nm = 7680")), ("light.spectrum", "no births")),
     Case(
@@ -321,6 +321,7 @@ CASES = [
     Case("material that is true", edited(('"film.csv"', "true")), (_FILM, "material", "found")),
     Case("unknown material", edited(('"float-glass"', '"flaot-glass"')), ('layer "glass"', "did you mean float-glass")),
     Case("negative k", edited(('"film.csv"', "{ n = 2.5, k = -0.02 }")), (_FILM, "material: k: found -0.02")),
+    Case("index beyond floats", edited(('"film.csv"', f"1{'0' * 400}")), (_FILM, "material: ")),
     Case("n of zero", edited(('"film.csv"', "{ n = 0.0 }")), (_FILM, "material: n: found 0")),
     Case("unknown key in a material", edited(('"film.csv"', "{ n = 2.5, kk = 0.1 }")), (_FILM, '"kk"')),
     Case("unknown published page", edited(('"film.csv"', "{ published = 7 }")), (_FILM, "published: found 7")),
@@ -334,6 +335,14 @@ CASES = [
     Case("name twice", edited(('"glass"', '"film"')), (_FILM, "used 2 times")),
     Case("no name", edited(('name = "glass"\n', "")), ("layer 2: name: missing",)),
     Case("empty name", edited(('"glass"', '""')), ("layer 2: name: found empty text",)),
+    Case("name without end", edited(('"glass"', f'"{"glass" * 20}"')), ("name: found 100 characters", "at most 60")),
+    Case("name with blanks around it", edited(('"glass"', '" glass"')), ('name: found " glass" (text)',)),
+    Case("peak out of all reach", edited(("peak_nm = 768", "peak_nm = 1e300")), ("light.spectrum", "no births")),
+    Case(
+        "step beyond floats",
+        edited(("to_nm = 860", "to_nm = 1e300"), ("step_nm = 1", "step_nm = 1e-300")),
+        ("light: step_nm: found 1e-300", "at most 100000"),
+    ),
     Case("name of an outer medium", edited(('"glass"', '"below"')), ("names an outer medium",)),
     Case("name with a line break", edited(('"glass"', '"gla\\nss"')), ("name: found", "gla\\nss")),
     Case(

@@ -1,8 +1,11 @@
 """A stack file is read with every fault at once, and written so that it reads back the same."""
 
+import math
 import os
 import subprocess
 import sys
+import tomllib
+from datetime import date
 from pathlib import Path
 
 import numpy as np
@@ -262,6 +265,34 @@ def test_no_edit_of_a_stack_file_gives_anything_but_a_stack_or_a_refusal(text, p
     except InputError as refusal:
         assert refusal.faults
         assert all(line.isprintable() for line in refusal.faults)
+
+
+ODD = [None, True, 0, -1, 1e300, 5e-324, math.nan, 10**400, "", "a\nb", "film.csv", ".", "a\0.csv", [], [1], [[1]], [{}], {},
+       {"n": "1"}, {"published": ""}, {"material": {"material": 1}}, {"kind": "table", "file": 5, "wavelength_nm": 3},
+       {"kind": "table", "per_nm": [1], "wavelength_nm": [[1]]}, {"kind": ["gaussian"]}, date(2020, 1, 1), "table"]  # fmt: skip
+
+
+def _places(value, place=()):
+    parts = value.items() if isinstance(value, dict) else enumerate(value) if isinstance(value, list) else ()
+    for key, part in parts:
+        yield (*place, key)
+        yield from _places(part, (*place, key))
+
+
+@pytest.mark.parametrize("place", _places(tomllib.loads(GOOD)), ids=lambda place: ".".join(map(str, place)))
+def test_no_value_at_any_key_gives_anything_but_a_stack_or_a_refusal(place, tmp_path):
+    write_good(tmp_path)
+    for odd in ODD:
+        tables = tomllib.loads(GOOD)
+        table = tables
+        for key in place[:-1]:
+            table = table[key]
+        table[place[-1]] = odd
+        try:
+            assert isinstance(build_stack(tables, folder=tmp_path), Stack)
+        except InputError as refusal:
+            assert refusal.faults
+            assert all(line.isprintable() for line in refusal.faults)
 
 
 def test_the_pieces_that_the_malformed_inputs_replace_are_in_the_sound_file():
