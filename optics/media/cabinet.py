@@ -49,7 +49,11 @@ def find(spec: MaterialLike, *, folder: str | Path | None = None) -> Material:
     if isinstance(spec, Mapping):
         return _described(spec)
     if isinstance(spec, complex | int | float | np.number) and not isinstance(spec, bool):
-        return _constant(complex(spec).real, complex(spec).imag)
+        try:
+            index = complex(spec)
+        except OverflowError:  # a whole number of more than 308 digits
+            raise InputError("material: found a number too large for an index") from None
+        return _constant(index.real, index.imag)
     raise InputError(f"material: found {spec!r}, expected {_SPECS}")
 
 
