@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from optics.media.cabinet import find as find_material
     from optics.media.labtable import read_table
     from optics.media.material import Material
-    from optics.output.folder import write_result
+    from optics.output.result import write_result
     from optics.spectrum import Gaussian, SpectrumTable
     from optics.stack import Emission, Layer, Outer, Stack
     from optics.stackfile.reading import parse_stack, read_stack
@@ -59,7 +59,7 @@ _HOMES = {
     "read_stack": "optics.stackfile.reading:read_stack",
     "read_table": "optics.media.labtable:read_table",
     "solve": "optics.fate.solve:solve",
-    "write_result": "optics.output.folder:write_result",
+    "write_result": "optics.output.result:write_result",
     "write_stack": "optics.stackfile.writing:write_stack",
 }
 

@@ -1,0 +1,1 @@
+"""Writing only: tables, result folders, figures and what the screen shows. Nothing is computed here."""

@@ -1,0 +1,147 @@
+"""What a result was made from: a copy of the stack file that can be solved again, and the hashes of all inputs."""
+
+import hashlib
+from collections.abc import Collection
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+from optics.errors import InputError
+from optics.media.material import Material
+from optics.spectrum import Gaussian, SpectrumTable
+from optics.stack import Stack
+from optics.stackfile.writing import write_stack
+
+STACK_FILE = "stack.toml"
+TABLES = "tables"
+
+
+def copy_inputs(stack: Stack, folder: Path, *, stack_file: Path | None, taken: Collection[str]) -> None:
+    """Write the stack file and the tables it names into a result folder, so that they can be solved there.
+
+    Parameters
+    ----------
+    stack
+        What was solved.
+    folder
+        The result folder.
+    stack_file
+        Where the stack was read from: copied as it is when its tables can stand beside the copy as they stand
+        beside the original. Otherwise, or when there is none, the stack is written anew with its tables in ``tables/``.
+    taken
+        Names in the result folder that a table must not have.
+    """
+    tables = tables_of(stack)
+    places = _places_beside(tables, stack_file, taken)
+    verbatim = stack_file is not None and places is not None
+    if places is None:
+        places = {path: Path(TABLES) / f"{number}-{Path(path).name}" for number, path in enumerate(tables, start=1)}
+    for path, sha256 in tables.items():
+        _copy(Path(path), folder / places[path], sha256)
+    copy = folder / STACK_FILE
+    if verbatim and stack_file is not None:
+        copy.write_bytes(stack_file.read_bytes())
+    else:
+        moved = _moved(stack, {path: folder / place for path, place in places.items()})
+        copy.write_text(write_stack(moved, folder=folder), encoding="utf-8", newline="\n")
+
+
+def tables_of(stack: Stack) -> dict[str, str]:
+    """Return path and hash of every table that a stack was made from; cards of bundled materials are none."""
+    materials = [material for _, material, _ in stack.media]
+    tables = {each.path: each.sha256 for each in materials if each.path and not _bundled(each)}
+    spectrum = stack.light.spectrum
+    if isinstance(spectrum, SpectrumTable) and spectrum.path:
+        tables[spectrum.path] = spectrum.sha256
+    return tables
+
+
+def inputs_of(stack: Stack, stack_file: Path | None) -> dict[str, Any]:
+    """Return the inputs of a stack with their sources and hashes, in plain values."""
+    media = [
+        {
+            "place": place,
+            "material": material.name,
+            "source": material.source,
+            "licence": material.licence,
+            "path": "" if _bundled(material) else material.path,
+            "sha256": material.sha256,
+        }
+        for place, material, _ in stack.media
+    ]
+    file = {} if stack_file is None else {"path": str(stack_file), "sha256": _hash(stack_file.read_bytes())}
+    return {"stack_file": file, "media": media, "spectrum": _spectrum(stack)}
+
+
+def settings_of(stack: Stack) -> dict[str, Any]:
+    """Return what was asked of the computation, in plain values."""
+    first, last = stack.light.range_nm
+    return {
+        "from_nm": first,
+        "to_nm": last,
+        "wavelengths": stack.light.wavelengths_nm.size,
+        "horizontal_share": stack.emission.horizontal_share,
+        "depth": stack.emission.depth,
+    }
+
+
+def _spectrum(stack: Stack) -> dict[str, Any]:
+    spectrum = stack.light.spectrum
+    if isinstance(spectrum, Gaussian):
+        shape = {"peak_nm": spectrum.peak_nm, "fwhm_nm": spectrum.fwhm_nm}
+        return {"kind": "gaussian", "seen": spectrum.seen, **shape}
+    return {"kind": "table", "seen": spectrum.seen, "path": spectrum.path, "sha256": spectrum.sha256}
+
+
+def _bundled(material: Material) -> bool:
+    return material.path.endswith(".toml")  # a card; tables never end so
+
+
+def _places_beside(tables: Collection[str], stack_file: Path | None, taken: Collection[str]) -> dict[str, Path] | None:
+    """Return where each table stands as seen from the stack file; None when one could not stand there in the copy."""
+    if stack_file is None:
+        return None
+    home = stack_file.parent.resolve()
+    places = {}
+    for path in tables:
+        try:
+            place = Path(path).resolve().relative_to(home)
+        except ValueError:
+            return None
+        if place.parts[0] in taken or Path(path).is_absolute() != stack_file.parent.is_absolute():
+            return None
+        places[path] = place
+    return places
+
+
+def _copy(source: Path, target: Path, sha256: str) -> None:
+    content = source.read_bytes()
+    if _hash(content) != sha256:
+        raise InputError(f"{source}: changed while it was being used; run again")
+    target.parent.mkdir(parents=True, exist_ok=True)
+    target.write_bytes(content)
+
+
+def _moved(stack: Stack, tables: dict[str, Path]) -> Stack:
+    """Return the stack with its tables at other paths."""
+
+    def moved(material: Material) -> Material:
+        if material.path not in tables:
+            return material
+        place = tables[material.path]
+        return replace(material, path=str(place), name=place.stem, source=f"table {place.name}")
+
+    spectrum = stack.light.spectrum
+    if isinstance(spectrum, SpectrumTable) and spectrum.path in tables:
+        spectrum = replace(spectrum, path=str(tables[spectrum.path]))
+    return replace(
+        stack,
+        above=replace(stack.above, material=moved(stack.above.material)),
+        below=replace(stack.below, material=moved(stack.below.material)),
+        layers=tuple(replace(layer, material=moved(layer.material)) for layer in stack.layers),
+        light=replace(stack.light, spectrum=spectrum),
+    )
+
+
+def _hash(content: bytes) -> str:
+    return hashlib.sha256(content).hexdigest()

@@ -1,0 +1,102 @@
+"""What the screen shows: plain text, no more digits than the error supports."""
+
+from collections.abc import Iterator, Mapping, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from optics.output.numbers import decimals_for
+from optics.output.result import largest_closure
+
+if TYPE_CHECKING:
+    from optics.fate.solve import Result
+    from optics.stack import Layer, Stack
+
+ROWS = (
+    ("trapped", "trapped"),
+    ("reabsorbed", "  reabsorbed"),
+    ("waveguided", "  waveguided"),
+    ("substrate", "substrate"),
+    ("cover", "cover"),
+    ("free_below", "free below"),
+    ("free_above", "free above"),
+    ("elsewhere", "elsewhere"),
+)
+
+
+def report(result: "Result", *, folder: Path | None = None, uncertainty: Mapping[str, float] | None = None) -> str:
+    """Return what to show of a result.
+
+    Parameters
+    ----------
+    result
+        What `optics.solve` returned.
+    folder
+        Where its files are.
+    uncertainty
+        How far each share moves within the uncertainty of the inputs, where that is known.
+    """
+    parts = [
+        "\n".join(_heading(result.stack)),
+        _listed("Assumed", result.assumptions),
+        _listed("Warnings", result.warnings),
+        "\n".join(_table(result, uncertainty or {})),
+        "\n".join(_trust(result)),
+        f"Files: {folder}" if folder else "",
+    ]
+    return "\n\n".join(part for part in parts if part)
+
+
+def stack_line(stack: "Stack") -> str:
+    """Return a stack in one line, from above to below."""
+    layers = [_layer(layer) for layer in stack.layers]
+    return " / ".join([stack.above.material.name, *layers, stack.below.material.name])
+
+
+def _layer(layer: "Layer") -> str:
+    thick = layer.thickness_nm >= 1e5
+    size = f"{layer.thickness_nm / 1e6:g} mm" if thick else f"{layer.thickness_nm:g} nm"
+    return f"{layer.name} {size}" + (" (emits)" if layer.emits else "") + (" (plate)" if layer.plate else "")
+
+
+def _heading(stack: "Stack") -> Iterator[str]:
+    if stack.title:
+        yield stack.title
+    yield stack_line(stack)
+    first, last = stack.light.range_nm
+    count = stack.light.wavelengths_nm.size
+    yield f"{count} wavelengths, {first:g} to {last:g} nm" if count > 1 else f"1 wavelength, {first:g} nm"
+
+
+def _listed(name: str, lines: Sequence[str]) -> str:
+    return "\n".join([f"{name}:", *(f"  - {line}" for line in lines)]) if lines else ""
+
+
+def _table(result: "Result", uncertainty: Mapping[str, float]) -> Iterator[str]:
+    """Yield the table of ends; trapped leads, because the cut between its two parts is a convention."""
+    decimals = decimals_for(result.numerical_error)
+    columns: list[tuple[str, Mapping[str, float], str]] = [("ray", result.ray_averages, "")]
+    if result.table is not None:
+        columns = [("wave", result.averages, ""), *columns, ("wave - ray", result.wave_minus_ray, "+")]
+    if uncertainty:
+        columns.append(("inputs +-", uncertainty, ""))
+    yield "Share of photons born" + "".join(f"{name:>12}" for name, _, _ in columns)
+    for share, name in ROWS:
+        cells = [_number(values.get(share), decimals, sign) for _, values, sign in columns]
+        yield f"{name:<21}" + "".join(f"{cell:>12}" for cell in cells)
+
+
+def _number(value: float | None, decimals: int, sign: str) -> str:
+    if value is None:
+        return ""
+    rounded = round(value, decimals) + 0.0  # adding 0.0 makes -0.0 plain
+    return f"{rounded:{sign if rounded else ''}.{decimals}f}"
+
+
+def _trust(result: "Result") -> Iterator[str]:
+    decimals = decimals_for(result.numerical_error)
+    if result.table is not None:
+        yield "Reabsorbed and waveguided are cut apart by a convention; their sum, trapped, is not."
+        yield f"Rate factor: {result.averages['rate_factor']:.{decimals}f}"
+    yield f"Closure: {largest_closure(result):.0e} at worst"
+    yield f"Numerical error of the shares: {result.numerical_error:.0e} (largest estimate; inputs not counted)"
+    yield f"Advised model: {result.advised_model}. {result.advice}"

@@ -1,0 +1,105 @@
+"""The files of one solved stack."""
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from optics.output.folder import writing
+from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
+from optics.output.numbers import decimals_for
+from optics.output.record import RECORD, write_record
+from optics.output.tables import write_json, write_table
+
+if TYPE_CHECKING:
+    from optics.fate.solve import Result
+
+FIGURES = ("births.svg", "births.png")
+SUMMARY = "summary.json"
+
+
+def result_folder(stack_file: Path) -> Path:
+    """Return where the result of a stack file goes when nothing else is said: ``<stack>-result`` beside it."""
+    return stack_file.with_name(f"{stack_file.stem}-result")
+
+
+def write_result(
+    result: "Result", folder: str | Path, *, stack_file: str | Path | None = None, replace: bool = False
+) -> Path:
+    """Write a result folder, whole or not at all.
+
+    Parameters
+    ----------
+    result
+        What `optics.solve` returned.
+    folder
+        The folder to write. One that this tool wrote and nobody touched since is replaced.
+    stack_file
+        Where the stack was read from, to be copied; None writes the stack anew.
+    replace
+        Whether to replace any other folder too.
+
+    Returns
+    -------
+    Path
+        The folder.
+
+    Raises
+    ------
+    InputError
+        When the folder is to be kept, or cannot be written.
+    """
+    source = None if stack_file is None else Path(stack_file)
+    with writing(Path(folder), replace=replace) as part:
+        tables = _tables(result)
+        for name, table in tables.items():
+            write_table(table, part / name)
+        write_json(summary(result), part / SUMMARY)
+        _draw(result, part)
+        taken = (*tables, *FIGURES, SUMMARY, RECORD, STACK_FILE)
+        copy_inputs(result.stack, part, stack_file=source, taken=taken)
+        write_record(part, command="solve", inputs=inputs_of(result.stack, source), settings=settings_of(result.stack))
+    return Path(folder)
+
+
+def summary(result: "Result") -> dict[str, Any]:
+    """Return the averages and what to think of them, in plain values."""
+    return {
+        "title": result.stack.title,
+        "averages": result.averages,
+        "ray_averages": result.ray_averages,
+        "wave_minus_ray": result.wave_minus_ray,
+        "advised_model": result.advised_model,
+        "advised_because": result.advice,
+        "numerical_error": result.numerical_error,
+        "numerical_error_by_share": result.error_by_share,
+        "largest_closure": largest_closure(result),
+        "warnings": result.warnings,
+        "assumptions": result.assumptions,
+    }
+
+
+def largest_closure(result: "Result") -> float:
+    """Return the closure of the wavelength where it is worst (of ray optics when there is no other)."""
+    table = result.ray_table if result.table is None else result.table
+    return float(np.abs(table["closure"]).max())
+
+
+def _tables(result: "Result") -> dict[str, Any]:
+    wave = {} if result.table is None else {"outcomes.csv": result.table}
+    return wave | {
+        "outcomes_ray.csv": result.ray_table,
+        "where.csv": result.where,
+        "reflection.csv": result.reflection,
+        "index.csv": result.index,
+    }
+
+
+def _draw(result: "Result", folder: Path) -> None:
+    from optics.output.figures import births_figure, save
+
+    decimals = min(3, decimals_for(result.numerical_error))
+    tables = (result.table, result.ray_table)
+    figure = births_figure(*tables, averages=result.averages, decimals=decimals, title=result.stack.title)
+    for name in FIGURES:
+        save(figure, folder / name)
