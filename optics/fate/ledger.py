@@ -41,8 +41,9 @@ class Account:
         Where nothing in the group absorbs, so that guided light never ends.
     miss
         Open-zone power plus bound-zone power, each on its own path, less ``power``.
-    error
-        Estimated numerical error, in units of the bulk power.
+    path_error, open_error, guided_error
+        Estimated numerical errors, in units of the bulk power: of the power and the first flights (what ``miss``
+        shows included), of the open zone, and of what is taken in the bound zone.
     """
 
     power: Real
@@ -52,7 +53,9 @@ class Account:
     has_bound: Real
     unfinished: Real
     miss: Real
-    error: Real
+    path_error: Real
+    open_error: Real
+    guided_error: Real
 
 
 def merge(parts: Sequence[tuple[Index, Account]], wavelengths: int) -> Account:
@@ -75,10 +78,15 @@ class Ledger:
     shares: dict[str, Real]
     taken: Real
     closure: Real
-    error: Real
+    errors: dict[str, Real]
+
+    @property
+    def error(self) -> Real:
+        """Largest estimated error of any share, (wavelength,)."""
+        return np.max(list(self.errors.values()), axis=0)
 
 
-def draw_up(account: Account, *, film: int, outer: tuple[int, int]) -> Ledger:
+def draw_up(account: Account, *, film: int, walls: Sequence[int]) -> Ledger:
     """Turn integrals into shares.
 
     Parameters
@@ -87,8 +95,8 @@ def draw_up(account: Account, *, film: int, outer: tuple[int, int]) -> Ledger:
         The integrals.
     film
         Position of the film.
-    outer
-        Positions of the outer media; what an absorbing one takes of bound light counts as elsewhere.
+    walls
+        Positions of outer media and plates; what an absorbing one takes of bound light counts as elsewhere.
     """
     zone = account.zone
     media = len(account.bound_taken)
@@ -100,7 +108,7 @@ def draw_up(account: Account, *, film: int, outer: tuple[int, int]) -> Ledger:
     taken[0, film] += np.where(account.has_bound, 0.0, rest)
     bound = np.where(account.has_bound, rest, 0.0)
     guided = account.bound_taken.copy()
-    for medium in outer:
+    for medium in walls:
         taken[0, medium] += guided[medium]
         bound -= guided[medium]
         guided[medium] = 0.0
@@ -127,5 +135,14 @@ def draw_up(account: Account, *, film: int, outer: tuple[int, int]) -> Ledger:
         {name: amounts[name] / account.power for name in SHARES},
         taken / account.power,
         account.miss / account.power,
-        account.error / account.power,
+        {name: error / account.power for name, error in _errors(account, amounts).items()},
     )
+
+
+def _errors(account: Account, amounts: dict[str, Real]) -> dict[str, Real]:
+    """Return the estimated error of every share times the power: that of its own integrals and of the power."""
+    path, zone, guided = account.path_error, account.open_error, account.guided_error
+    own = {name: zone for name in ENDS}
+    own |= {"reabsorbed": zone + path, "waveguided": zone + path, "trapped": zone + path}
+    own |= {"guided_reabsorbed": zone + path + guided, "guided_elsewhere": guided, "guided_unfinished": zone + path}
+    return {name: own[name] + np.abs(amounts[name] / account.power) * path for name in SHARES}

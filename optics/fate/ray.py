@@ -188,7 +188,9 @@ def _account_alike(scene: Scene, settings: Settings, *, clear: bool, others: boo
         has_bound=has_bound,
         unfinished=has_bound & clear & (not others),
         miss=miss,
-        error=zone.error + bound.error + np.abs(miss),
+        path_error=bound.error + np.abs(miss),
+        open_error=zone.error,
+        guided_error=bound.error,
     )
 
 

@@ -51,7 +51,9 @@ def _unbounded(scene: Scene, settings: Settings) -> Account:
         has_bound=no,
         unfinished=no,
         miss=miss,
-        error=dip.error + rise.error + zone.error + np.abs(miss),
+        path_error=dip.error + rise.error + np.abs(miss),
+        open_error=zone.error,
+        guided_error=nothing,
     )
 
 
@@ -65,7 +67,7 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
     own = wave.dip(scene, scene.far_end, settings, start=scene.open_end)
     zone = wave.open_zone(scene, settings)
     miss = zone.values[Layout.power] + own.values[0] - dip.values[0]
-    error = dip.error + rise.error + own.error + zone.error + np.abs(miss)
+    error = dip.error + rise.error + own.error + np.abs(miss)
     flown = np.zeros(scene.wavelengths)
     if absorbing:
         if past_film:
@@ -83,7 +85,9 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
         has_bound=yes,
         unfinished=yes & (absorbers(scene) == 0) & (not absorbing),
         miss=miss,
-        error=error + missed,
+        path_error=error,
+        open_error=zone.error,
+        guided_error=missed,
     )
 
 

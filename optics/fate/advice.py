@@ -1,0 +1,68 @@
+"""Which model to trust, and what a result should warn of."""
+
+import numpy as np
+
+from optics.waves.coherent import Complex, Real
+
+NEAR_METAL_NM = 50.0
+"""Within this distance of a metal, energy goes over to plasmons beyond the film's light line (Drexhage; Chance, Prock
+& Silbey 1978 show rates rising below about a tenth of a wavelength)."""
+
+ERROR_WORTH_A_WORD = 1e-6
+
+
+def coherence_length_nm(*, wavelength_nm: float, index: float, fwhm_nm: float) -> float:
+    """Return lambda^2/(2 n fwhm) [nm]: the film thickness over which fringes average out in the emitted line."""
+    return wavelength_nm**2 / (2.0 * index * fwhm_nm)
+
+
+def linewidth(wavelength_nm: Real, weight: Real) -> tuple[float, float]:
+    """Return mean wavelength and full width at half maximum [nm] of births with these weights.
+
+    The width is that of the Gaussian of the same standard deviation, so that structure does not upset it.
+    """
+    mean = float(weight @ wavelength_nm)
+    spread = float(np.sqrt(max(weight @ (wavelength_nm - mean) ** 2, 0.0)))
+    return mean, 2.0 * float(np.sqrt(2.0 * np.log(2.0))) * spread
+
+
+def advise(wavelength_nm: Real, weight: Real, film_index: Complex, thickness_nm: float) -> tuple[str, str]:
+    """Return the advised model, ``"wave"`` or ``"ray"``, and why in a sentence."""
+    mean, width = linewidth(wavelength_nm, weight)
+    index = float(weight @ film_index.real)
+    if width == 0.0:
+        return "wave", "One wavelength alone has no linewidth over which fringes could average out."
+    length = coherence_length_nm(wavelength_nm=mean, index=index, fwhm_nm=width)
+    model, word = ("wave", "keeps") if thickness_nm <= length else ("ray", "loses")
+    return model, (
+        f"A line {width:.0f} nm wide around {mean:.0f} nm is coherent over {length:.0f} nm of film, "
+        f"so light in a film of {thickness_nm:.0f} nm {word} its phase."
+    )
+
+
+def metal_warning(names: list[str], index: Complex, thickness_nm: Real, film: int) -> str | None:
+    """Return a warning where a metal lies within ``NEAR_METAL_NM`` of the film's births, else None."""
+    metal = ((index * index).real < 0.0).any(axis=1)
+    close = []
+    for step in (-1, 1):
+        distance, medium = 0.0, film + step
+        while 0 <= medium < len(names) and distance <= NEAR_METAL_NM:
+            if metal[medium]:
+                close.append(names[medium])
+                break
+            distance += float(thickness_nm[medium])
+            medium += step
+    if not close:
+        return None
+    return (
+        f"{' and '.join(close)}: a metal within {NEAR_METAL_NM:.0f} nm of the births takes energy through its near field "
+        "(plasmons among it) beyond the film's light line; that part is left out"
+    )
+
+
+def error_warning(error: Real) -> str | None:
+    """Return a warning where the estimated error is worth a word, else None."""
+    worst = float(error.max())
+    if worst <= ERROR_WORTH_A_WORD:
+        return None
+    return f"numerical error up to {worst:.0e} in a share at {int((error > ERROR_WORTH_A_WORD).sum())} wavelengths"
