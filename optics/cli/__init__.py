@@ -53,7 +53,7 @@ class Commands(click.Group):
 @click.group(cls=Commands, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
 @click.version_option(package_name="photonfate")
 def main() -> None:
-    r"""Compute where light born in a thin film goes.
+    """Compute where light born in a thin film goes.
 
     \b
     Begin with:

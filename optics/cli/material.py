@@ -9,9 +9,9 @@ if TYPE_CHECKING:
     from optics.media.material import Material
 
 
-@click.group()
+@click.group(short_help="Look at materials.")
 def material() -> None:
-    r"""Look at materials: the bundled ones, tables of your own, the open index database.
+    """Look at materials: the bundled ones, tables of your own, the open index database.
 
     \b
     Example:
@@ -20,9 +20,9 @@ def material() -> None:
     """
 
 
-@material.command("list")
+@material.command("list", short_help="List the bundled materials.")
 def list_materials() -> None:
-    r"""List the bundled materials with their ranges.
+    """List the bundled materials with their ranges.
 
     \b
     Example:
@@ -34,13 +34,13 @@ def list_materials() -> None:
     click.echo(material_list([find(name) for name in bundled_names()]))
 
 
-@material.command()
+@material.command(short_help="Show source, range, n and k of a material.")
 @click.argument("name")
 @click.option("--at", "wavelengths", type=float, multiple=True, help="Wavelength in nm at which to show n and k.")
 @click.option("--figure", type=click.Path(path_type=Path), help="Draw n and k into this .png, .svg or .pdf file.")
 @click.option("--published", is_flag=True, help="NAME is shelf/book/page of the open index database.")
 def show(name: str, wavelengths: tuple[float, ...], figure: Path | None, published: bool) -> None:
-    r"""Show a material: range, source, licence, n and k. NAME is a bundled name or a table of your own.
+    """Show a material: range, source, licence, n and k. NAME is a bundled name or a table of your own.
 
     \b
     Example:

@@ -5,12 +5,12 @@ from pathlib import Path
 import click
 
 
-@click.command()
+@click.command(short_help="Compute where the photons of a stack end.")
 @click.argument("stack", type=click.Path(path_type=Path))
 @click.option("--output", type=click.Path(path_type=Path), help="Folder for the results [default: <STACK>-result].")
 @click.option("--replace", is_flag=True, help="Write over a folder that is not an untouched result of this tool.")
 def solve(stack: Path, output: Path | None, replace: bool) -> None:
-    r"""Compute where the photons of a stack file end, and write a result folder.
+    """Compute where the photons of a stack file end, and write a result folder.
 
     \b
     Example:

@@ -5,10 +5,10 @@ from pathlib import Path
 import click
 
 
-@click.command()
+@click.command(short_help="Make a small project to begin from.")
 @click.argument("folder", type=click.Path(path_type=Path))
 def start(folder: Path) -> None:
-    r"""Make a small project with an invented film in FOLDER, ready to be solved.
+    """Make a small project with an invented film in FOLDER, ready to be solved.
 
     \b
     Example:
