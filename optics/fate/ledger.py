@@ -4,10 +4,13 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from optics.fate.exits import COVER, FREE_ABOVE, FREE_BELOW, SUBSTRATE, Layout
 from optics.waves.coherent import Real
 from optics.waves.paths import Index
+
+Mask = NDArray[np.bool_]
 
 ENDS = ("reabsorbed", "waveguided", "substrate", "cover", "free_below", "free_above", "elsewhere")
 """The ends a photon can meet; their shares add to one."""
@@ -67,6 +70,15 @@ def merge(parts: Sequence[tuple[Index, Account]], wavelengths: int) -> Account:
         for chosen, part in parts:
             whole[..., chosen] = getattr(part, name)
         fields[name] = whole
+    return Account(**fields)
+
+
+def replaced(whole: Account, at: Index, part: Account, which: Mask) -> Account:
+    """Return ``whole`` with the wavelengths ``at`` taken from those of ``part`` that ``which`` marks."""
+    fields = {}
+    for name in Account.__dataclass_fields__:
+        fields[name] = getattr(whole, name).copy()
+        fields[name][..., at] = getattr(part, name)[..., which]
     return Account(**fields)
 
 

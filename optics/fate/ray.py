@@ -15,6 +15,7 @@ from optics.fate.wave import Settings, panel_order
 from optics.fate.wave_account import THINNEST_ZONE, absorbers
 from optics.waves import curves
 from optics.waves.coherent import Real
+from optics.waves.curves import Points
 from optics.waves.paths import Density, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
@@ -77,12 +78,22 @@ def real_film(scene: Scene) -> Scene:
     return replace(scene, index=index)
 
 
+def _on_axis(scene: Scene, rows: Rows, u: Real) -> tuple[Waves, Points]:
+    """Return the waves at the nodes of real-axis panels, and the nodes, crowded towards the upper end.
+
+    There, at the film's light line, rays that graze the faces change from surviving to dying within a small cosine.
+    """
+    view = scene.view(rows.owner)
+    rest = 1.0 - u
+    points = curves.on_panel(rows, 1.0 - rest * rest, view.film.index, rest * rest)
+    return Waves(view, points.q, points.short_of_film), replace(points, slope=2.0 * rest * points.slope)
+
+
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     """Return everything the open zone needs per node, (quantity, row, node), Jacobian included."""
-    q, slope = curves.on_panel(rows, u)
-    waves = Waves(scene.view(rows.owner), q)
+    waves, points = _on_axis(scene, rows, u)
     layout = Layout(scene.media)
-    out = np.zeros((layout.size, *q.shape))
+    out = np.zeros((layout.size, *u.shape))
     rays = trace(waves)
     out[layout.power] = rays.launched.sum(axis=0)
     out[layout.first_flight] = rays.flown.sum(axis=0)
@@ -91,7 +102,7 @@ def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     _book_halves(out, rays, layout.open)
     responses = [_response(waves, rays, k) if side.plates else None for k, side in enumerate(scene.sides)]
     emerge(waves, out, (rays.up * rays.above.on, rays.down * rays.below.on), responses, layout)
-    out *= slope
+    out *= points.slope
     return out
 
 
@@ -131,12 +142,11 @@ def bound_density(scene: Scene, rows: Rows, u: Real, *, passes: bool) -> Real:
 
     Without ``passes`` only first flights are followed: where nothing absorbs, later ones never end.
     """
-    q, slope = curves.on_panel(rows, u)
-    waves = Waves(scene.view(rows.owner), q)
-    out = np.zeros((2 + scene.media, *q.shape))
+    waves, points = _on_axis(scene, rows, u)
+    out = np.zeros((2 + scene.media, *u.shape))
     view = waves.view
     cosine = waves.kz(scene.film).real / view.film.real_index
-    launched = _launch(view, q, cosine)
+    launched = _launch(view, waves.q, cosine)
     out[0] = launched.sum(axis=0)
     if passes:
         rays = trace(waves)
@@ -148,7 +158,7 @@ def bound_density(scene: Scene, rows: Rows, u: Real, *, passes: bool) -> Real:
     else:
         slant = 2.0 * view.loss[scene.film] * view.phase[scene.film] / cosine
         out[1] = first_flight(slant, scene.moments) * out[0]
-    out *= slope
+    out *= points.slope
     return out
 
 
@@ -217,5 +227,5 @@ def _integrated(
         curves.panels(owner, start, stop),
         wavelengths=scene.wavelengths,
         order=panel_order(scene, settings, film=False),
-        tolerance=settings.tolerance,
+        tolerance=settings.loose,
     )

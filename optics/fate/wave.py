@@ -1,5 +1,6 @@
 """Wave optics: dipoles in the thin group, from the power density to the integrals that the ledger needs."""
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -18,17 +19,36 @@ from optics.waves.coherent import (
     squared,
 )
 from optics.waves.curves import Points
+from optics.waves.lines import NO_LINES, find, integrate_with_lines
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 
 
+SHARP_FROM_DEPTH = 12.0
+"""Phase through the group from which leaky lines are looked for in the open zone."""
+
+
 @dataclass(frozen=True)
 class Settings:
-    """How finely to integrate; the defaults meet 1e-8 a row."""
+    """How finely to integrate.
 
-    tolerance: float = 1e-9
-    finer: int = 1  # multiplies the order of every rule
+    ``tolerance`` bounds the error of a piece of a path, ``finer`` multiplies the order of every rule. The defaults
+    keep closure within 1e-7 and shares within 1e-6.
+    """
+
+    tolerance: float = 1e-8
+    finer: int = 1
+
+    @property
+    def loose(self) -> float:
+        """Tolerance for what no other quantity is a difference of: rays, and what layers take of bound light."""
+        return 3.0 * self.tolerance
+
+    @property
+    def strict(self) -> "Settings":
+        """Settings a step finer, for what the defaults have missed."""
+        return Settings(0.1 * self.tolerance, 2 * self.finer)
 
 
 def power_on_path(view: View, points: Points, *, flights: bool) -> Complex:
@@ -93,20 +113,24 @@ def _fluxes(outlook: Outlook, amplitude: Complex, sent: Real) -> list[Real]:
 
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     """Return everything the open zone needs per node, (quantity, row, node), Jacobian included."""
-    q, slope = curves.on_panel(rows, u)
-    waves = Waves(scene.view(rows.owner), q)
+    points = curves.on_panel(rows, u, scene.film_index[rows.owner, None])
+    return open_values(scene, rows.owner, points) * points.slope
+
+
+def open_values(scene: Scene, owner: Index, points: Points) -> Real:
+    """Return everything the open zone needs per unit q, (quantity, row, node), in the order of ``Layout``."""
+    waves = Waves(scene.view(owner), points.q, points.short_of_film)
     layout = Layout(scene.media)
-    out = np.zeros((layout.size, *q.shape))
+    out = np.zeros((layout.size, *points.q.shape))
     sent = emission(waves)
     out[layout.power] = sent.power.real
     if scene.film_index.imag.any():
         flights = source.first_flight(waves.view.film.slant(sent.kz), scene.moments)
-        inside = curves.middle(q) < waves.view.film.real_index
+        inside = curves.middle(points.q) < waves.view.film.real_index
         out[layout.first_flight] = (sent.power * flights).real * inside
     _book_group(out, layout, waves, sent)
     responses = [_response(waves, k) if side.plates else None for k, side in enumerate(scene.sides)]
     emerge(waves, out, (sent.fluxes_up[-1], sent.fluxes_down[-1]), responses, layout)
-    out *= slope
     return out
 
 
@@ -130,12 +154,11 @@ def _response(waves: Waves, k: int) -> Response:
     return Response(met.back, met.on, met.taken)
 
 
-def bound_density(scene: Scene, rows: Rows, u: Real) -> Real:
-    """Return power and what each medium takes per node of the bound zone, (1 + medium, row, node)."""
-    q, slope = curves.on_panel(rows, u)
-    waves = Waves(scene.view(rows.owner), q)
+def bound_values(scene: Scene, owner: Index, points: Points) -> Real:
+    """Return power and what each medium takes per unit q of the bound zone, (1 + medium, row, node)."""
+    waves = Waves(scene.view(owner), points.q, points.short_of_film)
     sent = emission(waves)
-    out = np.zeros((1 + scene.media, *q.shape))
+    out = np.zeros((1 + scene.media, *points.q.shape))
     out[0] = sent.power.real
     for layers, fluxes, side in zip(
         (scene.layers_up, scene.layers_down), (sent.fluxes_up, sent.fluxes_down), scene.sides, strict=True
@@ -145,7 +168,6 @@ def bound_density(scene: Scene, rows: Rows, u: Real) -> Real:
                 out[1 + medium] += (fluxes[i] - fluxes[i + 1]).sum(axis=0)
         if side.absorbs and not side.plates:
             out[1 + side.outer] += fluxes[-1].sum(axis=0)
-    out *= slope
     return out
 
 
@@ -170,15 +192,15 @@ def _rows(owner: Index, end: Real) -> Rows:
 
 def path_order(scene: Scene, settings: Settings) -> int:
     """Return the order of the rule on dips: phases through the group set the pace."""
-    return settings.finer * int(np.clip(4 * np.ceil(10.0 + _depth(scene) / 12.0), 48, 256))
+    return settings.finer * int(np.clip(8 * np.ceil(9.0 + depth_of(scene) / 24.0), 80, 256))
 
 
 def panel_order(scene: Scene, settings: Settings, *, film: bool = True) -> int:
     """Return the order of the rule on real-axis panels; ``film`` tells whether its phases count."""
-    return settings.finer * int(np.clip(4 * np.ceil(3.0 + _depth(scene, film=film) / 8.0), 16, 128))
+    return settings.finer * int(np.clip(8 * np.ceil(3.0 + depth_of(scene, film=film) / 12.0), 32, 128))
 
 
-def _depth(scene: Scene, *, film: bool = True) -> float:
+def depth_of(scene: Scene, *, film: bool = True) -> float:
     """Return the largest phase through the group at normal incidence."""
     layers = [scene.film, *scene.group] if film else list(scene.group)
     return float(np.abs(scene.index[layers] * scene.phase[layers]).sum(axis=0).max()) if layers else 0.0
@@ -225,29 +247,38 @@ def riser(scene: Scene, end: Real, settings: Settings, *, flights: bool = False)
 
 def open_zone(scene: Scene, settings: Settings) -> Integral:
     """Integrate fluxes, absorption and ends on the real axis, from 0 to the largest q that can leave the group."""
-    layout = Layout(scene.media)
-    owner, low, high = split_panels(np.zeros(scene.wavelengths), scene.open_end, light_lines(scene))
-    if not len(owner):
-        return Integral(np.zeros((layout.size, scene.wavelengths)), np.zeros(scene.wavelengths))
-    return integrate(
-        lambda rows, u: open_density(scene, rows, u),
-        curves.panels(owner, low, high),
-        wavelengths=scene.wavelengths,
-        order=panel_order(scene, settings),
-        tolerance=settings.tolerance,
-    )
+    ends = np.zeros(scene.wavelengths), scene.open_end
+    # leaky lines are sharp only where many phases meet little loss
+    sharp = depth_of(scene) > SHARP_FROM_DEPTH
+    return _on_axis(open_values, Layout(scene.media).size, scene, ends, light_lines(scene), settings, sharp=sharp)
 
 
 def bound_zone(scene: Scene, settings: Settings) -> Integral:
     """Integrate what each medium takes of the light that cannot leave the group, on the real axis."""
-    lines = scene.index[[scene.film, scene.above.touching, scene.below.touching]].real
-    owner, low, high = split_panels(scene.open_end, scene.far_end, lines)
+    ends = scene.open_end, scene.far_end
+    loose = Settings(settings.loose, settings.finer)
+    return _on_axis(bound_values, 1 + scene.media, scene, ends, light_lines(scene), loose, sharp=True)
+
+
+def _on_axis(
+    values: Callable[[Scene, Index, Points], Real],
+    size: int,
+    scene: Scene,
+    ends: tuple[Real, Real],
+    marks: Real,
+    settings: Settings,
+    *,
+    sharp: bool,
+) -> Integral:
+    owner, low, high = split_panels(*ends, marks)
     if not len(owner):
-        return Integral(np.zeros((1 + scene.media, scene.wavelengths)), np.zeros(scene.wavelengths))
-    return integrate(
-        lambda rows, u: bound_density(scene, rows, u),
-        curves.panels(owner, low, high),
-        wavelengths=scene.wavelengths,
+        return Integral(np.zeros((size, scene.wavelengths)), np.zeros(scene.wavelengths))
+    panels = curves.panels(owner, low, high)
+    return integrate_with_lines(
+        lambda rows, points: values(scene, rows, points),
+        panels,
+        find(scene, panels) if sharp else NO_LINES,
+        scene=scene,
         order=panel_order(scene, settings),
         tolerance=settings.tolerance,
     )

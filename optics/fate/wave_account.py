@@ -4,7 +4,7 @@ import numpy as np
 
 from optics.fate import wave
 from optics.fate.exits import Layout
-from optics.fate.ledger import Account, merge
+from optics.fate.ledger import Account, merge, replaced
 from optics.fate.wave import Settings
 from optics.waves.coherent import Real
 from optics.waves.paths import Index, Integral
@@ -14,7 +14,32 @@ THINNEST_ZONE = 1e-12
 """A bound zone narrower than this, in units of k0, is none."""
 
 
+CLOSURE_MISSED = 3e-8
+SHARE_MISSED = 3e-7
+"""Beyond these a wavelength is done again, finer: a sharp line slipped between the nodes."""
+
+ROUNDS = 3
+
+
 def account(scene: Scene, settings: Settings) -> Account:
+    """Integrate everything, and again, finer, at the wavelengths where independent paths disagree."""
+    whole = _once(scene, settings)
+    for _ in range(ROUNDS):
+        missed = np.flatnonzero((np.abs(whole.miss) > CLOSURE_MISSED) | (_error(whole) > SHARE_MISSED))
+        if not len(missed):
+            break
+        settings = settings.strict
+        again = _once(scene.at(missed), settings)
+        better = _error(again) < _error(whole)[missed]
+        whole = replaced(whole, missed[better], again, better)
+    return whole
+
+
+def _error(account: Account) -> Real:
+    return account.path_error + account.open_error + account.guided_error
+
+
+def _once(scene: Scene, settings: Settings) -> Account:
     """Integrate everything, wavelengths that need the same integrals together."""
     film = scene.film_index
     bound = scene.far_end - scene.open_end > THINNEST_ZONE

@@ -6,6 +6,7 @@ clusters its nodes where a square-root end of the density may sit.
 """
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,25 +22,34 @@ DEPTH = 0.5
 
 @dataclass(frozen=True)
 class Points:
-    """Nodes of a path: the in-plane wave number, its derivative, and the film's wave number less it."""
+    """Nodes of a path: the in-plane wave number, its derivative, and the film's wave number less it.
 
-    q: Complex
-    slope: Complex
+    On the real axis ``q`` and ``slope`` are real.
+    """
+
+    q: Any
+    slope: Any
     short_of_film: Complex  # film index - q, without cancellation
 
 
 def panels(owner: Index, low: Real, high: Real) -> Rows:
-    """Return rows for real-axis panels from ``low`` to ``high``."""
-    return Rows(owner, np.zeros(len(owner)), np.ones(len(owner)), np.stack([low, high]))
+    """Return rows for real-axis panels from ``low`` to ``high``, numbered so that pieces know their panel."""
+    count = len(owner)
+    return Rows(owner, np.zeros(count), np.ones(count), np.stack([low, high, np.arange(count)]))
 
 
-def on_panel(rows: Rows, u: Real) -> tuple[Real, Real]:
-    """Return q = low + (high - low) sin^2(pi u/2) and its derivative: square-root ends turn analytic."""
+def on_panel(rows: Rows, u: Real, film: Complex, left: Real | None = None) -> Points:
+    """Return q = low + (high - low) sin^2(pi u/2): square-root ends turn analytic.
+
+    ``left`` is 1 - u, for callers that know it better than the difference does.
+    """
     low, high = rows.shape[0][:, None], rows.shape[1][:, None]
-    angle = 0.5 * np.pi * u
-    sine, cosine = np.sin(angle), np.cos(angle)
+    sine = np.sin(0.5 * np.pi * u)
+    cosine = np.sin(0.5 * np.pi * (1.0 - u if left is None else left))
     width = high - low
-    return low + width * (sine * sine), np.pi * width * (sine * cosine)
+    return Points(
+        low + width * (sine * sine), np.pi * width * (sine * cosine), (film - high) + width * (cosine * cosine)
+    )
 
 
 def middle(q: Real) -> Real:

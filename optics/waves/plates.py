@@ -17,11 +17,16 @@ Mask = NDArray[np.bool_]
 
 
 class Waves:
-    """Admittances and layer phases of a view's media at real ``q``, each computed once when first asked for."""
+    """Admittances and layer phases of a view's media at real ``q``, each computed once when first asked for.
 
-    def __init__(self, view: View, q: Real) -> None:
+    ``short_of_film``, the film's index less ``q`` without cancellation, keeps digits next to the film's light line.
+    """
+
+    def __init__(self, view: View, q: Real, short_of_film: Complex | None = None) -> None:
         self.view, self.q = view, q
         self._kz: dict[int, Complex] = {}
+        if short_of_film is not None:
+            self._kz[view.scene.film] = np.sqrt(short_of_film * (view.film.index + q))
         self._own: dict[int, Complex] = {}
         self._turn: dict[int, Complex] = {}
 
