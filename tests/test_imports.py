@@ -13,14 +13,14 @@ import optics
 PACKAGE = Path(optics.__file__).parent
 LEVELS = (
     ("errors", "faults", "byvalue", "units"),
-    ("media",),
-    ("spectrum", "light", "stack", "stackfile", "assumptions"),
+    ("media", "radiation"),
+    ("agreement", "assumptions", "collection", "depth", "light", "spectrum", "stack", "stackfile"),
     ("waves",),
     ("fate",),
     ("study", "transport"),
     ("output",),
     ("cli",),
-)
+)  # a new part of the package takes its place here
 LEVEL = {part: level for level, parts in enumerate(LEVELS) for part in parts}
 KERNELS = ("waves", "fate")
 NOT_IN_KERNELS = {"click", "csv", "matplotlib", "pathlib", "pydantic", "tomlkit", "tomllib"}
