@@ -2,7 +2,9 @@
 
 import math
 
+from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.media.dispersion import Constant, Joined, Tabulated
+from optics.radiation import FromAbsorption
 from optics.spectrum import spectrum_notes
 from optics.stack import ISOTROPIC, PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
 
@@ -11,7 +13,7 @@ def assumptions(stack: Stack) -> tuple[str, ...]:
     """Return one sentence for each assumption that the answer for this stack rests on."""
     said = [_outer("above", stack.above), _outer("below", stack.below)]
     said += [sentence for layer in stack.layers if (sentence := _plate(layer))]
-    said += [_births(stack), 'the spectrum is the one born inside the film (seen = "inside")']
+    said += [_births(stack), _seen(stack)]
     said += spectrum_notes(stack.light.spectrum, stack.light.wavelengths_nm)
     said += _indices(stack)
     return tuple(said)
@@ -44,7 +46,36 @@ def _births(stack: Stack) -> str:
     share = stack.emission.horizontal_share
     isotropic = math.isclose(share, ISOTROPIC, abs_tol=5e-5)  # 0.6667, as people write it
     kind = "isotropic, the default" if isotropic else "of the dipoles lie in the plane"
-    return f"horizontal_share = {share:.4g} ({kind}); births spread evenly over the depth of the film"
+    return f"horizontal_share = {share:.4g} ({kind}); {_depth(stack)}"
+
+
+def _depth(stack: Stack) -> str:
+    depth = stack.emission.depth
+    if isinstance(depth, Pump):
+        law = {"linear": "the absorption of the pump", "square": "the square of the pump's absorption"}[depth.births]
+        return (
+            f'births follow {law} (births = "{depth.births}"), {depth.pump_nm:g} nm from {depth.side} at normal '
+            "incidence, too weak to change the film"
+        )
+    if isinstance(depth, Decay):
+        return f"births fall by a factor e every {depth.decay_nm:g} nm from the film's face {depth.side}"
+    if isinstance(depth, Sheet):
+        return f"all births in a sheet {depth.at_nm:g} nm below the film's upper face"
+    if isinstance(depth, DepthTable):
+        return "births over depth as the table says, linear between its rows, depths from the film's upper face"
+    return "births spread evenly over the depth of the film"
+
+
+def _seen(stack: Stack) -> str:
+    spectrum = stack.light.spectrum
+    if spectrum.seen == "inside":
+        return 'the spectrum is the one born inside the film (seen = "inside")'
+    na = None if isinstance(spectrum, FromAbsorption) else spectrum.na
+    part = "all light that gets out there (na not given)" if na is None else f"light within na = {na:g}"
+    return (
+        f"the spectrum is {part} {spectrum.seen} the stack; divided by this stack's own share of it, wavelength by "
+        "wavelength, it gives the one born inside"
+    )
 
 
 def _indices(stack: Stack) -> list[str]:

@@ -6,7 +6,8 @@ import numpy as np
 
 from optics.byvalue import ByValue, FloatArray, read_only
 from optics.faults import Faults
-from optics.spectrum import Gaussian, Spectrum, SpectrumTable, ascending, births_per_nm
+from optics.radiation import FromAbsorption
+from optics.spectrum import Gaussian, Spectrum, SpectrumTable, ascending, given_per_nm
 
 LIGHT_RANGE_NM = (10.0, 1e6)  # outside it a wavelength is a slip of the unit
 MOST_WAVELENGTHS = 100_000
@@ -21,7 +22,7 @@ class Light(ByValue):
     wavelengths_nm
         Ascending wavelengths in vacuum [nm]; even steps are not needed.
     spectrum
-        What the film gives birth to.
+        What the film gives birth to, or what is seen of it outside.
     """
 
     wavelengths_nm: FloatArray
@@ -32,9 +33,10 @@ class Light(ByValue):
         wavelengths = read_only([])
         with faults.collecting():
             wavelengths = checked_wavelengths(self.wavelengths_nm)
-        faults.kind("light: spectrum", self.spectrum, Gaussian, SpectrumTable)
+        faults.kind("light: spectrum", self.spectrum, Gaussian, SpectrumTable, FromAbsorption)
         faults.settle()
-        births_per_nm(self.spectrum, wavelengths)
+        if not isinstance(self.spectrum, FromAbsorption):  # that needs the film: the stack looks at it
+            given_per_nm(self.spectrum, wavelengths)
         object.__setattr__(self, "wavelengths_nm", wavelengths)
 
     @classmethod

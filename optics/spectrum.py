@@ -1,21 +1,22 @@
-"""The spectrum born inside the film: its kinds, and births per nm on the wavelengths of a calculation."""
+"""The spectrum of a light: its kinds, where it is seen, and its values per nm on the wavelengths of a calculation."""
 
 import math
 from dataclasses import dataclass, field
 from typing import TypeAlias
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from optics.byvalue import ByValue, FloatArray, read_only
 from optics.errors import InputError
 from optics.faults import Faults, as_float, found, is_number
+from optics.radiation import PLACE, FromAbsorption, births_from_absorption
 
-PLACE = "light.spectrum"
-SEEN = ("inside",)
-SEEN_LATER = ("above", "below")
+SEEN = ("inside", "above", "below")
+LARGEST_NA = 5.0  # no medium that passes light on has a higher index in the optical range
 NARROWEST_NM = 1e-3  # a narrower Gaussian is a slip, and its exponents leave the range of floats
 TAIL_WORTH_SAYING = 1e-3  # share of a Gaussian's births outside the light's range that is mentioned
+ComplexArray: TypeAlias = NDArray[np.complex128]
 FWHM_PER_SIGMA = 2.0 * math.sqrt(2.0 * math.log(2.0))
 
 
@@ -30,18 +31,22 @@ class Gaussian:
     fwhm_nm
         Full width at half maximum [nm].
     seen
-        Where the spectrum is the one seen: ``"inside"``, what the film gives birth to.
+        Where the spectrum is the one seen: ``"inside"``, what the film gives birth to; ``"above"`` or ``"below"``,
+        what was measured there.
+    na
+        Numerical aperture with which it was measured outside; None: all light that gets out.
     """
 
     peak_nm: float
     fwhm_nm: float
     seen: str = "inside"
+    na: float | None = None
 
     def __post_init__(self) -> None:
         faults = Faults(PLACE)
         peak = faults.number("peak_nm", self.peak_nm, unit="nm", above=0, example=768)
         width = faults.number("fwhm_nm", self.fwhm_nm, unit="nm", at_least=NARROWEST_NM, example=40)
-        _check_seen(faults, self.seen)
+        _check_seen(faults, self.seen, self.na)
         faults.settle()
         object.__setattr__(self, "peak_nm", peak)
         object.__setattr__(self, "fwhm_nm", width)
@@ -58,7 +63,10 @@ class SpectrumTable(ByValue):
     per_nm
         Births per nm at each, in any unit, none negative.
     seen
-        Where the spectrum is the one seen: ``"inside"``, what the film gives birth to.
+        Where the spectrum is the one seen: ``"inside"``, what the film gives birth to; ``"above"`` or ``"below"``,
+        what was measured there.
+    na
+        Numerical aperture with which it was measured outside; None: all light that gets out.
     path, sha256
         The file it was read from and that file's hash; no part of the value.
     """
@@ -66,6 +74,7 @@ class SpectrumTable(ByValue):
     wavelength_nm: FloatArray
     per_nm: FloatArray
     seen: str = "inside"
+    na: float | None = None
     path: str = field(default="", compare=False)
     sha256: str = field(default="", compare=False)
 
@@ -82,33 +91,48 @@ class SpectrumTable(ByValue):
             faults.add("per_nm", f"value {where + 1}: found {births[where]:g}, expected births of 0 or more")
         elif births.size and not births.any():
             faults.add("per_nm", "found zeros alone, expected births somewhere")
-        _check_seen(faults, self.seen)
+        _check_seen(faults, self.seen, self.na)
         faults.settle()
         object.__setattr__(self, "wavelength_nm", wavelength)
         object.__setattr__(self, "per_nm", births)
 
 
-Spectrum: TypeAlias = Gaussian | SpectrumTable
+Spectrum: TypeAlias = Gaussian | SpectrumTable | FromAbsorption
 
 
-def births_per_nm(spectrum: Spectrum, wavelengths_nm: ArrayLike) -> FloatArray:
+def births_per_nm(
+    spectrum: Spectrum, wavelengths_nm: ArrayLike, *, film_index: ComplexArray | None = None
+) -> FloatArray:
     """Return the births per nm [1/nm], scaled so that they integrate to 1 by the trapezoid rule.
 
     Parameters
     ----------
     spectrum
-        The spectrum born inside.
+        A spectrum born inside. One seen outside needs the solved stack: `optics.fate.births.born_per_nm`.
     wavelengths_nm
         Ascending wavelengths [nm]; one alone takes all births.
+    film_index
+        The film's complex index at each, for a spectrum that follows from its absorption.
 
     Raises
     ------
     InputError
         When a table does not reach over the wavelengths, or no births fall on them.
     """
+    if spectrum.seen != "inside":
+        raise InputError(
+            f'{PLACE}: seen: found "{spectrum.seen}": what is born inside follows only from a solved stack'
+        )
+    return given_per_nm(spectrum, wavelengths_nm, film_index=film_index)
+
+
+def given_per_nm(
+    spectrum: Spectrum, wavelengths_nm: ArrayLike, *, film_index: ComplexArray | None = None
+) -> FloatArray:
+    """Return a spectrum as it is given, wherever it is seen; parameters, scale and refusals of `births_per_nm`."""
     wavelength = np.asarray(wavelengths_nm, dtype=np.float64)
     _check_reach(spectrum, wavelength)
-    raw = _raw(spectrum, wavelength)
+    raw = _raw(spectrum, wavelength, film_index)
     total = float(raw @ weights(wavelength))
     # Below the smallest normal number the scaled births would carry no digits.
     if total < np.finfo(np.float64).tiny:
@@ -134,15 +158,28 @@ def weights(wavelengths_nm: ArrayLike) -> FloatArray:
 
 def spectrum_notes(spectrum: Spectrum, wavelengths_nm: ArrayLike) -> tuple[str, ...]:
     """Return what is worth saying about a spectrum cut to the light's wavelengths [nm], one sentence each."""
+    if isinstance(spectrum, FromAbsorption):
+        return _absorption_notes(spectrum)
     if isinstance(spectrum, SpectrumTable):
-        return ("the birth spectrum is read from its table by linear interpolation",)
+        return ("the spectrum is read from its table by linear interpolation",)
     wavelength = np.asarray(wavelengths_nm, dtype=np.float64)
     first, last = float(wavelength[0]), float(wavelength[-1])
     outside = 1.0 - (_cumulative(spectrum, last) - _cumulative(spectrum, first))
     if wavelength.size == 1 or outside <= TAIL_WORTH_SAYING:
         return ()
     span = f"{first:.12g} to {last:.12g} nm"
-    return (f"{100 * outside:.2g} % of the Gaussian's births lie outside the light's {span} and are left out",)
+    what = "births lie" if spectrum.seen == "inside" else "light lies"
+    return (f"{100 * outside:.2g} % of the Gaussian's {what} outside the light's {span} and are left out",)
+
+
+def _absorption_notes(spectrum: FromAbsorption) -> tuple[str, ...]:
+    excited = "low excitation (splitting_eV not given)"
+    if spectrum.splitting_eV is not None:
+        excited = f"splitting_eV = {spectrum.splitting_eV:g}, which bleaches what is born but not what is taken back"
+    return (
+        f"births follow from the film's own absorption at temperature_K = {spectrum.temperature_K:g} "
+        f"(300 when not given), {excited}",
+    )
 
 
 def ascending(faults: Faults, key: str, values: object) -> FloatArray:
@@ -180,7 +217,16 @@ def numbers(faults: Faults, key: str, values: object) -> FloatArray:
     return read_only(values)
 
 
-def _raw(spectrum: Spectrum, wavelength: FloatArray) -> FloatArray:
+def check_na(faults: Faults, na: object) -> float:
+    """Return a numerical aperture, or note why it is none."""
+    return faults.number("na", na, above=0, at_most=LARGEST_NA, example=0.9)
+
+
+def _raw(spectrum: Spectrum, wavelength: FloatArray, film_index: ComplexArray | None) -> FloatArray:
+    if isinstance(spectrum, FromAbsorption):
+        if film_index is None:
+            raise InputError(f'{PLACE}: kind "from-absorption" needs the index of the film')
+        return births_from_absorption(spectrum, wavelength, film_index)
     if isinstance(spectrum, SpectrumTable):
         return np.interp(wavelength, spectrum.wavelength_nm, spectrum.per_nm)
     sigma = spectrum.fwhm_nm / FWHM_PER_SIGMA
@@ -205,10 +251,10 @@ def _check_reach(spectrum: Spectrum, wavelength: FloatArray) -> None:
         )
 
 
-def _check_seen(faults: Faults, seen: object) -> None:
-    if isinstance(seen, str) and seen in SEEN_LATER:
-        faults.add(
-            "seen", f'found "{seen}": not available yet; expected "inside", the spectrum the film gives birth to'
-        )
-    else:
-        faults.choice("seen", seen, SEEN)
+def _check_seen(faults: Faults, seen: object, na: object) -> None:
+    faults.choice("seen", seen, SEEN)
+    if na is None:
+        return
+    check_na(faults, na)
+    if seen == "inside":
+        faults.add("na", 'found an aperture with seen = "inside", expected one with "above" or "below" alone')

@@ -6,7 +6,10 @@ from typing import Any, Literal, TypeAlias
 
 import numpy as np
 
+from optics.agreement import check_apertures, check_pump, check_spectrum
 from optics.byvalue import FloatArray
+from optics.collection import Collection
+from optics.depth import Depth, check_depth, check_depth_in_film
 from optics.errors import InputError
 from optics.faults import Faults, cut, quoted
 from optics.light import Light
@@ -25,7 +28,6 @@ THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
 THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
 LONGEST_NAME, LONGEST_TITLE = 60, 200  # characters that columns and figures have room for
 OUTER_NAMES = ("above", "below")
-DEPTHS_LATER = ("pump_nm", "decay_nm", "at_nm", "table")
 
 Phases: TypeAlias = Literal["keep", "ignore"]
 CountsAs: TypeAlias = Literal["free", "held"]
@@ -107,16 +109,16 @@ class Emission:
     horizontal_share
         Share of in-plane dipoles, 0 to 1; 2/3 is isotropic.
     depth
-        Where in the film photons are born: ``"uniform"``.
+        Where in the film photons are born: ``"uniform"``, or a `Pump`, `Decay`, `Sheet` or `DepthTable`.
     """
 
     horizontal_share: float = ISOTROPIC
-    depth: str = "uniform"
+    depth: Depth = "uniform"
 
     def __post_init__(self) -> None:
         faults = Faults("emission")
         share = faults.number("horizontal_share", self.horizontal_share, at_least=0, at_most=1, example=0.6667)
-        _check_depth(faults, self.depth)
+        check_depth(faults, self.depth)
         faults.settle()
         object.__setattr__(self, "horizontal_share", share)
 
@@ -137,12 +139,14 @@ class Stack:
         Wavelengths and birth spectrum.
     emission
         Dipole directions and depth.
+    collection
+        The aperture that gathers light outside; None: not asked for.
 
     Raises
     ------
     InputError
         With every fault: no layer, none or two that emit, a name used twice, a material that does not cover
-        the light, a film without a positive refractive index.
+        the light or the pump, a film without a positive refractive index, births outside the film.
     """
 
     title: str = ""
@@ -151,6 +155,7 @@ class Stack:
     layers: tuple[Layer, ...]
     light: Light
     emission: Emission = field(default_factory=Emission)
+    collection: Collection | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "layers", tuple(self.layers))
@@ -159,10 +164,19 @@ class Stack:
             faults.kind(key, getattr(self, key), kind)
         for layer in self.layers:
             faults.kind("layer", layer, Layer)
+        if self.collection is not None:
+            faults.kind("collection", self.collection, Collection)
         faults.settle()
         check_title(faults, self.title)
         check_layers(faults, names=[layer.name for layer in self.layers], emits=[layer.emits for layer in self.layers])
         check_media(faults, media=self.media, wavelengths_nm=self.light.wavelengths_nm)
+        faults.settle()
+        check_depth_in_film(
+            faults, self.emission.depth, film=layer_place(self.film.name), thickness_nm=self.film.thickness_nm
+        )
+        check_pump(faults, media=self.media, depth=self.emission.depth)
+        check_spectrum(faults, light=self.light, film=self.film.material)
+        check_apertures(faults, media=self.media, light=self.light, collection=self.collection)
         faults.settle()
 
     @property
@@ -233,6 +247,10 @@ class Stack:
         """Return the stack with ``horizontal_share`` or ``depth`` changed."""
         _settle_keys("emission", changes, ("horizontal_share", "depth"))
         return replace(self, emission=replace(self.emission, **changes))
+
+    def with_collection(self, collection: Collection | None) -> "Stack":
+        """Return the stack with another aperture, or none."""
+        return replace(self, collection=collection)
 
     def flipped(self) -> "Stack":
         """Return the stack upside down."""
@@ -314,14 +332,6 @@ def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], 
                 where = int(np.argmin(index))
                 said = f"n = {index[where]:.6g} at {wavelengths_nm[where]:.12g} nm"
                 faults.add(f"{place}: material", f"found {said}, expected n above 0 in the layer that emits")
-
-
-def _check_depth(faults: Faults, depth: object) -> None:
-    later = [key for key in DEPTHS_LATER if isinstance(depth, dict) and key in depth]
-    if later:
-        faults.add("depth", f'found a table with {later[0]}: not available yet; expected "uniform"')
-    else:
-        faults.choice("depth", depth, ("uniform",))
 
 
 def _settle_keys(place: str, changes: Iterable[str], valid: tuple[str, ...]) -> None:

@@ -277,8 +277,19 @@ CASES = [
     Case("no kind", edited(('kind = "gaussian"\n', "")), ("light.spectrum: kind: missing",)),
     Case("misspelt kind", edited(('"gaussian"', '"gausian"')), ("light.spectrum: kind", 'did you mean "gaussian"')),
     Case("kind that is a number", edited(('"gaussian"', "3")), ("light.spectrum: kind: found 3",)),
-    Case("kind that is to come", edited(('"gaussian"', '"from-absorption"')), ("not available yet",)),
-    Case("seen from above", edited(('"inside"', '"above"')), ("light.spectrum: seen", "not available yet")),
+    Case(
+        "gaussian keys with absorption",
+        edited(('"gaussian"', '"from-absorption"')),
+        ("light.spectrum: peak_nm", ": fwhm_nm: unknown key"),
+        2,
+    ),
+    Case("aperture inside", edited(('"inside"', '"inside"\nna = 0.5')), ("light.spectrum: na", "inside")),
+    Case("aperture of minus one", edited(('"inside"', '"above"\nna = -1')), ("light.spectrum: na", "above 0")),
+    Case(
+        "aperture beyond air",
+        edited(('"inside"', '"above"\nna = 1.3')),
+        ("light.spectrum: na", "index of air", "above ="),
+    ),
     Case("seen from nowhere", edited(('"inside"', '"outside"')), ("light.spectrum: seen", 'expected "inside"')),
     Case("width of zero", edited(("fwhm_nm = 40", "fwhm_nm = 0")), ("light.spectrum: fwhm_nm: found 0", "from 0.001")),
     Case("no peak", edited(("peak_nm = 768\n", "")), ("light.spectrum: peak_nm: missing",)),
@@ -292,7 +303,80 @@ CASES = [
     # emission
     Case("share above one", edited(("0.6667", "1.2")), ("emission: horizontal_share: found 1.2", "from 0 up to 1")),
     Case("share in percent as text", edited(("0.6667", '"67 %"')), ("emission: horizontal_share", '"67 %" (text)')),
-    Case("depth that is to come", edited(('depth = "uniform"', "depth = { decay_nm = 120 }")), ("not available yet",)),
+    Case(
+        "decay from nowhere", edited(('"uniform"', "{ decay_nm = 120 }")), ("emission: depth: side: missing", '"above"')
+    ),
+    Case(
+        "decay from a corner",
+        edited(('"uniform"', '{ decay_nm = 1, side = "left" }')),
+        ("emission: depth: side", '"left"'),
+    ),
+    Case(
+        "sheet outside", edited(('"uniform"', "{ at_nm = 481 }")), ("emission: depth", "at_nm: found 481", "0 to 480")
+    ),
+    Case("two depths", edited(('"uniform"', "{ at_nm = 1, pump_nm = 500 }")), ("emission: depth", "pump_nm and at_nm")),
+    Case(
+        "cubic births",
+        edited(('"uniform"', '{ pump_nm = 750, side = "above", births = "cubic" }')),
+        ("depth: births", '"square"'),
+    ),
+    Case(
+        "pump out of range",
+        edited(('"uniform"', '{ pump_nm = 300, side = "above" }')),
+        ("depth", "pump_nm: found 300", "covers"),
+        2,
+    ),
+    Case(
+        "pump as text",
+        edited(('"uniform"', '{ pump_nm = "green", side = "above" }')),
+        ("depth: pump_nm", "number in nm"),
+    ),
+    Case(
+        "misspelt depth key",
+        edited(('"uniform"', '{ pump_nm = 750, site = "above" }')),
+        ("depth: site", "did you mean side"),
+    ),
+    Case(
+        "profile that is missing",
+        edited(('"uniform"', '{ table = "p.csv" }')),
+        ("emission: depth: table", "no such file"),
+    ),
+    Case("profile that is a number", edited(('"uniform"', "{ table = 5 }")), ("emission: depth: table", "found 5")),
+    Case(
+        "profile too short",
+        edited(('"uniform"', "{ depth_nm = [0, 100], births = [1, 1] }")),
+        ("covers 0 to 100", "480 nm"),
+    ),
+    Case(
+        "profile without births",
+        edited(('"uniform"', "{ depth_nm = [0, 480], births = [0, 0] }")),
+        ("births: found zeros",),
+    ),
+    Case(
+        "profile below zero",
+        edited(('"uniform"', "{ depth_nm = [0, 480], births = [0, -1] }")),
+        ("births: value 2", "0 or more"),
+    ),
+    Case(
+        "profile unsorted",
+        edited(('"uniform"', "{ depth_nm = [480, 0], births = [0, 1] }")),
+        ("depth_nm: value 2", "ascending"),
+    ),
+    Case(
+        "aperture of nobody",
+        edited(("[emission]", '[collection]\nside = "above"\n\n[emission]')),
+        ("collection: na: missing",),
+    ),
+    Case(
+        "aperture of too much",
+        edited(("[emission]", '[collection]\nna = 1.4\nside = "below"\n\n[emission]')),
+        ("collection: na", "air"),
+    ),
+    Case(
+        "aperture from the left",
+        edited(("[emission]", '[collection]\nna = 1\nside = "left"\n\n[emission]')),
+        ("collection: side",),
+    ),
     Case("unknown depth", edited(('depth = "uniform"', 'depth = "deep"')), ("emission: depth", 'expected "uniform"')),
     # layers
     Case(

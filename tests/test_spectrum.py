@@ -127,5 +127,5 @@ def test_a_table_that_is_none_is_refused(wavelength, per_nm, said):
 
 def test_all_faults_of_a_gaussian_are_told_at_once():
     with pytest.raises(InputError) as refusal:
-        Gaussian(peak_nm=-1, fwhm_nm="40 nm", seen="above")
+        Gaussian(peak_nm=-1, fwhm_nm="40 nm", seen="outside")
     assert [line.split(": ")[1] for line in refusal.value.faults] == ["peak_nm", "fwhm_nm", "seen"]

@@ -189,10 +189,9 @@ def test_a_share_outside_zero_to_one_is_refused(share):
         Emission(horizontal_share=share)
 
 
-@pytest.mark.parametrize("depth", [{"pump_nm": 532}, {"decay_nm": 120}, {"at_nm": 250}, {"table": "profile.csv"}])
-def test_depth_profiles_to_come_say_so(depth):
-    with pytest.raises(InputError, match="not available yet"):
-        Emission(depth=depth)
+def test_a_depth_that_is_none_is_refused_with_the_ways_to_say_one():
+    with pytest.raises(InputError, match=r'emission: depth: found a table, expected "uniform", \{ pump_nm = 532'):
+        Emission(depth={"at_nm": 250})
 
 
 def test_what_is_taken_for_granted_is_said():

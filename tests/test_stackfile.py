@@ -12,11 +12,14 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from malformed import BIRTHS, CASES, FILM, GAUSSIAN, GOOD, GRID, births, edited, write_good
+from malformed import BIRTHS, CASES, FILM, GAUSSIAN, GOOD, GRID, births, edited, film, write_good
 
+from optics.collection import Collection
+from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.errors import InputError
 from optics.light import Light
 from optics.media import find
+from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, SpectrumTable
 from optics.stack import Emission, Layer, Outer, Stack
 from optics.stackfile import build_stack, parse_stack, read_stack, write_stack
@@ -215,8 +218,25 @@ MATERIALS = st.one_of(
 OUTERS = st.builds(Outer, material=MATERIALS, counts_as=st.sampled_from([None, "free", "held"]))
 SPECTRA = st.one_of(
     st.builds(Gaussian, peak_nm=_positive(600, 900), fwhm_nm=_positive(60, 300)),
+    st.builds(
+        Gaussian,
+        peak_nm=_positive(600, 900),
+        fwhm_nm=_positive(60, 300),
+        seen=st.sampled_from(["above", "below"]),
+        na=st.one_of(st.none(), _positive(0.01, 1)),
+    ),
     st.lists(st.floats(0.01, 1e6), min_size=2, max_size=6).map(
         lambda values: SpectrumTable(wavelength_nm=np.linspace(400, 1200, len(values)), per_nm=np.array(values))
+    ),
+)
+SIDES = st.sampled_from(["above", "below"])
+COLLECTIONS = st.one_of(st.none(), st.builds(Collection, na=_positive(0.01, 1), side=SIDES))
+DEPTHS = st.one_of(
+    st.just("uniform"),
+    st.builds(Decay, decay_nm=_positive(0.01, 1e5), side=SIDES),
+    st.builds(Sheet, at_nm=_positive(0, 1)),
+    st.lists(_positive(0.01, 1e6), min_size=2, max_size=6).map(
+        lambda values: DepthTable(depth_nm=np.linspace(0, 5e6, len(values)), births=np.array(values))
     ),
 )
 GRIDS = st.one_of(
@@ -247,7 +267,8 @@ def stacks(draw: st.DrawFn) -> Stack:
         below=draw(OUTERS),
         layers=tuple(layers),
         light=Light(wavelengths_nm=draw(GRIDS), spectrum=draw(SPECTRA)),
-        emission=Emission(horizontal_share=draw(st.floats(0, 1))),
+        emission=Emission(horizontal_share=draw(st.floats(0, 1)), depth=draw(DEPTHS)),
+        collection=draw(COLLECTIONS),
     )
 
 
@@ -255,6 +276,25 @@ def stacks(draw: st.DrawFn) -> Stack:
 @given(stacks())
 def test_a_stack_written_and_read_back_is_the_same_to_the_last_digit(stack):
     assert parse_stack(write_stack(stack), folder=".") == stack
+
+
+@pytest.mark.parametrize("births", ["linear", "square"])
+def test_a_pumped_stack_with_births_from_absorption_written_and_read_back_is_the_same(births, tmp_path):
+    rows = [f"{nm},2.5,{min(0.1, 0.1 * 10 ** ((760 - nm) / 12))}" for nm in range(500, 901, 4)]
+    stack = read_stack(film("\n".join(["wavelength_nm,n,k", *rows]))(tmp_path))
+    pumped = stack.with_emission(depth=Pump(pump_nm=532.0, side="below", births=births)).with_light(
+        spectrum=FromAbsorption(temperature_K=310.0, splitting_eV=1.1, n_i_per_cm3=2.5e9)
+    )
+    assert parse_stack(write_stack(pumped, folder=tmp_path), folder=tmp_path) == pumped
+
+
+def test_a_profile_is_read_from_its_table_and_written_by_its_name(tmp_path):
+    (tmp_path / "profile.csv").write_text("depth_um,births\n0,3\n0.5,1\n", encoding="utf-8")
+    stack = read_stack(edited(('"uniform"', '{ table = "profile.csv" }'))(tmp_path))
+    assert stack.emission.depth == DepthTable(depth_nm=np.array([0.0, 500.0]), births=np.array([3.0, 1.0]))
+    text = write_stack(stack, folder=tmp_path)
+    assert 'depth = {table = "profile.csv"}' in text
+    assert parse_stack(text, folder=tmp_path) == stack
 
 
 @settings(max_examples=300, deadline=None)

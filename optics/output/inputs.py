@@ -2,12 +2,14 @@
 
 import hashlib
 from collections.abc import Collection
-from dataclasses import replace
+from dataclasses import asdict, is_dataclass, replace
 from pathlib import Path
 from typing import Any
 
+from optics.depth import DepthTable
 from optics.errors import InputError
 from optics.media.material import Material
+from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, SpectrumTable
 from optics.stack import Stack
 from optics.stackfile.writing import write_stack
@@ -53,6 +55,9 @@ def tables_of(stack: Stack) -> dict[str, str]:
     spectrum = stack.light.spectrum
     if isinstance(spectrum, SpectrumTable) and spectrum.path:
         tables[spectrum.path] = spectrum.sha256
+    depth = stack.emission.depth
+    if isinstance(depth, DepthTable) and depth.path:
+        tables[depth.path] = depth.sha256
     return tables
 
 
@@ -81,16 +86,27 @@ def settings_of(stack: Stack) -> dict[str, Any]:
         "to_nm": last,
         "wavelengths": stack.light.wavelengths_nm.size,
         "horizontal_share": stack.emission.horizontal_share,
-        "depth": stack.emission.depth,
+        "depth": _settings(stack.emission.depth),
+        "collection": _settings(stack.collection),
     }
+
+
+def _settings(part: object) -> Any:
+    """Return a part of a stack in plain values: tables by path and hash."""
+    if isinstance(part, DepthTable):
+        return {"path": part.path, "sha256": part.sha256} if part.path else {"rows": part.depth_nm.size}
+    return asdict(part) if is_dataclass(part) and not isinstance(part, type) else part
 
 
 def _spectrum(stack: Stack) -> dict[str, Any]:
     spectrum = stack.light.spectrum
+    if isinstance(spectrum, FromAbsorption):
+        return {"kind": "from-absorption", **asdict(spectrum)}
     if isinstance(spectrum, Gaussian):
         shape = {"peak_nm": spectrum.peak_nm, "fwhm_nm": spectrum.fwhm_nm}
-        return {"kind": "gaussian", "seen": spectrum.seen, **shape}
-    return {"kind": "table", "seen": spectrum.seen, "path": spectrum.path, "sha256": spectrum.sha256}
+        return {"kind": "gaussian", "seen": spectrum.seen, "na": spectrum.na, **shape}
+    file = {"path": spectrum.path, "sha256": spectrum.sha256}
+    return {"kind": "table", "seen": spectrum.seen, "na": spectrum.na, **file}
 
 
 def _bundled(material: Material) -> bool:
@@ -134,12 +150,16 @@ def _moved(stack: Stack, tables: dict[str, Path]) -> Stack:
     spectrum = stack.light.spectrum
     if isinstance(spectrum, SpectrumTable) and spectrum.path in tables:
         spectrum = replace(spectrum, path=str(tables[spectrum.path]))
+    emission = stack.emission
+    if isinstance(emission.depth, DepthTable) and emission.depth.path in tables:
+        emission = replace(emission, depth=replace(emission.depth, path=str(tables[emission.depth.path])))
     return replace(
         stack,
         above=replace(stack.above, material=moved(stack.above.material)),
         below=replace(stack.below, material=moved(stack.below.material)),
         layers=tuple(replace(layer, material=moved(layer.material)) for layer in stack.layers),
         light=replace(stack.light, spectrum=spectrum),
+        emission=emission,
     )
 
 

@@ -13,14 +13,16 @@ from optics.errors import InputError
 from optics.faults import Faults, closest, found, quoted
 from optics.media.labtable import AXES
 from optics.media.sheet import Sheet, decode, parse_sheet, read_bytes, shortened
-from optics.spectrum import PLACE, Gaussian, Spectrum, SpectrumTable
+from optics.radiation import PLACE, FromAbsorption
+from optics.spectrum import Gaussian, Spectrum, SpectrumTable
 from optics.stackfile.keys import Keys
 from optics.units import energy_eV
 
 KINDS = ("gaussian", "table", "from-absorption")
-GAUSSIAN_KEYS = ("kind", "seen", "peak_nm", "fwhm_nm")
-TABLE_KEYS = ("kind", "seen", "file", "wavelength_nm", "per_nm")
-BIRTHS = ("births_per_nm", "births_per_um", "births_per_eV")
+GAUSSIAN_KEYS = ("kind", "seen", "na", "peak_nm", "fwhm_nm")
+TABLE_KEYS = ("kind", "seen", "na", "file", "wavelength_nm", "per_nm")
+ABSORPTION_KEYS = ("temperature_K", "splitting_eV", "n_i_per_cm3", "seen")
+BIRTHS = ("births_per_nm", "births_per_um", "births_per_eV", "light_per_nm", "light_per_um", "light_per_eV")
 HEADER = f"one of {', '.join(AXES)}, and one of {', '.join(BIRTHS)}"
 
 
@@ -35,7 +37,7 @@ def spectrum_from(table: Mapping[str, Any], *, home: Path) -> Spectrum:
     if kind is None:
         raise InputError(f"{PLACE}: kind: missing, expected one of {words}")
     if kind == "from-absorption":
-        raise InputError(f'{PLACE}: kind: found "from-absorption": not available yet; expected "gaussian" or "table"')
+        return _from_absorption(table)
     close = closest(kind, KINDS) if isinstance(kind, str) else None
     cure = f'; did you mean "{close}"?' if close else ""
     raise InputError(f"{PLACE}: kind: found {found(kind)}, expected one of {words}{cure}")
@@ -48,7 +50,8 @@ def read_births(path: Path, *, place: str) -> tuple[FloatArray, FloatArray, str]
     ----------
     path
         A CSV file with a header that names units: ``wavelength_nm``, ``wavelength_um`` or ``energy_eV``, and
-        ``births_per_nm``, ``births_per_um`` or ``births_per_eV``; rows rising or falling.
+        ``births_per_nm``, ``births_per_um`` or ``births_per_eV`` (for what was seen outside also ``light_per_nm``
+        and so on); rows rising or falling.
     place
         What messages call the file.
 
@@ -83,7 +86,17 @@ def _gaussian(table: Mapping[str, Any]) -> Gaussian:
     spectrum = Gaussian(peak_nm=1.0, fwhm_nm=1.0)  # stands in where something is missing
     given = {key: value for key, value in (("peak_nm", peak), ("fwhm_nm", width)) if value is not None}
     with faults.taking_over():
-        spectrum = replace(spectrum, **given, seen=keys.get("seen", spectrum.seen))
+        spectrum = replace(spectrum, **given, seen=keys.get("seen", spectrum.seen), na=keys.get("na"))
+    faults.settle()
+    return spectrum
+
+
+def _from_absorption(table: Mapping[str, Any]) -> FromAbsorption:
+    faults = Faults(PLACE)
+    keys = Keys(table, faults, ("kind", *ABSORPTION_KEYS))
+    spectrum = FromAbsorption()
+    with faults.taking_over():
+        spectrum = FromAbsorption(**{key: keys.given[key] for key in ABSORPTION_KEYS if key in keys.given})
     faults.settle()
     return spectrum
 
@@ -99,7 +112,7 @@ def _table(table: Mapping[str, Any], home: Path) -> SpectrumTable:
     elif source == "per_nm" and keys.need("wavelength_nm", "a list of wavelengths in nm, one for each per_nm"):
         rows = {"wavelength_nm": keys.get("wavelength_nm"), "per_nm": keys.get("per_nm")}
     with faults.taking_over():
-        spectrum = replace(spectrum, **rows, seen=keys.get("seen", spectrum.seen))
+        spectrum = replace(spectrum, **rows, seen=keys.get("seen", spectrum.seen), na=keys.get("na"))
     faults.settle()
     return spectrum
 
@@ -120,9 +133,9 @@ def _file(keys: Keys, home: Path) -> dict[str, Any]:
 
 def _per_nm(births: str, wavelength: FloatArray) -> FloatArray:
     """Return what turns a density per the column's unit into one per nm."""
-    if births == "births_per_eV":
+    if births.endswith("_per_eV"):
         return energy_eV(wavelength) / wavelength  # |dE/dwavelength|
-    return np.full(wavelength.shape, 1e-3 if births == "births_per_um" else 1.0)
+    return np.full(wavelength.shape, 1e-3 if births.endswith("_per_um") else 1.0)
 
 
 def _header_faults(header: tuple[str, ...]) -> list[str]:

@@ -11,12 +11,14 @@ from pathlib import Path
 from typing import Any, NamedTuple
 
 from optics.byvalue import FloatArray, read_only
+from optics.collection import Collection
 from optics.faults import Faults, found
 from optics.light import Light, checked_wavelengths, even_wavelengths
 from optics.media.cabinet import find
 from optics.media.dispersion import Constant
 from optics.media.material import Material
-from optics.spectrum import Gaussian, Spectrum, births_per_nm
+from optics.radiation import FromAbsorption
+from optics.spectrum import Gaussian, Spectrum, given_per_nm
 from optics.stack import (
     OUTER_NAMES,
     THICKNESS_TO_NM,
@@ -32,9 +34,10 @@ from optics.stack import (
     layer_place,
 )
 from optics.stackfile.births import spectrum_from
+from optics.stackfile.depths import collection_from, depth_from
 from optics.stackfile.keys import Keys
 
-STACK_KEYS = ("title", "above", "below", "light", "emission", "layer")
+STACK_KEYS = ("title", "above", "below", "light", "emission", "collection", "layer")
 EVEN_KEYS = ("from_nm", "to_nm", "step_nm")
 LIGHT_KEYS = (*EVEN_KEYS, "wavelengths_nm", "spectrum")
 EMISSION_KEYS = ("horizontal_share", "depth")
@@ -80,7 +83,8 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
     above, below = (_outer(keys, side, home) for side in OUTER_NAMES)
     rows = _layers(keys, home)
     wavelengths, spectrum = _light(keys, home)
-    emission = _emission(keys)
+    emission = _emission(keys, home)
+    collection = _collection(keys)
     if wavelengths.size:
         media = [("above", above.material, False), ("below", below.material, False)]
         media += [(layer_place(row.name), row.material, row.emits) for row in rows]
@@ -93,6 +97,7 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
         layers=tuple(row.layer for row in rows if row.layer),
         light=Light(wavelengths_nm=wavelengths, spectrum=spectrum),
         emission=emission,
+        collection=collection,
     )
 
 
@@ -171,9 +176,9 @@ def _light(keys: Keys, home: Path) -> tuple[FloatArray, Spectrum]:
     wavelengths = _wavelengths(own)
     spectrum = _spectrum(own, home)
     faults.lines += own.faults.lines
-    if wavelengths.size:
+    if wavelengths.size and not isinstance(spectrum, FromAbsorption):
         with faults.collecting():
-            births_per_nm(spectrum, wavelengths)
+            given_per_nm(spectrum, wavelengths)
     return wavelengths, spectrum
 
 
@@ -204,12 +209,29 @@ def _spectrum(light: Keys, home: Path) -> Spectrum:
     return _SPECTRUM
 
 
-def _emission(keys: Keys) -> Emission:
+def _emission(keys: Keys, home: Path) -> Emission:
     table = keys.table("emission")
     if table is None:
         return Emission()
     own = Keys(table, Faults("emission"), EMISSION_KEYS)
     keys.faults.lines += own.faults.lines
-    with keys.faults.collecting():
-        return Emission(**{key: own.given[key] for key in EMISSION_KEYS if key in own.given})
+    parts = {key: own.given[key] for key in EMISSION_KEYS if key in own.given}
+    if "depth" in parts:
+        spec = parts.pop("depth")
+        with keys.faults.taking_over():
+            parts["depth"] = depth_from(spec, home=home)
+    with keys.faults.taking_over():
+        return Emission(**parts)
     return Emission()
+
+
+def _collection(keys: Keys) -> Collection | None:
+    given = keys.get("collection")
+    if isinstance(given, Collection):
+        return given
+    table = keys.table("collection")
+    if table is None:
+        return None
+    with keys.faults.taking_over():
+        return collection_from(table)
+    return None

@@ -6,11 +6,13 @@ from pathlib import Path
 from typing import Any
 
 from optics.byvalue import FloatArray
+from optics.depth import Decay, Depth, DepthTable, Pump, Sheet
 from optics.errors import InputError
 from optics.light import Light, even_wavelengths
 from optics.media.cabinet import bundled_names, find
 from optics.media.dispersion import Constant
 from optics.media.material import Material
+from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, Spectrum
 from optics.stack import PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
 from optics.units import nm_from_mm
@@ -42,8 +44,10 @@ def write_stack(stack: Stack, *, folder: str | Path | None = None) -> str:
     document["light"] = _light(stack.light, home)
     document["emission"] = {
         "horizontal_share": _number(stack.emission.horizontal_share),
-        "depth": stack.emission.depth,
+        "depth": _inline(_depth(stack.emission.depth, home)),
     }
+    if stack.collection is not None:
+        document["collection"] = {"na": _number(stack.collection.na), "side": stack.collection.side}
     layers = tomlkit.aot()
     for layer in stack.layers:
         table = tomlkit.table()
@@ -109,6 +113,12 @@ def _grid(wavelengths: FloatArray) -> dict[str, Any]:
 
 def _spectrum(spectrum: Spectrum, home: Path | None) -> dict[str, Any]:
     table: dict[str, Any] = {"seen": spectrum.seen}
+    if isinstance(spectrum, FromAbsorption):
+        given = {key: getattr(spectrum, key) for key in ("temperature_K", "splitting_eV", "n_i_per_cm3")}
+        numbers = {key: _number(value) for key, value in given.items() if value is not None}
+        return {"kind": "from-absorption"} | table | numbers
+    if spectrum.na is not None:
+        table["na"] = _number(spectrum.na)
     if isinstance(spectrum, Gaussian):
         return table | {
             "kind": "gaussian",
@@ -120,6 +130,21 @@ def _spectrum(spectrum: Spectrum, home: Path | None) -> dict[str, Any]:
         return table | {"file": _from_home(spectrum.path, home)}
     rows = {"wavelength_nm": spectrum.wavelength_nm, "per_nm": spectrum.per_nm}
     return table | {key: [_number(value) for value in values.tolist()] for key, values in rows.items()}
+
+
+def _depth(depth: Depth, home: Path | None) -> Any:
+    if isinstance(depth, Pump):
+        return {"pump_nm": _number(depth.pump_nm), "side": depth.side, "births": depth.births}
+    if isinstance(depth, Decay):
+        return {"decay_nm": _number(depth.decay_nm), "side": depth.side}
+    if isinstance(depth, Sheet):
+        return {"at_nm": _number(depth.at_nm)}
+    if not isinstance(depth, DepthTable):
+        return depth
+    if depth.path:
+        return {"table": _from_home(depth.path, home)}
+    rows = {"depth_nm": depth.depth_nm, "births": depth.births}
+    return {key: [_number(value) for value in values.tolist()] for key, values in rows.items()}
 
 
 def _spec(material: Material, place: str, home: Path | None) -> Any:
