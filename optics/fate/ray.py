@@ -11,7 +11,7 @@ import numpy as np
 
 from optics.fate.exits import Layout, Response, emerge, light_lines, split_panels
 from optics.fate.ledger import Account, merge
-from optics.fate.wave import Settings, panel_order
+from optics.fate.wave import Settings
 from optics.fate.wave_account import THINNEST_ZONE, absorbers
 from optics.waves import curves
 from optics.waves.coherent import Real
@@ -20,6 +20,10 @@ from optics.waves.paths import Density, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.source import first_flight
+
+ORDER = 32
+"""Order of the rule: without phases in the film there is little for it to follow."""
+
 
 @dataclass(frozen=True)
 class Traced:
@@ -226,6 +230,6 @@ def _integrated(
         density,
         curves.panels(owner, start, stop),
         wavelengths=scene.wavelengths,
-        order=panel_order(scene, settings, film=False),
+        order=ORDER * settings.finer,
         tolerance=settings.loose,
     )

@@ -19,7 +19,7 @@ from optics.waves.coherent import (
     squared,
 )
 from optics.waves.curves import Points
-from optics.waves.lines import NO_LINES, find, integrate_with_lines
+from optics.waves.lines import find, integrate_with_lines, no_lines
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
@@ -192,18 +192,18 @@ def _rows(owner: Index, end: Real) -> Rows:
 
 def path_order(scene: Scene, settings: Settings) -> int:
     """Return the order of the rule on dips: phases through the group set the pace."""
-    return settings.finer * int(np.clip(8 * np.ceil(9.0 + depth_of(scene) / 24.0), 80, 256))
+    return settings.finer * int(np.clip(8 * np.ceil(7.0 + depth_of(scene) / 24.0), 64, 256))
 
 
-def panel_order(scene: Scene, settings: Settings, *, film: bool = True) -> int:
-    """Return the order of the rule on real-axis panels; ``film`` tells whether its phases count."""
-    return settings.finer * int(np.clip(8 * np.ceil(3.0 + depth_of(scene, film=film) / 12.0), 32, 128))
+def panel_order(scene: Scene, settings: Settings) -> int:
+    """Return the order of the rule on real-axis panels."""
+    return settings.finer * int(np.clip(8 * np.ceil(2.0 + depth_of(scene) / 16.0), 24, 128))
 
 
-def depth_of(scene: Scene, *, film: bool = True) -> float:
+def depth_of(scene: Scene) -> float:
     """Return the largest phase through the group at normal incidence."""
-    layers = [scene.film, *scene.group] if film else list(scene.group)
-    return float(np.abs(scene.index[layers] * scene.phase[layers]).sum(axis=0).max()) if layers else 0.0
+    layers = [scene.film, *scene.group]
+    return float(np.abs(scene.index[layers] * scene.phase[layers]).sum(axis=0).max())
 
 
 def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = None, flights: bool = False) -> Integral:
@@ -277,7 +277,7 @@ def _on_axis(
     return integrate_with_lines(
         lambda rows, points: values(scene, rows, points),
         panels,
-        find(scene, panels) if sharp else NO_LINES,
+        find(scene, panels) if sharp else no_lines(panels),
         scene=scene,
         order=panel_order(scene, settings),
         tolerance=settings.tolerance,

@@ -6,9 +6,10 @@ in closed form changes nothing but the number of nodes; a line that was missed o
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from optics.waves.coherent import Complex, Real, admittances, fold, normal_inside, normal_outside, reflection
 from optics.waves.curves import Points, on_panel
@@ -20,10 +21,14 @@ NODES_PER_PHASE = 1.3
 
 SECANTS = 4
 CLEARANCE = 4.0
-"""Lines nearer to an end of their panel than this many half widths are left alone: the ground is not smooth there."""
+"""Lines nearer to another, or to an end of their panel, than this many half widths are not fitted: the ground under
+them is not smooth."""
 
-WIDEST = 0.1
-"""Lines wider than this, in units of their panel, are what the plain rule resolves."""
+CUT_FROM = 0.03
+"""Half width, in units of the room around a line, from which a panel is cut at the line: a fit leaves too much of it."""
+
+CUT_APART = 1.0
+"""Lines that follow another by less than this many half widths share its cut."""
 
 _OFFSETS = np.array([-2.0, -1.0, 0.0, 1.0, 2.0])
 _BELL = 1.0 / (1.0 + _OFFSETS**2)
@@ -36,14 +41,25 @@ Value = Callable[[Index, Points], Real]
 
 @dataclass(frozen=True)
 class Lines:
-    """Lines of every panel, (panel, line); panels with fewer lines are filled up with ones of zero ``there``."""
+    """Lines of every panel, (panel, line), in the order of their centres; places without a line hold NaN centres.
+
+    ``room`` is the distance to the next line or end of the panel, ``before`` that to the one at smaller q.
+    """
 
     centre: Real
     width: Real
-    there: Real
+    room: Real
+    before: Real
 
+    @property
+    def fitted(self) -> NDArray[np.bool_]:
+        """Which lines are taken out of what is integrated."""
+        return self.room > CLEARANCE * self.width
 
-NO_LINES = Lines(*np.zeros((3, 1, 0)))
+    @property
+    def cut(self) -> NDArray[np.bool_]:
+        """Which lines a panel is cut at."""
+        return (self.width > CUT_FROM * self.room) & (self.before > CUT_APART * self.width)
 
 
 def integrate_with_lines(
@@ -51,32 +67,35 @@ def integrate_with_lines(
 ) -> Integral:
     """Integrate ``value`` over real-axis panels with ``lines`` taken out and added in closed form."""
     bell, odd = _amplitudes(value, panels, lines, scene)
+    taken = replace(lines, centre=np.where(lines.fitted, lines.centre, 0.0))
 
     def density(rows: Rows, u: Real) -> Real:
         points = on_panel(rows, u, scene.film_index[rows.owner, None])
         out = value(rows.owner, points)
-        if bell.shape[2]:
+        if bell.any():
             panel = rows.shape[2].astype(np.intp)
-            out -= _profile(points.q, lines, bell, odd, panel)
+            out -= _profile(points.q, taken, bell, odd, panel)
         out *= points.slope
         return out
 
-    rest = integrate(density, panels, wavelengths=scene.wavelengths, order=order, tolerance=tolerance)
+    cells = _cells(panels, lines)
+    rest = integrate(density, cells, wavelengths=scene.wavelengths, order=order, tolerance=tolerance)
     values = rest.values.copy()
-    np.add.at(values, (slice(None), panels.owner), _areas(panels, lines, bell, odd))
+    if bell.any():
+        np.add.at(values, (slice(None), panels.owner), _areas(panels, taken, bell, odd))
     return Integral(values, rest.error)
 
 
 def _amplitudes(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, Real]:
     """Return bell and odd amplitudes, (quantity, panel, line), collocated at five points about each line."""
-    panel, line = np.nonzero(lines.there)
+    panel, line = np.nonzero(lines.fitted)
     if not len(panel):
         return np.zeros((1, len(panels), 0)), np.zeros((1, len(panels), 0))
     q = lines.centre[panel, line, None] + lines.width[panel, line, None] * _OFFSETS
     owner = panels.owner[panel]
     near = value(owner, Points(q, np.ones_like(q), scene.film_index[owner, None] - q))
     fitted = near @ _FIT.T
-    bell = np.zeros((len(near), *lines.there.shape))
+    bell = np.zeros((len(near), *lines.centre.shape))
     odd = np.zeros_like(bell)
     bell[:, panel, line], odd[:, panel, line] = fitted[..., 0], fitted[..., 1]
     return bell, odd
@@ -99,6 +118,11 @@ def _areas(panels: Rows, lines: Lines, bell: Real, odd: Real) -> Real:
     return area
 
 
+def no_lines(panels: Rows) -> Lines:
+    """Return lines of panels that have none."""
+    return Lines(*np.zeros((4, len(panels), 0)))
+
+
 def find(scene: Scene, panels: Rows) -> Lines:
     """Find the sharp lines on ``panels``: the loop through the densest layer closes, X = 1, at a complex q.
 
@@ -113,17 +137,14 @@ def find(scene: Scene, panels: Rows) -> Lines:
     closes = (phase[..., 1:] * phase[..., :-1] <= 0.0) & (np.abs(np.diff(phase, axis=2)) < np.pi)
     which, panel, node = np.nonzero(closes)
     if not len(panel):
-        return Lines(*np.zeros((3, len(panels), 0)))
+        return no_lines(panels)
     older, newer = grid[panel, node] + 0j, grid[panel, node + 1] + 0j
     pole, mismatch = _secants(
         pile, scene.view(panels.owner[panel]), which, older, newer, log[which, panel, node], log[which, panel, node + 1]
     )
-    low, high = panels.shape[0][panel], panels.shape[1][panel]
-    width = pole.imag
-    clear = CLEARANCE * width
-    sharp = (width > 0.0) & (width < WIDEST * (high - low)) & (np.abs(mismatch) < 1e-3)
-    sharp &= (pole.real - clear > low) & (pole.real + clear < high)
-    return _packed(panel[sharp], pole[sharp], len(panels))
+    inside = (pole.real > panels.shape[0][panel]) & (pole.real < panels.shape[1][panel])
+    found = inside & (pole.imag > 0.0) & (np.abs(mismatch) < 1e-3)
+    return _packed(panel[found], pole[found], panels)
 
 
 def _secants(
@@ -139,16 +160,30 @@ def _secants(
     return newer, log_newer
 
 
-def _packed(panel: Index, pole: Complex, panels: int) -> Lines:
-    """Stand lines side by side, a row a panel."""
-    counts = np.bincount(panel, minlength=panels)
-    order = np.argsort(panel, kind="stable")
+def _packed(panel: Index, pole: Complex, panels: Rows) -> Lines:
+    """Stand lines side by side, a row a panel, and measure the room around each."""
+    order = np.lexsort((pole.real, panel))
+    panel, pole = panel[order], pole[order]
+    counts = np.bincount(panel, minlength=len(panels))
     place = np.arange(len(panel)) - np.repeat(np.cumsum(counts) - counts, counts)
-    shape = (panels, int(counts.max()) if len(panel) else 0)
-    centre, width, there = np.zeros(shape), np.ones(shape), np.zeros(shape)
-    at = (panel[order], place)
-    centre[at], width[at], there[at] = pole[order].real, pole[order].imag, 1.0
-    return Lines(centre, width, there)
+    shape = (len(panels), int(counts.max(initial=0)))
+    centre, width, room, before = np.full(shape, np.nan), np.ones(shape), np.zeros(shape), np.zeros(shape)
+    centre[panel, place], width[panel, place] = pole.real, pole.imag
+    low, high = panels.shape[0][:, None], panels.shape[1][:, None]
+    gaps = np.diff(np.hstack([low, np.where(np.isnan(centre), high, centre), high]))
+    before[panel, place] = gaps[panel, place]
+    room[panel, place] = np.minimum(gaps[panel, place], gaps[panel, place + 1])
+    return Lines(centre, width, room, before)
+
+
+def _cells(panels: Rows, lines: Lines) -> Rows:
+    """Cut panels at the lines that ask for it; cells remember their panel."""
+    low, high = panels.shape[0], panels.shape[1]
+    marks = np.where(lines.cut, lines.centre, high[:, None])
+    marks = np.sort(np.hstack([low[:, None], marks, high[:, None]]), axis=1)
+    panel, cell = np.nonzero(np.diff(marks) > 0.0)
+    ends = np.stack([marks[panel, cell], marks[panel, cell + 1], panel])
+    return Rows(panels.owner[panel], np.zeros(len(panel)), np.ones(len(panel)), ends)
 
 
 class _Pile:
