@@ -68,7 +68,7 @@ def emerge(
     shells = [shell(waves, side) if side.plates else None for side in scene.sides]
     sinks = [is_sink(waves.view, side, waves.q) for side in scene.sides]
     returned = [0.0 if s is None else np.where(sink, 0.0, s.reflects) for s, sink in zip(shells, sinks, strict=True)]
-    total = _coupled(leaving, responses, returned)
+    total = coupled(leaving, responses, returned)
     for k, (side, folded, sink) in enumerate(zip(scene.sides, shells, sinks, strict=True)):
         _settle(out, layout, k, side, folded, sink, total[k])
         response = responses[k]
@@ -78,7 +78,7 @@ def emerge(
                 out[layout.open(medium)] += (back * share).sum(axis=0)
 
 
-def _coupled(
+def coupled(
     leaving: tuple[Real, Real], responses: Sequence[Response | None], returned: Sequence[Real | float]
 ) -> tuple[Real, Real]:
     """Solve the two-by-two system of both sides: all passes through the group and back."""
