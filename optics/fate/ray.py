@@ -104,7 +104,7 @@ def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     taken = _crossings(rays)
     out[layout.open(scene.film)] = (rays.flown + taken).sum(axis=0)
     _book_halves(out, rays, layout.open)
-    responses = [_response(waves, rays, k) if side.plates else None for k, side in enumerate(scene.sides)]
+    responses = [response(waves, rays, k) if side.plates else None for k, side in enumerate(scene.sides)]
     emerge(waves, out, (rays.up * rays.above.on, rays.down * rays.below.on), responses, layout)
     out *= points.slope
     return out
@@ -122,7 +122,7 @@ def _book_halves(out: Real, rays: Traced, place: Callable[[int], int]) -> None:
             out[place(medium)] += (power * share).sum(axis=0)
 
 
-def _response(waves: Waves, rays: Traced, k: int) -> Response:
+def response(waves: Waves, rays: Traced, k: int) -> Response:
     """Return what the group does with light that comes back from side ``k``: in through one half, then all orders."""
     scene = waves.view.scene
     near, far = (rays.above, rays.below) if k == 0 else (rays.below, rays.above)

@@ -129,7 +129,7 @@ def open_values(scene: Scene, owner: Index, points: Points) -> Real:
         inside = curves.middle(points.q) < waves.view.film.real_index
         out[layout.first_flight] = (sent.power * flights).real * inside
     _book_group(out, layout, waves, sent)
-    responses = [_response(waves, k) if side.plates else None for k, side in enumerate(scene.sides)]
+    responses = [response(waves, k) if side.plates else None for k, side in enumerate(scene.sides)]
     emerge(waves, out, (sent.fluxes_up[-1], sent.fluxes_down[-1]), responses, layout)
     return out
 
@@ -145,7 +145,7 @@ def _book_group(out: Real, layout: Layout, waves: Waves, sent: Emission) -> None
                 out[layout.open(medium)] += (fluxes[i] - fluxes[i + 1]).sum(axis=0)
 
 
-def _response(waves: Waves, k: int) -> Response:
+def response(waves: Waves, k: int) -> Response:
     """Return what the whole group does with light that comes back from side ``k`` (0 above, 1 below)."""
     scene = waves.view.scene
     origin, behind = scene.sides[k].touching, scene.sides[1 - k].touching
