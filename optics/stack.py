@@ -16,6 +16,7 @@ from optics.light import Light
 from optics.media.cabinet import MaterialLike, find
 from optics.media.domain import RANGE_SLACK
 from optics.media.material import Material
+from optics.sample import NearField, Sample, check_reach
 from optics.units import nm_from_mm, nm_from_um
 
 PLATE_LIMIT_NM = 20_000.0  # a thicker layer carries intensities, not phases
@@ -28,6 +29,8 @@ THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
 THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
 LONGEST_NAME, LONGEST_TITLE = 60, 200  # characters that columns and figures have room for
 OUTER_NAMES = ("above", "below")
+MOST_ROUGHNESS = 0.05  # of a wavelength: Aspnes 1982 asks for structure well below it
+HALF_WIDTH_PER_RMS = 3.0**0.5  # of heights spread evenly
 
 Phases: TypeAlias = Literal["keep", "ignore"]
 CountsAs: TypeAlias = Literal["free", "held"]
@@ -49,6 +52,8 @@ class Layer:
         Whether photons are born in it.
     phases
         ``"keep"``: a thin layer, with interference; ``"ignore"``: a plate, without; None: by thickness.
+    roughness_nm
+        Root mean square height of its upper face [nm], well below a wavelength: a graded mixture of both sides.
     """
 
     name: str
@@ -56,6 +61,7 @@ class Layer:
     thickness_nm: float
     emits: bool = False
     phases: Phases | None = None
+    roughness_nm: float = 0.0
 
     def __post_init__(self) -> None:
         faults = Faults(layer_place(self.name))
@@ -63,6 +69,7 @@ class Layer:
         faults.settle()
         object.__setattr__(self, "thickness_nm", float(self.thickness_nm))
         object.__setattr__(self, "emits", bool(self.emits))
+        object.__setattr__(self, "roughness_nm", float(self.roughness_nm))
 
     @property
     def plate(self) -> bool:
@@ -110,15 +117,20 @@ class Emission:
         Share of in-plane dipoles, 0 to 1; 2/3 is isotropic.
     depth
         Where in the film photons are born: ``"uniform"``, or a `Pump`, `Decay`, `Sheet` or `DepthTable`.
+    near_field
+        How energy transfer beyond the light lines is counted; None: not at all.
     """
 
     horizontal_share: float = ISOTROPIC
     depth: Depth = "uniform"
+    near_field: NearField | None = None
 
     def __post_init__(self) -> None:
         faults = Faults("emission")
         share = faults.number("horizontal_share", self.horizontal_share, at_least=0, at_most=1, example=0.6667)
         check_depth(faults, self.depth)
+        if self.near_field is not None:
+            faults.kind("near_field", self.near_field, NearField)
         faults.settle()
         object.__setattr__(self, "horizontal_share", share)
 
@@ -141,6 +153,8 @@ class Stack:
         Dipole directions and depth.
     collection
         The aperture that gathers light outside; None: not asked for.
+    sample
+        Edges, scattering and what film absorption is worth; None: not asked for.
 
     Raises
     ------
@@ -156,6 +170,7 @@ class Stack:
     light: Light
     emission: Emission = field(default_factory=Emission)
     collection: Collection | None = None
+    sample: Sample | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "layers", tuple(self.layers))
@@ -166,6 +181,8 @@ class Stack:
             faults.kind("layer", layer, Layer)
         if self.collection is not None:
             faults.kind("collection", self.collection, Collection)
+        if self.sample is not None:
+            faults.kind("sample", self.sample, Sample)
         faults.settle()
         check_title(faults, self.title)
         check_layers(faults, names=[layer.name for layer in self.layers], emits=[layer.emits for layer in self.layers])
@@ -177,6 +194,9 @@ class Stack:
         check_pump(faults, media=self.media, depth=self.emission.depth)
         check_spectrum(faults, light=self.light, film=self.film.material)
         check_apertures(faults, media=self.media, light=self.light, collection=self.collection)
+        if self.sample is not None:
+            check_reach(faults, sample=self.sample, wavelengths_nm=self.light.wavelengths_nm)
+        check_roughness(faults, layers=self.layers, shortest_nm=self.light.range_nm[0])
         faults.settle()
 
     @property
@@ -210,7 +230,7 @@ class Stack:
         if name not in names:
             raise InputError(f"{layer_place(name)}: not in this stack, which has {', '.join(names)}")
         faults = Faults(layer_place(name))
-        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases"))
+        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm"))
         given = [key for key in THICKNESS_TO_NM if key in changes]
         if len(given) > 1:
             faults.add(given[0], f"found {' and '.join(given)}, expected one of them")
@@ -244,16 +264,26 @@ class Stack:
         return replace(self, light=replace(self.light, **changes))
 
     def with_emission(self, **changes: Any) -> "Stack":
-        """Return the stack with ``horizontal_share`` or ``depth`` changed."""
-        _settle_keys("emission", changes, ("horizontal_share", "depth"))
+        """Return the stack with ``horizontal_share``, ``depth`` or ``near_field`` changed."""
+        _settle_keys("emission", changes, ("horizontal_share", "depth", "near_field"))
         return replace(self, emission=replace(self.emission, **changes))
 
     def with_collection(self, collection: Collection | None) -> "Stack":
         """Return the stack with another aperture, or none."""
         return replace(self, collection=collection)
 
+    def with_sample(self, **changes: Any) -> "Stack":
+        """Return the stack with fields of its `Sample` changed; one of defaults is made where there is none."""
+        _settle_keys("sample", changes, tuple(part.name for part in fields(Sample)))
+        return replace(self, sample=replace(self.sample or Sample(), **changes))
+
     def flipped(self) -> "Stack":
-        """Return the stack upside down."""
+        """Return the stack upside down; refused where faces are rough, which belong to upper sides."""
+        faults = Faults()
+        for layer in self.layers:
+            if layer.roughness_nm:
+                faults.add(layer_place(layer.name), "roughness_nm: cannot be turned upside down; set it to 0 first")
+        faults.settle()
         return replace(self, above=self.below, below=self.above, layers=self.layers[::-1])
 
 
@@ -285,7 +315,14 @@ def check_title(faults: Faults, title: object) -> None:
 
 
 def check_layer(
-    faults: Faults, *, name: object, material: object, thickness_nm: object, emits: object, phases: object
+    faults: Faults,
+    *,
+    name: object,
+    material: object,
+    thickness_nm: object,
+    emits: object,
+    phases: object,
+    roughness_nm: object = 0.0,
 ) -> None:
     """Note what is wrong with the parts of one layer."""
     faults.text("name", name, expected='a short text, for example "film"', longest=LONGEST_NAME)
@@ -296,6 +333,7 @@ def check_layer(
     faults.flag("emits", emits)
     if phases is not None:
         faults.choice("phases", phases, ("keep", "ignore"))
+    faults.number("roughness_nm", roughness_nm, unit="nm", at_least=0, example=5)
 
 
 def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool]) -> None:
@@ -332,6 +370,25 @@ def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], 
                 where = int(np.argmin(index))
                 said = f"n = {index[where]:.6g} at {wavelengths_nm[where]:.12g} nm"
                 faults.add(f"{place}: material", f"found {said}, expected n above 0 in the layer that emits")
+
+
+def check_roughness(faults: Faults, *, layers: Sequence[Layer], shortest_nm: float) -> None:
+    """Note faces too rough for a graded layer: against the wavelength, or against a layer that they share."""
+    rough = [layer.roughness_nm for layer in layers]
+    for layer, below in zip(layers, [*rough[1:], 0.0], strict=True):
+        if layer.roughness_nm > shortest_nm * MOST_ROUGHNESS:
+            faults.add(
+                layer_place(layer.name),
+                f"roughness_nm: found {layer.roughness_nm:g}, expected at most {shortest_nm * MOST_ROUGHNESS:.4g}, "
+                "a twentieth of the shortest wavelength; a rougher face scatters and is no graded layer",
+            )
+        taken = HALF_WIDTH_PER_RMS * (layer.roughness_nm + below)
+        if taken >= layer.thickness_nm:
+            faults.add(
+                layer_place(layer.name),
+                f"roughness_nm: rough faces take {taken:.4g} nm of this layer, expected less than its "
+                f"{layer.thickness_nm:.6g} nm",
+            )
 
 
 def _settle_keys(place: str, changes: Iterable[str], valid: tuple[str, ...]) -> None:

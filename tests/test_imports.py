@@ -14,7 +14,7 @@ PACKAGE = Path(optics.__file__).parent
 LEVELS = (
     ("errors", "faults", "byvalue", "units"),
     ("media", "radiation"),
-    ("agreement", "assumptions", "collection", "depth", "light", "spectrum", "stack", "stackfile"),
+    ("agreement", "assumptions", "collection", "depth", "light", "roughness", "sample", "spectrum", "stack", "stackfile"),
     ("waves",),
     ("fate",),
     ("study", "transport"),

@@ -18,6 +18,7 @@ from optics.media.cabinet import find
 from optics.media.dispersion import Constant
 from optics.media.material import Material
 from optics.radiation import FromAbsorption
+from optics.sample import Sample
 from optics.spectrum import Gaussian, Spectrum, given_per_nm
 from optics.stack import (
     OUTER_NAMES,
@@ -36,12 +37,13 @@ from optics.stack import (
 from optics.stackfile.births import spectrum_from
 from optics.stackfile.depths import collection_from, depth_from
 from optics.stackfile.keys import Keys
+from optics.stackfile.samples import near_field_from, sample_from
 
-STACK_KEYS = ("title", "above", "below", "light", "emission", "collection", "layer")
+STACK_KEYS = ("title", "above", "below", "light", "emission", "collection", "sample", "layer")
 EVEN_KEYS = ("from_nm", "to_nm", "step_nm")
 LIGHT_KEYS = (*EVEN_KEYS, "wavelengths_nm", "spectrum")
-EMISSION_KEYS = ("horizontal_share", "depth")
-LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases")
+EMISSION_KEYS = ("horizontal_share", "depth", "near_field")
+LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm")
 OUTER_KEYS = ("material", "counts_as")
 SPEC_KEYS = ("n", "k", "published")
 GRID = "a number in nm (from_nm, to_nm and step_nm, or a list wavelengths_nm)"
@@ -85,6 +87,7 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
     wavelengths, spectrum = _light(keys, home)
     emission = _emission(keys, home)
     collection = _collection(keys)
+    sample = _sample(keys, home)
     if wavelengths.size:
         media = [("above", above.material, False), ("below", below.material, False)]
         media += [(layer_place(row.name), row.material, row.emits) for row in rows]
@@ -98,6 +101,7 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
         light=Light(wavelengths_nm=wavelengths, spectrum=spectrum),
         emission=emission,
         collection=collection,
+        sample=sample,
     )
 
 
@@ -157,6 +161,7 @@ def _layer(faults: Faults, table: Any, number: int, home: Path) -> _Row:
         "thickness_nm": thickness if math.isfinite(thickness) else 1.0,
         "emits": keys.get("emits", "emits" in keys.meant),
         "phases": keys.get("phases"),
+        "roughness_nm": keys.get("roughness_nm", 0.0),
     }
     check_layer(own, **parts)
     faults.lines += own.lines
@@ -220,9 +225,25 @@ def _emission(keys: Keys, home: Path) -> Emission:
         spec = parts.pop("depth")
         with keys.faults.taking_over():
             parts["depth"] = depth_from(spec, home=home)
+    if "near_field" in parts:
+        spec = parts.pop("near_field")
+        with keys.faults.taking_over():
+            parts["near_field"] = near_field_from(spec)
     with keys.faults.taking_over():
         return Emission(**parts)
     return Emission()
+
+
+def _sample(keys: Keys, home: Path) -> Sample | None:
+    given = keys.get("sample")
+    if isinstance(given, Sample):
+        return given
+    table = keys.table("sample")
+    if table is None:
+        return None
+    with keys.faults.taking_over():
+        return sample_from(table, home=home)
+    return None
 
 
 def _collection(keys: Keys) -> Collection | None:

@@ -2,6 +2,7 @@
 
 import os
 from collections.abc import Iterator
+from dataclasses import fields
 from pathlib import Path
 from typing import Any
 
@@ -13,6 +14,7 @@ from optics.media.cabinet import bundled_names, find
 from optics.media.dispersion import Constant
 from optics.media.material import Material
 from optics.radiation import FromAbsorption
+from optics.sample import PerWavelength, Sample
 from optics.spectrum import Gaussian, Spectrum
 from optics.stack import PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
 from optics.units import nm_from_mm
@@ -48,6 +50,12 @@ def write_stack(stack: Stack, *, folder: str | Path | None = None) -> str:
     }
     if stack.collection is not None:
         document["collection"] = {"na": _number(stack.collection.na), "side": stack.collection.side}
+    near_field = stack.emission.near_field
+    if near_field is not None:
+        parts = {"stand_off_nm": near_field.stand_off_nm, "to_index": near_field.to_index}
+        document["emission"]["near_field"] = _inline({key: _number(value) for key, value in parts.items()})
+    if stack.sample is not None:
+        document["sample"] = {key: _inline(value) for key, value in _sample(stack.sample).items()}
     layers = tomlkit.aot()
     for layer in stack.layers:
         table = tomlkit.table()
@@ -81,6 +89,23 @@ def _layer(layer: Layer, home: Path | None) -> dict[str, Any]:
         table["emits"] = True
     if layer.phases is not None:
         table["phases"] = layer.phases
+    if layer.roughness_nm:
+        table["roughness_nm"] = _number(layer.roughness_nm)
+    return table
+
+
+def _sample(sample: Sample) -> dict[str, Any]:
+    """Return the keys of a sample, what is as by default left out except the edges."""
+    table: dict[str, Any] = {"to_edge_mm": _number(sample.to_edge_mm), "edges": sample.edges}
+    for field in fields(Sample):
+        value = getattr(sample, field.name)
+        if field.name in table or value == field.default:
+            continue
+        if isinstance(value, PerWavelength):
+            rows = {"wavelength_nm": value.wavelength_nm, "values": value.values}
+            table[field.name] = {key: [_number(each) for each in row.tolist()] for key, row in rows.items()}
+        else:
+            table[field.name] = _number(value)
     return table
 
 
