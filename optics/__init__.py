@@ -11,7 +11,7 @@ if TYPE_CHECKING:
     from optics.light import Light
     from optics.media.cabinet import bundled_names
     from optics.media.cabinet import find as find_material
-    from optics.media.labtable import read_table
+    from optics.media.labfile import read_table
     from optics.media.material import Material
     from optics.output.result import write_result
     from optics.spectrum import Gaussian, SpectrumTable
@@ -57,7 +57,7 @@ _HOMES = {
     "find_material": "optics.media.cabinet:find",
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
-    "read_table": "optics.media.labtable:read_table",
+    "read_table": "optics.media.labfile:read_table",
     "solve": "optics.fate.solve:solve",
     "write_result": "optics.output.result:write_result",
     "write_stack": "optics.stackfile.writing:write_stack",

@@ -477,7 +477,7 @@ CASES = [
     Case("NaN in a table", film(FILM.replace("0.05", "nan")), (_FILM, "line 3: k", "nan")),
     Case("negative k in a table", film(FILM.replace("0.05", "-0.05")), (_FILM, "line 3: k: found -0.05")),
     Case("comma decimals in a table", film(FILM.replace("2.45", "2,45")), (_FILM, "line 3", "point")),
-    Case("semicolons in a table", film(FILM.replace(",", ";")), (_FILM, "semicolons")),
+    Case("tabs above commas in a table", film(FILM.replace(",", "\t", 2)), (_FILM, "line 1", "expected 3 headings")),
     # tables of births
     Case("missing births", edited((GAUSSIAN, 'kind = "table"\nfile = "birth.csv"')), ("birth.csv: no such file",)),
     Case("births without a file", edited((GAUSSIAN, 'kind = "table"')), ("light.spectrum: file: missing",)),

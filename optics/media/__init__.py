@@ -2,7 +2,7 @@
 
 from optics.media.cabinet import MaterialLike, bundled_names, find
 from optics.media.dispersion import Cauchy, Constant, Joined, Medium, Sellmeier, Tabulated
-from optics.media.labtable import read_table
+from optics.media.labfile import read_table
 from optics.media.material import Material
 
 __all__ = [

@@ -1,5 +1,11 @@
-"""Where a material is found: by bundled name, in a table, as a number, or in the open database."""
+"""Where a material is found: by bundled name, in a cabinet of one's own, in a table, as a number, in the open database.
 
+A cabinet is a folder of cards (`optics.media.card`): ``materials/`` beside the stack file, and one a user in the place
+that the platform keeps for an application's data. A name is looked for in this order: beside the stack file, the
+user's, the bundled ones. The import refuses names of bundled materials, so that none is ever hidden.
+"""
+
+import os
 from collections.abc import Mapping
 from difflib import get_close_matches
 from functools import cache
@@ -10,15 +16,31 @@ import numpy as np
 from optics.errors import InputError
 from optics.media.card import read_card
 from optics.media.dispersion import Constant
-from optics.media.labtable import read_hashed
+from optics.media.labfile import WORKBOOKS, read_hashed
 from optics.media.material import Material
 
-__all__ = ["MaterialLike", "bundled", "bundled_names", "find"]
+__all__ = [
+    "MaterialLike",
+    "bundled",
+    "bundled_names",
+    "cabinet_beside",
+    "find",
+    "is_card",
+    "own_names",
+    "users_cabinet",
+]
 
 MaterialLike = Material | str | Path | complex | Mapping[str, object]
 """What `find` takes: a material, a name or path, a number (also complex), {n, k} or {published}."""
 
-_TABLE_SUFFIXES = (".csv", ".txt", ".dat", ".tsv")
+CABINET = "materials"
+"""Name of a cabinet's folder beside a stack file."""
+
+CABINET_VARIABLE = "PHOTONFATE_MATERIALS"
+"""Environment variable that names another folder for the user's own cabinet."""
+
+_CARD_SUFFIX = ".toml"
+_TABLE_SUFFIXES = (".csv", ".txt", ".dat", ".tsv", *WORKBOOKS, _CARD_SUFFIX)
 _SPECS = 'a bundled name, a table file, a number, { n = ..., k = ... } or { published = "shelf/book/page" }'
 
 
@@ -28,12 +50,13 @@ def find(spec: MaterialLike, *, folder: str | Path | None = None) -> Material:
     Parameters
     ----------
     spec
-        A `Material` (returned as it is); the name of a bundled card; the path of a CSV table, that is text with a
-        slash or ending in .csv, .txt, .dat or .tsv; a real or complex number n + i k;
+        A `Material` (returned as it is); the name of a card in a cabinet or of a bundled one; the path of a table (or
+        of a card), that is text with a slash or ending in .csv, .txt, .dat, .tsv, .xlsx, .xlsm (or .toml); a real or
+        complex number n + i k;
         ``{"n": ..., "k": ...}``; ``{"published": "main/Ag/Johnson"}``, a page of the open index database.
         The constant index 1 is vacuum and counts as a gas.
     folder
-        Where relative paths start, the working directory when None.
+        Where relative paths start and the cabinet beside the stack file stands, the working directory when None.
 
     Raises
     ------
@@ -45,7 +68,7 @@ def find(spec: MaterialLike, *, folder: str | Path | None = None) -> Material:
     if isinstance(spec, Path):
         return _table(str(spec), folder)
     if isinstance(spec, str):
-        return _table(spec, folder) if _is_path(spec) else bundled(spec)
+        return _table(spec, folder) if _is_path(spec) else _named(spec, folder)
     if isinstance(spec, Mapping):
         return _described(spec)
     if isinstance(spec, complex | int | float | np.number) and not isinstance(spec, bool):
@@ -62,14 +85,47 @@ def bundled_names() -> tuple[str, ...]:
     return tuple(sorted(_cards()))
 
 
-def bundled(name: str) -> Material:
-    """The bundled material of this name or alias; InputError with the nearest names when there is none."""
+def cabinet_beside(folder: str | Path | None) -> Path:
+    """Return the cabinet that belongs to stack files in a folder (the working directory when None)."""
+    return Path(folder or ".") / CABINET
+
+
+def users_cabinet() -> Path:
+    """Return the user's own cabinet, in the platform's place for an application's data."""
+    if os.environ.get(CABINET_VARIABLE):
+        return Path(os.environ[CABINET_VARIABLE])
+    from platformdirs import user_data_path
+
+    return user_data_path("photonfate", appauthor=False) / CABINET
+
+
+def own_names(folder: str | Path | None = None) -> dict[str, Path]:
+    """Return the cards of one's own by name: those beside stack files in a folder before the user's."""
+    cabinets = (users_cabinet(), cabinet_beside(folder))
+    return {card.stem: card for each in cabinets if each.is_dir() for card in sorted(each.glob(f"*{_CARD_SUFFIX}"))}
+
+
+def is_card(material: Material) -> bool:
+    """Say whether a material was read from a card, bundled or one's own."""
+    return material.path.endswith(_CARD_SUFFIX)
+
+
+def _named(spec: str, folder: str | Path | None) -> Material:
+    own = own_names(folder)
+    name = spec.strip().lower()
+    if name not in own:
+        return bundled(spec, also=tuple(own))
+    return read_card(own[name].absolute())
+
+
+def bundled(name: str, *, also: tuple[str, ...] = ()) -> Material:
+    """The bundled material of this name or alias; InputError with the nearest names (of these and ``also``) if none."""
     wanted = name.strip()
     cards = _cards()
     stem = wanted.lower() if wanted.lower() in cards else _aliases().get(wanted.lower(), "")
     if stem:
         return read_card(cards[stem])
-    near = get_close_matches(wanted.lower(), [*cards, *_aliases()], n=3, cutoff=0.6)
+    near = get_close_matches(wanted.lower(), [*cards, *_aliases(), *also], n=3, cutoff=0.6)
     names = dict.fromkeys(_aliases().get(word, word) for word in near)
     hint = f"did you mean {' or '.join(names)}?" if names else f"expected one of {', '.join(bundled_names())}"
     raise InputError(f'material: no bundled material is called "{wanted}"; {hint} (a table ends in .csv)')
@@ -100,9 +156,18 @@ def _is_path(spec: str) -> bool:
 
 def _table(spec: str, folder: str | Path | None) -> Material:
     path = Path(folder or ".") / spec
-    medium, sha256 = read_hashed(path, place=spec)
+    if spec.lower().endswith(_CARD_SUFFIX):
+        return read_card(path.absolute())
+    table = read_hashed(path, place=spec)
     where = str(path.resolve())  # good from any working directory
-    return Material(name=path.stem, medium=medium, source=f"table {path.name}", sha256=sha256, path=where)
+    return Material(
+        name=path.stem,
+        medium=table.tabulated,
+        source=f"table {path.name}",
+        sha256=table.sha256,
+        path=where,
+        understood=(*table.understood, *table.converted),
+    )
 
 
 def _described(spec: Mapping[str, object]) -> Material:

@@ -3,7 +3,8 @@
 The numbers stand below the line ``[data]``. They are one of ``constant`` (n), ``sellmeier``, ``cauchy``, ``table``
 (n and k) or ``n_table``; ``k_table`` may join all but ``constant`` and ``table``. Tables are CSV text as
 `optics.media.labtable` reads it. ``checksum`` is the SHA-256 of everything from the line ``[data]`` to the end,
-line ends counted as one line feed, so that a changed number is noticed.
+line ends counted as one line feed, so that a changed number is noticed. A card that `optics.media.importing` wrote has
+a table ``[imported]`` that says from what, when and how.
 """
 
 import hashlib
@@ -20,7 +21,19 @@ from optics.media.sheet import decode
 
 __all__ = ["checksum", "parse_card", "read_card"]
 
-_HEADER = ("name", "title", "aliases", "source", "licence", "gas", "range_nm", "checksum", "cautions", "data")
+_HEADER = (
+    "name",
+    "title",
+    "aliases",
+    "source",
+    "licence",
+    "gas",
+    "range_nm",
+    "checksum",
+    "cautions",
+    "imported",
+    "data",
+)
 _RANGE_TOLERANCE = 1e-9  # relative: a stated range is the range of the numbers, but for rounding
 
 
@@ -34,8 +47,9 @@ def read_card(path: Path) -> Material:
     """
     try:
         content = path.read_bytes()
-    except OSError as error:
-        raise InputError(f"card {path.name}: cannot be read ({error.strerror})") from None
+    except (OSError, ValueError) as error:  # ValueError: a path with a null character
+        reason = getattr(error, "strerror", None) or str(error)
+        raise InputError(f"card {path.name}: cannot be read ({reason})") from None
     return parse_card(content, place=f"card {path.name}", path=str(path))
 
 

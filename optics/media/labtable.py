@@ -1,24 +1,21 @@
-"""Tables of n and k as laboratories keep them: CSV whose header names the units.
+"""Tables of n and k in the one strict form that cards use: CSV whose header names the units.
 
 Columns ``n``, ``k`` and one of ``wavelength_nm``, ``wavelength_um``, ``energy_eV``, in any order, ascending or
 descending; commas between cells, points in decimals, UTF-8; lines that start with # are comments.
 """
 
-import hashlib
 from collections.abc import Callable
 from dataclasses import dataclass
 from difflib import get_close_matches
-from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
 from optics.errors import InputError
-from optics.media.dispersion import Tabulated
-from optics.media.sheet import Sheet, decode, parse_sheet, read_bytes, shortened, shown
+from optics.media.sheet import Sheet, parse_sheet, shortened, shown
 from optics.units import nm_from_um, wavelength_nm
 
-__all__ = ["AXES", "Columns", "parse_columns", "read_hashed", "read_table"]
+__all__ = ["AXES", "Columns", "parse_columns"]
 
 
 @dataclass(frozen=True)
@@ -53,36 +50,6 @@ class Columns:
     wavelength_nm: NDArray[np.float64]
     n: NDArray[np.float64] | None
     k: NDArray[np.float64] | None
-
-
-def read_table(path: str | Path) -> Tabulated:
-    """Read a table of n and k.
-
-    Parameters
-    ----------
-    path
-        A CSV file with a header, for instance ``wavelength_nm,n,k``.
-
-    Returns
-    -------
-    Tabulated
-        In ascending wavelength [nm].
-
-    Raises
-    ------
-    InputError
-        One line a fault: file, line and column, what was found, what is expected.
-    """
-    return read_hashed(Path(path), place=str(path))[0]
-
-
-def read_hashed(path: Path, *, place: str) -> tuple[Tabulated, str]:
-    """A table of n and k, and the SHA-256 of its file; ``place`` is what messages call the file."""
-    content = read_bytes(path, place=place)
-    columns = parse_columns(decode(content, place=place), place=place)
-    if columns.n is None or columns.k is None:  # parse_columns was asked for both
-        raise InputError(f"{place}: expected columns n and k")
-    return Tabulated(columns.wavelength_nm, columns.n, columns.k), hashlib.sha256(content).hexdigest()
 
 
 def parse_columns(text: str, *, place: str, wanted: tuple[str, ...] = ("n", "k")) -> Columns:

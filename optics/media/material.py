@@ -35,6 +35,8 @@ class Material:
         The file that was read, empty when there is none.
     cautions
         What a careful reader should know about the numbers.
+    understood
+        How the file was read, in sentences; empty when it left nothing open.
     """
 
     name: str
@@ -46,6 +48,7 @@ class Material:
     sha256: str = ""
     path: str = field(default="", compare=False)  # where a file lies does not change what it holds
     cautions: str = ""
+    understood: tuple[str, ...] = field(default=(), compare=False)
 
     def __post_init__(self) -> None:
         if not isinstance(self.name, str) or not self.name.strip():
