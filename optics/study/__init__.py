@@ -1,0 +1,1 @@
+"""Many stacks at once: sweeps, comparisons, tolerances, the audit, and the engine that spreads their work."""
