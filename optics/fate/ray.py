@@ -49,7 +49,7 @@ def trace(waves: Waves) -> Traced:
     slant = 2.0 * view.loss[scene.film] * view.phase[scene.film] / cosine
     crossing = np.exp(-slant)
     near_up, near_down = scene.moments(-slant)
-    launched = _launch(view, q, cosine)
+    launched = launch(view, q, cosine)
     up, down = 0.5 * launched * near_up, 0.5 * launched * near_down
     loop = 1.0 - crossing * crossing * above.back * below.back
     return Traced(
@@ -64,7 +64,7 @@ def trace(waves: Waves) -> Traced:
     )
 
 
-def _launch(view: View, q: Real, cosine: Real) -> Real:
+def launch(view: View, q: Real, cosine: Real) -> Real:
     """Return the power launched per unit q by in-plane and normal dipoles, (polarisation, row, node)."""
     n, h = view.film.real_index, view.film.in_plane
     sine_squared = (q / n) ** 2
@@ -150,7 +150,7 @@ def bound_density(scene: Scene, rows: Rows, u: Real, *, passes: bool) -> Real:
     out = np.zeros((2 + scene.media, *u.shape))
     view = waves.view
     cosine = waves.kz(scene.film).real / view.film.real_index
-    launched = _launch(view, waves.q, cosine)
+    launched = launch(view, waves.q, cosine)
     out[0] = launched.sum(axis=0)
     if passes:
         rays = trace(waves)
