@@ -96,8 +96,15 @@ def _on_axis(scene: Scene, rows: Rows, u: Real) -> tuple[Waves, Points]:
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     """Return everything the open zone needs per node, (quantity, row, node), Jacobian included."""
     waves, points = _on_axis(scene, rows, u)
+    out = open_values(scene, waves)
+    out *= points.slope
+    return out
+
+
+def open_values(scene: Scene, waves: Waves) -> Real:
+    """Return everything the open zone needs per unit q, (quantity, row, node), in the order of ``Layout``."""
     layout = Layout(scene.media)
-    out = np.zeros((layout.size, *u.shape))
+    out = np.zeros((layout.size, *waves.q.shape))
     rays = trace(waves)
     out[layout.power] = rays.launched.sum(axis=0)
     out[layout.first_flight] = rays.flown.sum(axis=0)
@@ -106,7 +113,6 @@ def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     _book_halves(out, rays, layout.open)
     responses = [response(waves, rays, k) if side.plates else None for k, side in enumerate(scene.sides)]
     emerge(waves, out, (rays.up * rays.above.on, rays.down * rays.below.on), responses, layout)
-    out *= points.slope
     return out
 
 

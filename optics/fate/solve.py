@@ -3,18 +3,20 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
 from optics.assumptions import assumptions
-from optics.fate import advice, ray, wave_account
+from optics.fate import advice, births, outside, ray, wave_account
+from optics.fate.drawing import bracket, drawing_of
 from optics.fate.ledger import SHARES, ZONES, Ledger, draw_up, merge
+from optics.fate.pump import Pumped
 from optics.fate.reflection import Reflection, at_normal
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
 from optics.media.checks import floor_warning
-from optics.spectrum import births_per_nm, weights
+from optics.spectrum import weights
 from optics.stack import Stack
 from optics.units import energy_eV
 from optics.waves.coherent import Real
@@ -31,7 +33,7 @@ COLUMNS = (
     *SHARES,
     "closure",
 )
-"""Columns of ``Result.table`` and ``Result.ray_table``."""
+"""Columns of ``Result.table`` and ``Result.ray_table``; ``collected`` follows where the stack has a collection."""
 
 
 @dataclass(frozen=True)
@@ -65,6 +67,21 @@ class Result:
         Estimated numerical error per wavelength (largest of all shares).
     error_by_share
         Estimated numerical error of each averaged share.
+    spectra
+        Per nm: births, light out above and below, held, guided and collected (of the model that leads); with a spectrum
+        seen outside ``amplifies_noise`` marks where it was divided by little.
+    pattern
+        Light on the side of the stack's collection per steradian and photon born against the outside angle, with a
+        Lambertian of the same whole; None without a collection.
+    depth
+        Births over depth, mean 1; None where they are even or all in a sheet.
+    depth_averages
+        With a pump: the averages for births that are even (``uniform``), along the pump's absorption (``linear``) and
+        along its square (``square``).
+    pump
+        Absorbed share of the pump and carrier densities; None without one.
+    radiation
+        Emission in the dark and radiative coefficient; None unless births follow from absorption.
     warnings, assumptions
         Sentences.
     """
@@ -82,6 +99,12 @@ class Result:
     advice: str
     errors: Real
     error_by_share: dict[str, float]
+    spectra: pd.DataFrame
+    pattern: pd.DataFrame | None = None
+    depth: pd.DataFrame | None = None
+    depth_averages: dict[str, dict[str, float]] = field(default_factory=dict)
+    pump: Pumped | None = None
+    radiation: births.Radiation | None = None
     warnings: tuple[str, ...] = field(default=())
     assumptions: tuple[str, ...] = field(default=())
 
@@ -89,26 +112,6 @@ class Result:
     def numerical_error(self) -> float:
         """Largest estimated error of any share at any wavelength."""
         return float(self.errors.max())
-
-
-def drawing_of(stack: Stack) -> Drawing:
-    """Return a stack's arrays at its wavelengths.
-
-    Raises
-    ------
-    InputError
-        Where a material's table does not reach.
-    """
-    wavelength = stack.light.wavelengths_nm
-    return Drawing(
-        wavelength_nm=wavelength,
-        index=np.array([material.index(wavelength) for _, material, _ in stack.media]),
-        thickness_nm=np.array([0.0, *(layer.thickness_nm for layer in stack.layers), 0.0]),
-        plate=(True, *(layer.plate for layer in stack.layers), True),
-        film=stack.film_index + 1,
-        free=(stack.above.free, stack.below.free),
-        in_plane=stack.emission.horizontal_share,
-    )
 
 
 def solve(stack: Stack, *, settings: Settings | None = None) -> Result:
@@ -129,13 +132,13 @@ def solve(stack: Stack, *, settings: Settings | None = None) -> Result:
     Raises
     ------
     InputError
-        Where a material's table does not reach.
+        Where a material's table does not reach, a pump does not get to the film, or light is said to be seen where
+        none gets out.
     """
     settings = settings or Settings()
     drawing = drawing_of(stack)
-    rays = ledger_of(drawing, settings, model="ray")
-    waves = None if stack.film.plate else ledger_of(drawing, settings, model="wave")
-    return _result(stack, drawing, waves, rays)
+    models = ("ray",) if stack.film.plate else ("wave", "ray")
+    return _result(stack, drawing, {model: ledger_of(drawing, settings, model=model) for model in models}, settings)
 
 
 def ledger_of(drawing: Drawing, settings: Settings, *, model: str) -> Ledger:
@@ -147,31 +150,51 @@ def ledger_of(drawing: Drawing, settings: Settings, *, model: str) -> Ledger:
     return draw_up(account, film=drawing.film, walls=walls)
 
 
-def _result(stack: Stack, drawing: Drawing, waves: Ledger | None, rays: Ledger) -> Result:
-    spectrum = births_per_nm(stack.light.spectrum, drawing.wavelength_nm)
-    ray_table, ray_averages, _ = _booked(drawing, spectrum, rays)
-    table, averages, errors = (None, ray_averages, _) if waves is None else _booked(drawing, spectrum, waves)
-    lead = rays if waves is None else waves
-    shares = spectrum * weights(drawing.wavelength_nm)
+def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings: Settings) -> Result:
+    lead, ledger = next(iter(ledgers.items()))
+    born = births.born_inside(stack, drawing, ledger, model=lead, settings=settings)
+    shares = born.per_nm * weights(drawing.wavelength_nm)
+    booked = {model: _booked(stack, drawing, born.per_nm, ledgers[model], model, settings) for model in ledgers}
+    tables = {model: each.table for model, each in booked.items()}
+    averages, ray_averages = booked[lead].averages, booked["ray"].averages
     model, why = _advice(stack, drawing, shares)
     names = medium_names(stack)
+    pump = outside.pump_in(stack)
     return Result(
         stack=stack,
-        table=table,
-        ray_table=ray_table,
-        where=_where(drawing, names, lead),
+        table=tables.get("wave"),
+        ray_table=tables["ray"],
+        where=_where(drawing, names, ledger),
         reflection=_reflection(drawing, names),
         index=_index(drawing, names),
         averages=averages,
         ray_averages=ray_averages,
-        wave_minus_ray={} if waves is None else {name: averages[name] - ray_averages[name] for name in SHARES},
+        wave_minus_ray={} if lead == "ray" else {name: averages[name] - ray_averages[name] for name in SHARES},
         advised_model=model,
         advice=why,
-        errors=lead.error,
-        error_by_share=errors,
-        warnings=_warnings(stack, drawing, names, shares, lead),
+        errors=ledger.error,
+        error_by_share=booked[lead].errors,
+        spectra=outside.spectra_table(tables[lead], born, seen_outside=stack.light.spectrum.seen != "inside"),
+        pattern=outside.pattern_table(stack, drawing, tables, ledgers) if stack.collection else None,
+        depth=outside.depth_table(stack, drawing, pump),
+        depth_averages=_bracketed(stack, drawing, born, pump, lead, settings),
+        pump=pump,
+        radiation=births.radiation_of(stack, drawing, averages["rate_factor"]),
+        warnings=_warnings(stack, drawing, names, born, ledger, advised=model, lead=lead),
         assumptions=assumptions(stack),
     )
+
+
+def _bracketed(
+    stack: Stack, drawing: Drawing, born: births.Born, pump: Pumped | None, model: str, settings: Settings
+) -> dict[str, dict[str, float]]:
+    """Return the averages for even births and births along a pump and its square; empty without a pump."""
+    if pump is None:
+        return {}
+    return {
+        name: _booked(stack, each, born.per_nm, ledger_of(each, settings, model=model), model, settings).averages
+        for name, each in bracket(drawing, pump).items()
+    }
 
 
 def medium_names(stack: Stack) -> list[str]:
@@ -179,29 +202,41 @@ def medium_names(stack: Stack) -> list[str]:
     return ["above", *(layer.name for layer in stack.layers), "below"]
 
 
+class _Booked(NamedTuple):
+    """A model's table, its averages over the photons born and their errors."""
+
+    table: pd.DataFrame
+    averages: dict[str, float]
+    errors: dict[str, float]
+
+
 def _booked(
-    drawing: Drawing, spectrum: Real, ledger: Ledger
-) -> tuple[pd.DataFrame, dict[str, float], dict[str, float]]:
-    """Return a model's table, its averages over the photons born and their errors."""
+    stack: Stack, drawing: Drawing, spectrum: Real, ledger: Ledger, model: str, settings: Settings
+) -> _Booked:
     import pandas as pd
 
     steps = weights(drawing.wavelength_nm)
-    births = spectrum * ledger.rate_factor
-    births = births / (births @ steps)
-    weight = births * steps
+    born = spectrum * ledger.rate_factor
+    born = born / (born @ steps)
+    weight = born * steps
     columns = {
         "wavelength_nm": drawing.wavelength_nm,
         "energy_eV": energy_eV(drawing.wavelength_nm),
-        "births_per_nm": births,
+        "births_per_nm": born,
         "birth_weight": weight,
         "rate_factor": ledger.rate_factor,
         **ledger.shares,
         "closure": ledger.closure,
     }
-    averages = {name: float(weight @ share) for name, share in ledger.shares.items()}
+    shares = dict(ledger.shares)
+    collected = outside.collected_share(stack, drawing, ledger, model=model, settings=settings)
+    if collected is not None:
+        shares["collected"] = columns["collected"] = collected
+    averages = {name: float(weight @ share) for name, share in shares.items()}
     averages["rate_factor"] = float((spectrum * steps) @ ledger.rate_factor)
     errors = {name: float(weight @ error) for name, error in ledger.errors.items()}
-    return pd.DataFrame({name: columns[name] for name in COLUMNS}), averages, errors
+    order = [name for name in (*COLUMNS, "collected") if name in columns]
+    return _Booked(pd.DataFrame({name: columns[name] for name in order}), averages, errors)
 
 
 def _advice(stack: Stack, drawing: Drawing, weight: Real) -> tuple[str, str]:
@@ -257,11 +292,15 @@ def _index(drawing: Drawing, names: list[str]) -> pd.DataFrame:
     return pd.DataFrame(columns)
 
 
-def _warnings(stack: Stack, drawing: Drawing, names: list[str], weight: Real, ledger: Ledger) -> tuple[str, ...]:
+def _warnings(
+    stack: Stack, drawing: Drawing, names: list[str], born: births.Born, ledger: Ledger, *, advised: str, lead: str
+) -> tuple[str, ...]:
     film = drawing.index[drawing.film]
+    weight = born.per_nm * weights(drawing.wavelength_nm)
     said = [
         advice.metal_warning(names, drawing.index, drawing.thickness_nm, drawing.film),
         floor_warning(stack.film.name, stack.film.material, drawing.wavelength_nm, film.imag, weight),
         advice.error_warning(ledger.error),
+        *births.births_warnings(stack, drawing, born, advised=advised, lead=lead),
     ]
     return tuple(sentence for sentence in said if sentence)
