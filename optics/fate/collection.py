@@ -137,4 +137,4 @@ def _values(scene: Scene, owner: Index, q: Real, model: str) -> Real:
     points = Points(q, np.ones_like(q), scene.film_index[owner, None] - q)
     if model == "wave":
         return wave.open_values(scene, owner, points)
-    return ray.open_values(scene, Waves(scene.view(owner), points.q, points.short_of_film))
+    return ray.open_values(scene, owner, points)

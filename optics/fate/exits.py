@@ -34,22 +34,21 @@ class Layout:
     @property
     def size(self) -> int:
         """Number of quantities."""
-        return 6 + 2 * self.media
+        return 5 + 2 * self.media
 
     power = 0
-    first_flight = 1
 
     def end(self, which: int) -> int:
         """Position of one of the four ends."""
-        return 2 + which
+        return 1 + which
 
     def open(self, medium: int) -> int:
         """Position of what a medium takes of light that can leave."""
-        return 6 + medium
+        return 5 + medium
 
     def held(self, medium: int) -> int:
         """Position of what a medium takes of light held in plates, on its first round trip."""
-        return 6 + self.media + medium
+        return 5 + self.media + medium
 
 
 def emerge(

@@ -16,7 +16,8 @@ from optics.fate.wave_account import THINNEST_ZONE, absorbers
 from optics.waves import curves
 from optics.waves.coherent import Real
 from optics.waves.curves import Points
-from optics.waves.paths import Density, Integral, Rows, integrate
+from optics.waves.lines import Resonator, Value, find, integrate_with_lines, resonators
+from optics.waves.paths import Index, Integral, Rows
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.source import first_flight
@@ -51,7 +52,7 @@ def trace(waves: Waves) -> Traced:
     near_up, near_down = scene.moments(-slant)
     launched = launch(view, q, cosine)
     up, down = 0.5 * launched * near_up, 0.5 * launched * near_down
-    loop = 1.0 - crossing * crossing * above.back * below.back
+    loop = _unclosed(slant, crossing, above, below)
     return Traced(
         launched,
         launched - up - down,
@@ -62,6 +63,14 @@ def trace(waves: Waves) -> Traced:
         below,
         slant,
     )
+
+
+def _unclosed(slant: Real, crossing: Real, above: Meeting, below: Meeting) -> Real:
+    """Return 1 - a^2 R_u R_d from what is lost, so that nearly lossless loops keep their digits; never zero."""
+    lost_above = above.on + sum(above.taken.values())
+    lost_below = below.on + sum(below.taken.values())
+    loop: Real = -np.expm1(-2.0 * slant) + crossing * crossing * (lost_above + above.back * lost_below)
+    return np.where(loop > 0.0, loop, 1.0)
 
 
 def launch(view: View, q: Real, cosine: Real) -> Real:
@@ -82,32 +91,19 @@ def real_film(scene: Scene) -> Scene:
     return replace(scene, index=index)
 
 
-def _on_axis(scene: Scene, rows: Rows, u: Real) -> tuple[Waves, Points]:
-    """Return the waves at the nodes of real-axis panels, and the nodes, crowded towards the upper end.
-
-    There, at the film's light line, rays that graze the faces change from surviving to dying within a small cosine.
-    """
-    view = scene.view(rows.owner)
-    rest = 1.0 - u
-    points = curves.on_panel(rows, 1.0 - rest * rest, view.film.index, rest * rest)
-    return Waves(view, points.q, points.short_of_film), replace(points, slope=2.0 * rest * points.slope)
-
-
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     """Return everything the open zone needs per node, (quantity, row, node), Jacobian included."""
-    waves, points = _on_axis(scene, rows, u)
-    out = open_values(scene, waves)
-    out *= points.slope
-    return out
+    points = curves.on_panel(rows, u, scene.film_index[rows.owner, None])
+    return open_values(scene, rows.owner, points) * points.slope
 
 
-def open_values(scene: Scene, waves: Waves) -> Real:
+def open_values(scene: Scene, owner: Index, points: Points) -> Real:
     """Return everything the open zone needs per unit q, (quantity, row, node), in the order of ``Layout``."""
+    waves = Waves(scene.view(owner), points.q, points.short_of_film)
     layout = Layout(scene.media)
-    out = np.zeros((layout.size, *waves.q.shape))
+    out = np.zeros((layout.size, *points.q.shape))
     rays = trace(waves)
     out[layout.power] = rays.launched.sum(axis=0)
-    out[layout.first_flight] = rays.flown.sum(axis=0)
     taken = _crossings(rays)
     out[layout.open(scene.film)] = (rays.flown + taken).sum(axis=0)
     _book_halves(out, rays, layout.open)
@@ -135,7 +131,7 @@ def response(waves: Waves, rays: Traced, k: int) -> Response:
     layers = scene.layers_up if k == 0 else scene.layers_down
     outside = meet(waves, scene.sides[k].touching, layers[::-1], scene.film)
     a = rays.crossing
-    loop = 1.0 - a * a * near.back * far.back
+    loop = _unclosed(rays.slant, a, near, far)
     at_far = outside.on * a / loop
     at_near = at_far * far.back * a
     lost = -np.expm1(-rays.slant)
@@ -147,13 +143,13 @@ def response(waves: Waves, rays: Traced, k: int) -> Response:
     return Response(outside.back + at_near * near.on, at_far * far.on, taken)
 
 
-def bound_density(scene: Scene, rows: Rows, u: Real, *, passes: bool) -> Real:
-    """Return power, first-flight absorption and what each medium takes per node of the bound zone.
+def bound_values(scene: Scene, owner: Index, points: Points, *, passes: bool) -> Real:
+    """Return power, first-flight absorption and what each medium takes per unit q of the bound zone.
 
     Without ``passes`` only first flights are followed: where nothing absorbs, later ones never end.
     """
-    waves, points = _on_axis(scene, rows, u)
-    out = np.zeros((2 + scene.media, *u.shape))
+    waves = Waves(scene.view(owner), points.q, points.short_of_film)
+    out = np.zeros((2 + scene.media, *points.q.shape))
     view = waves.view
     cosine = waves.kz(scene.film).real / view.film.real_index
     launched = launch(view, waves.q, cosine)
@@ -168,7 +164,6 @@ def bound_density(scene: Scene, rows: Rows, u: Real, *, passes: bool) -> Real:
     else:
         slant = 2.0 * view.loss[scene.film] * view.phase[scene.film] / cosine
         out[1] = first_flight(slant, scene.moments) * out[0]
-    out *= points.slope
     return out
 
 
@@ -188,10 +183,15 @@ def _account_alike(scene: Scene, settings: Settings, *, clear: bool, others: boo
     edge = scene.film_index.real
     layout = Layout(scene.media)
     zone = _integrated(
-        lambda rows, u: open_density(scene, rows, u), scene, np.zeros_like(edge), edge_of_open(scene), layout.size, settings
+        lambda owner, points: open_values(scene, owner, points),
+        scene,
+        np.zeros_like(edge),
+        edge_of_open(scene),
+        layout.size,
+        settings,
     )
     bound = _integrated(
-        lambda rows, u: bound_density(scene, rows, u, passes=others),
+        lambda owner, points: bound_values(scene, owner, points, passes=others),
         scene,
         edge_of_open(scene),
         edge,
@@ -199,7 +199,7 @@ def _account_alike(scene: Scene, settings: Settings, *, clear: bool, others: boo
         settings,
     )
     has_bound = edge - scene.open_end > THINNEST_ZONE
-    miss = zone.values[2:].sum(axis=0) + bound.values[0] - 1.0
+    miss = zone.values[1:].sum(axis=0) + bound.values[0] - 1.0
     return Account(
         power=np.ones(scene.wavelengths),
         zone=zone.values,
@@ -226,16 +226,23 @@ def _shared_out(scene: Scene, bound: Real, *, clear: bool) -> Real:
     return taken * np.where(clear & (total > 0.0), bound[0] / np.where(total > 0.0, total, 1.0), 1.0)
 
 
-def _integrated(
-    density: Density, scene: Scene, low: Real, high: Real, size: int, settings: Settings
-) -> Integral:
+def _integrated(value: Value, scene: Scene, low: Real, high: Real, size: int, settings: Settings) -> Integral:
     owner, start, stop = split_panels(low, high, light_lines(scene))
     if not len(owner):
         return Integral(np.zeros((size, scene.wavelengths)), np.zeros(scene.wavelengths))
-    return integrate(
-        density,
-        curves.panels(owner, start, stop),
-        wavelengths=scene.wavelengths,
+    panels = curves.panels(owner, start, stop)
+    return integrate_with_lines(
+        value,
+        panels,
+        find(scene, panels, guides_of(scene)),
+        scene=scene,
         order=ORDER * settings.finer,
         tolerance=settings.loose,
+        panel=curves.on_crowded_panel,
     )
+
+
+def guides_of(scene: Scene) -> tuple[Resonator, ...]:
+    """Return the layers of both halves that can guide, the film being one of the media behind them."""
+    up = resonators(scene, scene.layers_up[::-1], scene.above.touching, scene.film)
+    return up + resonators(scene, scene.layers_down, scene.film, scene.below.touching)

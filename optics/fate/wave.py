@@ -1,6 +1,6 @@
 """Wave optics: dipoles in the thin group, from the power density to the integrals that the ledger needs."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -19,13 +19,13 @@ from optics.waves.coherent import (
     squared,
 )
 from optics.waves.curves import Points
-from optics.waves.lines import find, integrate_with_lines, no_lines
+from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 
 
-SHARP_FROM_DEPTH = 12.0
+SHARP_FROM_DEPTH = 25.0
 """Phase through the group from which leaky lines are looked for in the open zone."""
 
 
@@ -61,9 +61,9 @@ def power_on_path(view: View, points: Points, *, flights: bool) -> Complex:
         _face_on_path(view, q, layers, side.touching)
         for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True)
     ]
-    turn_less_one = np.expm1(2j * film.phase * kz)
     up, down = (reflection(own, face) for face in faces)
-    density = source.density(film, q, kz, up, down, turn_less_one) * points.slope
+    density = source.density(source.cavity(film, q, kz, up, down))
+    density *= points.slope
     if not flights:
         return density[None]
     return np.stack([density, density * source.first_flight(film.slant(kz), film.moments)])
@@ -83,7 +83,6 @@ class Emission:
     """Emission of the group at real ``q``: halves, their fluxes and the total, (polarisation, row, node)."""
 
     power: Complex  # (row, node), complex density
-    kz: Complex
     fluxes_up: list[Real]  # through each face from the film upwards
     fluxes_down: list[Real]
 
@@ -97,11 +96,10 @@ def emission(waves: Waves) -> Emission:
         waves.look(scene.layers_down, scene.below.touching),
     )
     up, down = (reflection(own, o.face) for o in looks)
-    turn_less_one = np.expm1(2j * film.phase * kz)
-    sent = source.handed(film, waves.q, kz, up, down, turn_less_one)
+    cavity = source.cavity(film, waves.q, kz, up, down)
+    sent = source.handed(cavity)
     return Emission(
-        source.density(film, waves.q, kz, up, down, turn_less_one),
-        kz,
+        source.density(cavity),
         _fluxes(looks[0], up, sent.up),
         _fluxes(looks[1], down, sent.down),
     )
@@ -124,10 +122,6 @@ def open_values(scene: Scene, owner: Index, points: Points) -> Real:
     out = np.zeros((layout.size, *points.q.shape))
     sent = emission(waves)
     out[layout.power] = sent.power.real
-    if scene.film_index.imag.any():
-        flights = source.first_flight(waves.view.film.slant(sent.kz), scene.moments)
-        inside = curves.middle(points.q) < waves.view.film.real_index
-        out[layout.first_flight] = (sent.power * flights).real * inside
     _book_group(out, layout, waves, sent)
     responses = [response(waves, k) if side.plates else None for k, side in enumerate(scene.sides)]
     emerge(waves, out, (sent.fluxes_up[-1], sent.fluxes_down[-1]), responses, layout)
@@ -216,7 +210,7 @@ def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = Non
 
     owner = np.arange(scene.wavelengths) if start is None else np.flatnonzero(end - start > 1e-12)
     if not len(owner):
-        return Integral(np.zeros((1, scene.wavelengths)), np.zeros(scene.wavelengths))
+        return Integral(np.zeros((2 if flights else 1, scene.wavelengths)), np.zeros(scene.wavelengths))
     return integrate(
         density,
         _rows(owner, end),
@@ -238,26 +232,43 @@ def riser(scene: Scene, end: Real, settings: Settings, *, flights: bool = False)
         return Integral(np.zeros((2 if flights else 1, scene.wavelengths)), np.zeros(scene.wavelengths))
     return integrate(
         density,
-        _rows(owner, end),
+        _riser_rows(scene, owner, end),
         wavelengths=scene.wavelengths,
         order=32 * settings.finer,
         tolerance=settings.tolerance,
     )
 
 
+def _riser_rows(scene: Scene, owner: Index, end: Real) -> Rows:
+    """Return risers cut at the height of the branch points of absorbing media that touch the group."""
+    height = end[owner] * scene.film_index.imag[owner] / scene.film_index.real[owner]
+    cuts = [np.clip(scene.index[side.touching, owner].imag / height, 0.0, 1.0) for side in scene.sides]
+    marks = 2.0 / np.pi * np.arcsin(np.sqrt(np.sort(cuts, axis=0)))
+    marks = np.vstack([np.zeros_like(height), marks, np.ones_like(height)])
+    piece, row = np.nonzero(np.diff(marks, axis=0) > 1e-9)
+    return Rows(owner[row], marks[piece, row], marks[piece + 1, row], end[None, owner[row]])
+
+
 def open_zone(scene: Scene, settings: Settings) -> Integral:
     """Integrate fluxes, absorption and ends on the real axis, from 0 to the largest q that can leave the group."""
     ends = np.zeros(scene.wavelengths), scene.open_end
-    # leaky lines are sharp only where many phases meet little loss
-    sharp = depth_of(scene) > SHARP_FROM_DEPTH
-    return _on_axis(open_values, Layout(scene.media).size, scene, ends, light_lines(scene), settings, sharp=sharp)
+    # leaky lines are sharp where many phases meet little loss, or where a guide leaks through a denser surrounding
+    guides = guides_of(scene)
+    sharp = guides if settings.finer > 1 or len(guides) > 1 or depth_of(scene) > SHARP_FROM_DEPTH else ()
+    return _on_axis(open_values, Layout(scene.media).size, scene, ends, settings, sharp)
 
 
 def bound_zone(scene: Scene, settings: Settings) -> Integral:
     """Integrate what each medium takes of the light that cannot leave the group, on the real axis."""
     ends = scene.open_end, scene.far_end
     loose = Settings(settings.loose, settings.finer)
-    return _on_axis(bound_values, 1 + scene.media, scene, ends, light_lines(scene), loose, sharp=True)
+    return _on_axis(bound_values, 1 + scene.media, scene, ends, loose, guides_of(scene))
+
+
+def guides_of(scene: Scene) -> tuple[Resonator, ...]:
+    """Return the layers of the group that can guide."""
+    order = (*scene.layers_up[::-1], scene.film, *scene.layers_down)
+    return resonators(scene, order, scene.above.touching, scene.below.touching)
 
 
 def _on_axis(
@@ -265,19 +276,17 @@ def _on_axis(
     size: int,
     scene: Scene,
     ends: tuple[Real, Real],
-    marks: Real,
     settings: Settings,
-    *,
-    sharp: bool,
+    guides: Sequence[Resonator],
 ) -> Integral:
-    owner, low, high = split_panels(*ends, marks)
+    owner, low, high = split_panels(*ends, light_lines(scene))
     if not len(owner):
         return Integral(np.zeros((size, scene.wavelengths)), np.zeros(scene.wavelengths))
     panels = curves.panels(owner, low, high)
     return integrate_with_lines(
         lambda rows, points: values(scene, rows, points),
         panels,
-        find(scene, panels) if sharp else no_lines(panels),
+        find(scene, panels, guides),
         scene=scene,
         order=panel_order(scene, settings),
         tolerance=settings.tolerance,

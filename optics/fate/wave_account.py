@@ -68,8 +68,9 @@ def _unbounded(scene: Scene, settings: Settings) -> Account:
     nothing = np.zeros(scene.wavelengths)
     no = np.zeros(scene.wavelengths, dtype=bool)
     miss = zone.values[Layout.power] - dip.values[0]
+    # the power of the nodes that the fluxes come from: a clear film then keeps nothing, to the last digit
     return Account(
-        power=dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene),
+        power=zone.values[Layout.power] + rise.values[0] - wave.exchange_with_itself(scene),
         zone=zone.values,
         bound_first_flight=nothing,
         bound_taken=np.zeros((scene.media, scene.wavelengths)),
@@ -83,23 +84,21 @@ def _unbounded(scene: Scene, settings: Settings) -> Account:
 
 
 def _bounded(scene: Scene, settings: Settings) -> Account:
-    film = scene.film_index
-    absorbing = bool(film[0].imag > 0.0)
-    past_film = bool(scene.far_end[0] > film[0].real)
-    dip = wave.dip(scene, scene.far_end, settings, flights=absorbing and not past_film)
+    absorbing = bool(scene.film_index[0].imag > 0.0)
+    past_film = bool(scene.far_end[0] > scene.film_index[0].real)
+    dip = wave.dip(scene, scene.far_end, settings)
+    own = wave.dip(scene, scene.far_end, settings, start=scene.open_end, flights=absorbing and not past_film)
     rise = wave.riser(scene, scene.far_end, settings, flights=absorbing and not past_film)
-    power = dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene)
-    own = wave.dip(scene, scene.far_end, settings, start=scene.open_end)
     zone = wave.open_zone(scene, settings)
+    power = dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene)
     miss = zone.values[Layout.power] + own.values[0] - dip.values[0]
     error = dip.error + rise.error + own.error + np.abs(miss)
     flown = np.zeros(scene.wavelengths)
-    if absorbing:
-        if past_film:
-            dip = wave.dip(scene, film.real, settings, flights=True)
-            rise = wave.riser(scene, film.real, settings, flights=True)
-            error = error + dip.error + rise.error
-        flown = dip.values[1] + rise.values[1] - zone.values[Layout.first_flight]
+    if absorbing and past_film:
+        flown, missed = _flown_within_film(scene, settings)
+        error = error + missed
+    elif absorbing:
+        flown = own.values[1] + rise.values[1]
     taken, missed = _taken_while_bound(scene, settings, power - zone.values[Layout.power], own)
     yes = np.ones(scene.wavelengths, dtype=bool)
     return Account(
@@ -114,6 +113,14 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
         open_error=zone.error,
         guided_error=missed,
     )
+
+
+def _flown_within_film(scene: Scene, settings: Settings) -> tuple[Real, Real]:
+    """Return first-flight absorption up to the film's own light line, where neighbours reach beyond it."""
+    edge = scene.film_index.real
+    own = wave.dip(scene, edge, settings, start=np.minimum(scene.open_end, edge), flights=True)
+    rise = wave.riser(scene, edge, settings, flights=True)
+    return own.values[1] + rise.values[1], own.error + rise.error
 
 
 def _taken_while_bound(scene: Scene, settings: Settings, power: Real, own: Integral) -> tuple[Real, Real]:

@@ -57,7 +57,7 @@ def admittances(kz: Complex, eps: Complex) -> Complex:
     """Stack the admittances of a medium, (polarisation, row, node): kz for s, kz/eps for p."""
     out = np.empty((2, *kz.shape), dtype=complex)
     out[0] = kz
-    np.divide(kz, eps, out=out[1])
+    np.multiply(kz, 1.0 / eps, out=out[1])
     return out
 
 
@@ -91,8 +91,12 @@ def fold(layers: Sequence[tuple[Complex, Complex]], behind: Complex) -> Complex:
     face = behind
     for own, turn in reversed(layers):
         onward = own + face
-        back = (own - face) * turn
-        face = own * (onward - back) / (onward + back)
+        back = own - face
+        back *= turn
+        face = onward - back
+        onward += back
+        face /= onward
+        face *= own
     return face
 
 
@@ -101,14 +105,19 @@ def look(layers: Sequence[tuple[Complex, Complex]], behind: Complex) -> Outlook:
     faces, gains = [behind], []
     for own, turn in reversed(layers):
         onward = own + faces[-1]
-        back = (own - faces[-1]) * turn
-        total = onward + back
-        faces.append(own * (onward - back) / total)
-        gains.append(4.0 * squared(own) * np.abs(turn) / squared(total))
+        back = own - faces[-1]
+        back *= turn
+        face = onward - back
+        onward += back
+        face /= onward
+        face *= own
+        faces.append(face)
+        gains.append((4.0 * np.abs(turn)) * squared(own) / squared(onward))
     return Outlook(tuple(reversed(faces)), tuple(reversed(gains)))
 
 
 def reflection(own: Complex, face: Complex) -> Complex:
     """Return the amplitude reflection at a face of admittance ``face`` met from a medium of admittance ``own``."""
-    amplitude: Complex = (own - face) / (own + face)
+    amplitude: Complex = own - face
+    amplitude /= own + face
     return amplitude

@@ -52,6 +52,16 @@ def on_panel(rows: Rows, u: Real, film: Complex, left: Real | None = None) -> Po
     )
 
 
+def on_crowded_panel(rows: Rows, u: Real, film: Complex) -> Points:
+    """Return nodes as :func:`on_panel` does, crowded further towards the upper end.
+
+    At the film's light line rays that graze the faces change from surviving to dying within a small cosine.
+    """
+    rest = 1.0 - u
+    points = on_panel(rows, 1.0 - rest * rest, film, rest * rest)
+    return Points(points.q, 2.0 * rest * points.slope, points.short_of_film)
+
+
 def middle(q: Real) -> Real:
     """Return a q inside each row's panel, (row, 1): on which side of a light line the row lies."""
     return q[:, q.shape[1] // 2, None]
@@ -77,15 +87,18 @@ def on_dip(rows: Rows, u: Real, film: Complex, start: Real | None = None) -> Poi
 
 
 def on_riser(rows: Rows, u: Real, film: Complex) -> Points:
-    """Return nodes straight up from the real end ``rows.shape[0]``, as high as ``end / Re(film)`` times Im(film)."""
+    """Return nodes straight up from the real end ``rows.shape[0]``, as high as ``end / Re(film)`` times Im(film).
+
+    They cluster at both ends: a guided mode may lie next to the foot, the film's branch point at the top.
+    """
     end = rows.shape[0][:, None]
     reach = end / film.real
-    rest = 1.0 - u
+    sine, cosine = np.sin(0.5 * np.pi * u), np.cos(0.5 * np.pi * u)
     height = reach * film.imag
     q = np.empty(u.shape, dtype=complex)
     q.real = end
-    q.imag = height * (1.0 - rest * rest)
+    q.imag = height * (sine * sine)
     short = np.empty(u.shape, dtype=complex)
     short.real = film.real - end
-    short.imag = film.imag * (1.0 - reach) + height * (rest * rest)
-    return Points(q, 2j * height * rest, short)
+    short.imag = film.imag * (1.0 - reach) + height * (cosine * cosine)
+    return Points(q, 1j * np.pi * height * (sine * cosine), short)

@@ -5,7 +5,7 @@ Im p, with an odd part, on a smooth ground. Taking fitted Lorentzians out before
 in closed form changes nothing but the number of nodes; a line that was missed or badly fitted is left to the refinement.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -16,8 +16,12 @@ from optics.waves.curves import Points, on_panel
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.scene import Scene, View
 
+FEWEST_NODES = 16.0
 NODES_PER_PHASE = 1.3
-"""Grid nodes per radian of phase through the group; a line takes pi, so that none hides between two nodes."""
+"""Grid nodes, and more per radian of phase through a resonator; a line takes pi: none hides between two nodes."""
+
+SAME_LINE = 1e-3
+"""Poles closer than this, in units of their half width, are one line."""
 
 SECANTS = 4
 CLEARANCE = 4.0
@@ -37,6 +41,9 @@ _FIT = np.linalg.inv(np.stack([_BELL, _OFFSETS * _BELL, _OFFSETS**0, _OFFSETS, _
 
 Value = Callable[[Index, Points], Real]
 """Takes owners (row,) and points (row, node); returns densities per unit q, (quantity, row, node)."""
+
+
+Panel = Callable[[Rows, Real, Complex], Points]
 
 
 @dataclass(frozen=True)
@@ -63,18 +70,24 @@ class Lines:
 
 
 def integrate_with_lines(
-    value: Value, panels: Rows, lines: Lines, *, scene: Scene, order: int, tolerance: float
+    value: Value,
+    panels: Rows,
+    lines: Lines,
+    *,
+    scene: Scene,
+    order: int,
+    tolerance: float,
+    panel: Panel = on_panel,
 ) -> Integral:
     """Integrate ``value`` over real-axis panels with ``lines`` taken out and added in closed form."""
     bell, odd = _amplitudes(value, panels, lines, scene)
     taken = replace(lines, centre=np.where(lines.fitted, lines.centre, 0.0))
 
     def density(rows: Rows, u: Real) -> Real:
-        points = on_panel(rows, u, scene.film_index[rows.owner, None])
+        points = panel(rows, u, scene.film_index[rows.owner, None])
         out = value(rows.owner, points)
         if bell.any():
-            panel = rows.shape[2].astype(np.intp)
-            out -= _profile(points.q, taken, bell, odd, panel)
+            out -= _profile(points.q, taken, bell, odd, rows.shape[2].astype(np.intp))
         out *= points.slope
         return out
 
@@ -123,47 +136,101 @@ def no_lines(panels: Rows) -> Lines:
     return Lines(*np.zeros((4, len(panels), 0)))
 
 
-def find(scene: Scene, panels: Rows) -> Lines:
-    """Find the sharp lines on ``panels``: the loop through the densest layer closes, X = 1, at a complex q.
+@dataclass(frozen=True)
+class Resonator:
+    """Thin layers between two media, from above to below, and the layer in which a round trip is closed."""
+
+    layers: tuple[int, ...]
+    above: int
+    below: int
+    core: int
+
+
+def resonators(scene: Scene, layers: tuple[int, ...], above: int, below: int) -> tuple[Resonator, ...]:
+    """Return a resonator for every layer that is optically denser than both its neighbours: what can guide."""
+    order = [above, *layers, below]
+    real = np.where(scene.eps[order].real < 0.0, 0.0, scene.index[order].real).mean(axis=1)
+    guides = (real[1:-1] >= real[:-2]) & (real[1:-1] > real[2:])
+    return tuple(Resonator(layers, above, below, core) for core in np.array(layers, dtype=int)[guides])
+
+
+def find(scene: Scene, panels: Rows, candidates: Sequence[Resonator]) -> Lines:
+    """Find the sharp lines on ``panels``: the loop through a resonator's core closes, X = 1, at a complex q.
 
     The phase of X on a grid brackets a line; secants on log X, which is nearly linear, polish it.
     """
-    pile = _Pile(scene)
-    view = scene.view(panels.owner)
-    u = (np.arange(pile.grid) + 0.5) / pile.grid
-    grid = on_panel(panels, np.broadcast_to(u, (len(panels), pile.grid)), scene.film_index[panels.owner, None]).q
-    log = np.log(pile.loop(view, grid + 0j))
+    parts = []
+    # a round trip may underflow or a secant go astray; what is not finite is no line
+    with np.errstate(all="ignore"):
+        for resonator in candidates:
+            parts.append(_lines_of(scene, panels, resonator))
+    if not parts:
+        return no_lines(panels)
+    panel, pole = (np.concatenate(both) for both in zip(*parts, strict=True))
+    return _packed(panel, pole, panels)
+
+
+def _lines_of(scene: Scene, panels: Rows, resonator: Resonator) -> tuple[Index, Complex]:
+    """Return the panels and poles of one resonator's lines."""
+    depth = np.abs(scene.index[list(resonator.layers)] * scene.phase[list(resonator.layers)]).sum(axis=0).max()
+    count = int(np.ceil(FEWEST_NODES + NODES_PER_PHASE * depth))
+    u = np.broadcast_to((np.arange(count) + 0.5) / count, (len(panels), count))
+    grid = on_panel(panels, u, scene.film_index[panels.owner, None]).q
+    log = np.log(_round_trip(scene.view(panels.owner), grid + 0j, resonator))
     phase = log.imag
     closes = (phase[..., 1:] * phase[..., :-1] <= 0.0) & (np.abs(np.diff(phase, axis=2)) < np.pi)
     which, panel, node = np.nonzero(closes)
-    if not len(panel):
-        return no_lines(panels)
-    older, newer = grid[panel, node] + 0j, grid[panel, node + 1] + 0j
-    pole, mismatch = _secants(
-        pile, scene.view(panels.owner[panel]), which, older, newer, log[which, panel, node], log[which, panel, node + 1]
-    )
+    view = scene.view(panels.owner[panel])
+    ends = (grid[panel, node] + 0j, grid[panel, node + 1] + 0j)
+    logs = (log[which, panel, node], log[which, panel, node + 1])
+    pole, mismatch = _secants(view, resonator, which, ends, logs)
     inside = (pole.real > panels.shape[0][panel]) & (pole.real < panels.shape[1][panel])
     found = inside & (pole.imag > 0.0) & (np.abs(mismatch) < 1e-3)
-    return _packed(panel[found], pole[found], panels)
+    return panel[found], pole[found]
 
 
 def _secants(
-    pile: "_Pile", view: View, which: Index, older: Complex, newer: Complex, log_older: Complex, log_newer: Complex
+    view: View, resonator: Resonator, which: Index, ends: tuple[Complex, Complex], logs: tuple[Complex, Complex]
 ) -> tuple[Complex, Complex]:
     chosen = np.arange(len(which))
+    (older, newer), (log_older, log_newer) = ends, logs
     for _ in range(SECANTS):
         step = log_newer - log_older
         step = np.where(step == 0.0, 1.0, step)
         pole = newer - log_newer * (newer - older) / step
         older, log_older = newer, log_newer
-        newer, log_newer = pole, np.log(pile.loop(view, pole[:, None])[which, chosen, 0])
+        newer, log_newer = pole, np.log(_round_trip(view, pole[:, None], resonator)[which, chosen, 0])
     return newer, log_newer
+
+
+def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:
+    """Return X, the round trip through the core, (polarisation, row, node)."""
+    core, place = resonator.core, resonator.layers.index(resonator.core)
+    kz = np.sqrt(view.eps[core] - q * q)
+    own = admittances(kz, view.eps[core])
+    trip: Complex = np.exp(2j * view.phase[core] * kz)
+    piles = (resonator.layers[:place][::-1], resonator.above), (resonator.layers[place + 1 :], resonator.below)
+    for layers, behind in piles:
+        trip = trip * reflection(own, _face(view, q, layers, behind))
+    return trip
+
+
+def _face(view: View, q: Complex, layers: tuple[int, ...], behind: int) -> Complex:
+    pile = []
+    for j in layers:
+        kz = normal_inside(view.eps[j], q)
+        pile.append((admittances(kz, view.eps[j]), np.exp(2j * view.phase[j] * kz)))
+    return fold(pile, admittances(normal_outside(view.index[behind], q), view.eps[behind]))
 
 
 def _packed(panel: Index, pole: Complex, panels: Rows) -> Lines:
     """Stand lines side by side, a row a panel, and measure the room around each."""
     order = np.lexsort((pole.real, panel))
     panel, pole = panel[order], pole[order]
+    # coupled guides find the same line twice
+    fresh = np.ones(len(panel), dtype=bool)
+    fresh[1:] = (np.diff(panel) > 0) | (np.abs(np.diff(pole)) > SAME_LINE * pole.imag[1:])
+    panel, pole = panel[fresh], pole[fresh]
     counts = np.bincount(panel, minlength=len(panels))
     place = np.arange(len(panel)) - np.repeat(np.cumsum(counts) - counts, counts)
     shape = (len(panels), int(counts.max(initial=0)))
@@ -184,34 +251,3 @@ def _cells(panels: Rows, lines: Lines) -> Rows:
     panel, cell = np.nonzero(np.diff(marks) > 0.0)
     ends = np.stack([marks[panel, cell], marks[panel, cell + 1], panel])
     return Rows(panels.owner[panel], np.zeros(len(panel)), np.ones(len(panel)), ends)
-
-
-class _Pile:
-    """The thin group as one resonator: a reference layer, the densest that is no metal, between two piles."""
-
-    def __init__(self, scene: Scene) -> None:
-        self.scene = scene
-        order = [*scene.layers_up[::-1], scene.film, *scene.layers_down]
-        real = np.where(scene.eps[order].real < 0.0, 0.0, scene.index[order].real).mean(axis=1)
-        at = int(np.argmax(real))
-        self.core, self.up, self.down = order[at], order[:at][::-1], order[at + 1 :]
-        phase = np.abs(scene.index[order] * scene.phase[order]).sum(axis=0).max()
-        self.grid = int(np.ceil(16.0 + NODES_PER_PHASE * phase))
-
-    def loop(self, view: View, q: Complex) -> Complex:
-        """Return X, the round trip through the reference layer, (polarisation, row, node)."""
-        kz = np.sqrt(view.eps[self.core] - q * q)
-        own = admittances(kz, view.eps[self.core])
-        trip: Complex = np.exp(2j * view.phase[self.core] * kz)
-        for layers, side in zip((self.up, self.down), self.scene.sides, strict=True):
-            trip = trip * reflection(own, self._face(view, q, layers, side.touching))
-        return trip
-
-    @staticmethod
-    def _face(view: View, q: Complex, layers: list[int], touching: int) -> Complex:
-        pile = []
-        for j in layers:
-            kz = normal_inside(view.eps[j], q)
-            pile.append((admittances(kz, view.eps[j]), np.exp(2j * view.phase[j] * kz)))
-        return fold(pile, admittances(normal_outside(view.index[touching], q), view.eps[touching]))
-

@@ -7,7 +7,7 @@ mirror has r_p = +1.
 """
 
 from dataclasses import dataclass
-from typing import Protocol, TypeVar
+from typing import Any, Protocol, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -71,42 +71,65 @@ class Film:
         return out
 
 
-def density(film: Film, q: Complex, kz: Complex, up: Complex, down: Complex, turn_less_one: Complex) -> Complex:
-    """Return the complex power density whose real part is the power per unit q.
+@dataclass(frozen=True)
+class Cavity:
+    """The film between its halves at one set of wave numbers: reflections, round trip and its resonance.
 
-    Parameters
-    ----------
-    film
-        The emitting film.
-    q, kz
-        In-plane and normal wave number in the film, (row, node).
-    up, down
-        Reflections of the two halves, (polarisation, row, node).
-    turn_less_one
-        exp(2 i kz d) - 1, (row, node), kept so for thin films.
+    ``up`` and ``down`` are the reflections of the two halves, (polarisation, row, node); ``turn_less_one`` is
+    exp(2 i kz d) - 1, (row, node), kept so for thin films.
     """
-    mean_up, mean_down = _means(film, kz, turn_less_one)
+
+    film: Film
+    q: Any
+    kz: Complex
+    up: Complex
+    down: Complex
+    turn_less_one: Complex
+    loop: Complex
+    gain: Complex  # 1/(1 - loop)
+
+
+def cavity(film: Film, q: Any, kz: Complex, up: Complex, down: Complex) -> Cavity:
+    """Close the round trip through the film."""
+    turn_less_one = np.expm1(2j * film.phase * kz)
     loop = up * down
     loop *= 1.0 + turn_less_one
-    one_way = up * mean_up
-    one_way += down * mean_down
-    both = 1.0 + loop
-    damp = 1.0 / (1.0 - loop)
-    s = (both[0] + one_way[0]) * damp[0]
-    p_normal = (both[1] + one_way[1]) * damp[1]
-    p_in_plane = (both[1] - one_way[1]) * damp[1]
+    gain = 1.0 - loop
+    np.reciprocal(gain, out=gain)
+    return Cavity(film, q, kz, up, down, turn_less_one, loop, gain)
+
+
+def density(at: Cavity) -> Complex:
+    """Return the complex power density, (row, node), whose real part is the power per unit q."""
+    film = at.film
+    mean_up, mean_down = _means(at)
+    one_way = at.up * mean_up
+    one_way += at.down * mean_down
+    both = 1.0 + at.loop
+    plus = both + one_way
+    plus *= at.gain
+    minus = both[1]
+    minus -= one_way[1]
+    minus *= at.gain[1]
     h = film.in_plane
-    out: Complex = (0.75 * h * s + 1.5 * (1.0 - h) / film.eps * (q * q) * p_normal) / kz
-    out += (0.75 * h / film.eps) * kz * p_in_plane
-    out *= q / film.real_index
+    out: Complex = plus[1]
+    out *= at.q * at.q
+    out *= 1.5 * (1.0 - h) / film.eps
+    out += (0.75 * h) * plus[0]
+    out /= at.kz
+    minus *= at.kz
+    minus *= 0.75 * h / film.eps
+    out += minus
+    out *= at.q / film.real_index
     return out
 
 
-def _means(film: Film, kz: Complex, turn_less_one: Complex) -> tuple[Complex, Complex]:
-    if film.moments is uniform:
-        mean = turn_less_one / (2j * film.phase * kz)
+def _means(at: Cavity) -> tuple[Complex, Complex]:
+    step = 2j * at.film.phase * at.kz
+    if at.film.moments is uniform:
+        mean = at.turn_less_one / step
         return mean, mean
-    return film.moments(2j * film.phase * kz)
+    return at.film.moments(step)
 
 
 @dataclass(frozen=True)
@@ -120,32 +143,56 @@ class Handed:
     down: Real
 
 
-def handed(film: Film, q: Real, kz: Complex, up: Complex, down: Complex, turn_less_one: Complex) -> Handed:
+def handed(at: Cavity) -> Handed:
     """Return what the dipoles send towards either face, all passes summed; real ``q``."""
-    damping = np.exp(-2.0 * film.phase * kz.imag)
-    loop = 1.0 - up * down * (1.0 + turn_less_one)
-    strength = 1.0 / squared(loop)
-    near_up, near_down, cross_up, cross_down = _intensities(film, kz, damping)
-    return Handed(
-        _towards(film, q, kz, strength, near_up + squared(down) * (damping * near_down), down, cross_down),
-        _towards(film, q, kz, strength, near_down + squared(up) * (damping * near_up), up, cross_up),
-    )
+    film = at.film
+    fading = film.phase * at.kz.imag
+    damping = np.exp(-2.0 * fading)
+    near_up, near_down, beat_up, beat_down = _intensities(at, fading)
+    weight = _weights(at)
+    # light that goes up comes straight, over a, or by the lower half, over b: the two beat with exp(2 i Re kz b)
+    up = _towards(weight, near_up + squared(at.down) * (damping * near_down), at.down, damping * beat_down)
+    down = _towards(weight, near_down + squared(at.up) * (damping * near_up), at.up, damping * beat_up)
+    return Handed(up, down)
 
 
-def _intensities(film: Film, kz: Complex, damping: Real) -> tuple[Real, Real, Complex, Complex]:
-    """Return the means of exp(-2 Im kz a) and of b, and exp(-2 Im kz d) times those of exp(2 i Re kz a) and of b."""
-    fade_up, fade_down = film.moments(-2.0 * film.phase * kz.imag)
-    beat_up, beat_down = film.moments(2j * film.phase * kz.real)
-    return fade_up, fade_down, damping * beat_up, damping * beat_down
+def _intensities(at: Cavity, fading: Real) -> tuple[Real, Real, Complex, Complex]:
+    """Return the means of exp(-2 Im kz a) and of b, and those of exp(2 i Re kz a) and of b."""
+    moments, angle = at.film.moments, at.film.phase * at.kz.real
+    if moments is uniform:
+        near = exprel(-2.0 * fading)
+        beat = np.empty(angle.shape, dtype=complex)
+        sine = np.sin(angle)
+        # the mean of exp(2 i angle x) is exp(i angle) sin(angle)/angle
+        swing = sine / np.where(angle == 0.0, 1.0, angle)
+        np.multiply(swing, sine, out=beat.imag)
+        np.multiply(np.where(angle == 0.0, 1.0, swing), np.cos(angle), out=beat.real)
+        return near, near, beat, beat
+    fade_up, fade_down = moments(-2.0 * fading)
+    beat_up, beat_down = moments(2j * angle)
+    return fade_up, fade_down, beat_up, beat_down
 
 
-def _towards(film: Film, q: Real, kz: Complex, strength: Real, direct: Real, mirror: Complex, cross: Complex) -> Real:
-    beat = 2.0 * (mirror * cross).real
-    h = film.in_plane
-    scale = 0.375 * q / film.real_index
-    out = np.empty_like(direct)
-    out[0] = h * scale / squared(kz) * (direct[0] + beat[0])
-    out[1] = h * scale * (direct[1] - beat[1])
-    out[1] += 2.0 * (1.0 - h) * scale * (q * q) / squared(kz) * (direct[1] + beat[1])
-    out *= strength
-    return out
+def _weights(at: Cavity) -> tuple[Real, Real]:
+    """Return what multiplies the direct and the beating part, (polarisation, row, node)."""
+    h, gain = at.film.in_plane, squared(at.gain)
+    scale = 0.375 * at.q / at.film.real_index
+    over = scale / squared(at.kz)
+    in_plane = h * scale
+    normal = (2.0 * (1.0 - h)) * over * (at.q * at.q)
+    direct, beating = np.empty_like(gain), np.empty_like(gain)
+    np.multiply(h * over, gain[0], out=direct[0])
+    beating[0] = direct[0]
+    np.multiply(normal + in_plane, gain[1], out=direct[1])
+    np.multiply(normal - in_plane, gain[1], out=beating[1])
+    beating *= 2.0
+    return direct, beating
+
+
+def _towards(weight: tuple[Real, Real], direct: Real, mirror: Complex, cross: Complex) -> Real:
+    direct *= weight[0]
+    beat = mirror.real * cross.real
+    beat -= mirror.imag * cross.imag
+    beat *= weight[1]
+    direct += beat
+    return direct
