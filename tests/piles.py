@@ -3,6 +3,8 @@
 A medium is (index, thickness in nm) or (index, thickness in nm, "plate"); the outer ones have no thickness.
 """
 
+from itertools import pairwise
+
 import numpy as np
 
 from optics.fate import wave
@@ -60,7 +62,7 @@ def panel(low, high, order):
 def pieces(low, high, lines, order):
     """Return nodes and weights on [low, high], cut at those of ``lines`` that lie between."""
     marks = [low, *sorted(line for line in set(lines) if low < line < high), high]
-    parts = [panel(a, b, order) for a, b in zip(marks[:-1], marks[1:], strict=True)]
+    parts = [panel(a, b, order) for a, b in pairwise(marks)]
     return np.concatenate([q for q, _ in parts]), np.concatenate([weight for _, weight in parts])
 
 

@@ -111,7 +111,8 @@ def test_a_half_space_of_high_index_is_the_limit_of_a_thick_weakly_absorbing_lay
 
 def test_what_stands_behind_such_a_layer_does_not_matter():
     rates = [
-        ledger(drawn(760, [(1, 0), FILM, (HIGH + 0.01j, 8e4), (behind, 0)])).rate_factor[0] for behind in (1.0, 1.5, 3.0)
+        ledger(drawn(760, [(1, 0), FILM, (HIGH + 0.01j, 8e4), (behind, 0)])).rate_factor[0]
+        for behind in (1.0, 1.5, 3.0)
     ]
     np.testing.assert_allclose(rates, rates[0], atol=SEVEN_DIGITS, rtol=0)
 

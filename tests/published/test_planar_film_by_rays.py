@@ -7,7 +7,6 @@ import numpy as np
 import pytest
 from piles import amounts, drawn
 
-
 NINE_DIGITS = 1e-8  # the digits given, and what the quadrature of a clear film's corners may leave
 ON_GLASS = {
     0.0: (0.034865008, 0.048619853, 0.116515139, 0.8),

@@ -15,7 +15,9 @@ ESCAPE = {  # derived by an independent high-precision script
 }
 RAYS = 2e-8  # the panels' tolerance
 EDGE = 0.16  # waves feel the absorption end at a face: they fall short by about 0.12 over the slab's phase thickness
-SECOND_ORDER = 1e-4  # what is left when that first order is extrapolated away between 10 and 20 um (0.6e-4 at tau = 0.1)
+SECOND_ORDER = (
+    1e-4  # what is left when that first order is extrapolated away between 10 and 20 um (0.6e-4 at tau = 0.1)
+)
 WAVELENGTH_NM, INDEX = 770.0, 2.0
 
 
