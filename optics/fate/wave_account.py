@@ -99,7 +99,8 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
         error = error + missed
     elif absorbing:
         flown = own.values[1] + rise.values[1]
-    taken, missed = _taken_while_bound(scene, settings, power - zone.values[Layout.power], own)
+    near = rise.values[0] - wave.exchange_with_itself(scene)
+    taken, missed = _taken_while_bound(scene, settings, power - zone.values[Layout.power], near, own)
     yes = np.ones(scene.wavelengths, dtype=bool)
     return Account(
         power=power,
@@ -123,12 +124,15 @@ def _flown_within_film(scene: Scene, settings: Settings) -> tuple[Real, Real]:
     return own.values[1] + rise.values[1], own.error + rise.error
 
 
-def _taken_while_bound(scene: Scene, settings: Settings, power: Real, own: Integral) -> tuple[Real, Real]:
+def _taken_while_bound(
+    scene: Scene, settings: Settings, power: Real, near: Real, own: Integral
+) -> tuple[Real, Real]:
     """Return what each medium but the film takes of bound light, and the error made.
 
     Exact cases first: nobody but the film absorbs, or a clear film has one absorbing neighbour. Elsewhere fluxes are
     integrated on the real axis; the power integrated at the same nodes, against the same on its own path, tells
-    what the nodes missed.
+    what the nodes missed, and scaling by it lets a nearly clear film keep its few digits. ``near`` is the part of
+    ``power`` that does not lie on the real axis: the film's own.
     """
     taken = np.zeros((scene.media, scene.wavelengths))
     missed = np.zeros(scene.wavelengths)
@@ -143,6 +147,6 @@ def _taken_while_bound(scene: Scene, settings: Settings, power: Real, own: Integ
     shared = np.flatnonzero((count > 0) & ~alone)
     if len(shared):
         zone = wave.bound_zone(scene.at(shared), settings)
-        taken[:, shared] = zone.values[1:]
+        taken[:, shared] = zone.values[1:] * (power - near)[shared] / zone.values[0]
         missed[shared] = zone.error + np.abs(zone.values[0] - own.values[0, shared])
     return taken, missed
