@@ -10,6 +10,9 @@ NEAR_METAL_NM = 50.0
 
 ERROR_WORTH_A_WORD = 1e-6
 
+STRONG_NEAR_FIELD = 0.3
+"""k/(k0 d) from which the film's near field reaches past its faces by more than a few percent of the births."""
+
 
 def coherence_length_nm(*, wavelength_nm: float, index: float, fwhm_nm: float) -> float:
     """Return lambda^2/(2 n fwhm) [nm]: the film thickness over which fringes average out in the emitted line."""
@@ -65,4 +68,24 @@ def error_warning(error: Real) -> str | None:
     worst = float(error.max())
     if worst <= ERROR_WORTH_A_WORD:
         return None
-    return f"numerical error up to {worst:.0e} in a share at {int((error > ERROR_WORTH_A_WORD).sum())} wavelengths"
+    count = int((error > ERROR_WORTH_A_WORD).sum())
+    return f"numerical error up to {worst:.0e} in a share at {count} wavelength{'s' if count > 1 else ''}"
+
+
+def near_field_warning(wavelength_nm: Real, film_index: Complex, thickness_nm: float, rate_factor: Real) -> str | None:
+    """Return a warning where radiated light and near field cannot be told apart in the film, else None.
+
+    The film's near field reaches its neighbours in proportion to k/(k0 d); what of it counts as radiated is a convention.
+    """
+    if (rate_factor <= 0.0).any():
+        return (
+            f"the rate factor is not positive at {int((rate_factor <= 0.0).sum())} of {len(rate_factor)} wavelengths: "
+            "the film absorbs too much within too little thickness for its shares to mean anything there"
+        )
+    measure = float((film_index.imag * wavelength_nm).max() / (2.0 * np.pi * thickness_nm))
+    if measure <= STRONG_NEAR_FIELD:
+        return None
+    return (
+        f"the film absorbs so much within {thickness_nm:.3g} nm (k/(k0 d) up to {measure:.2g}) that radiated light and "
+        "near field cannot be told apart sharply; rate factor and reabsorbed share are a convention there"
+    )

@@ -301,6 +301,7 @@ def _warnings(
         advice.metal_warning(names, drawing.index, drawing.thickness_nm, drawing.film),
         floor_warning(stack.film.name, stack.film.material, drawing.wavelength_nm, film.imag, weight),
         advice.error_warning(ledger.error),
+        advice.near_field_warning(drawing.wavelength_nm, film, stack.film.thickness_nm, ledger.rate_factor),
         *births.births_warnings(stack, drawing, born, advised=advised, lead=lead),
     ]
     return tuple(sentence for sentence in said if sentence)
