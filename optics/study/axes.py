@@ -20,7 +20,7 @@ from optics.study.keypath import all_changed, changed, is_material, place_of
 
 RANGE = re.compile(r"\s*(\S+)\s+to\s+(\S+)\s+step\s+(\S+)\s*")
 OUTSIDE_BRACES = re.compile(r",(?![^{]*\})")
-MOST_POINTS = 10_000_000
+MOST_POINTS = 1_000_000
 EXAMPLE = '"film.thickness_nm = 50 to 1000 step 10" or "glass.material = float-glass, sapphire"'
 CHECKED_TOGETHER = 2000  # points that are built one by one before any work; of more, every value is tried alone
 
@@ -121,7 +121,7 @@ def from_lines(stack: Stack, lines: Sequence[str], *, folder: Path | None = None
     InputError
         With every line that cannot be read, key that the stack lacks and value that it cannot have.
     """
-    return from_values(stack, _parsed(lines), folder=folder)
+    return from_values(stack, parsed_lines(lines), folder=folder)
 
 
 def from_values(stack: Stack, given: Mapping[str, Sequence[Any]], *, folder: Path | None = None) -> Points:
@@ -183,7 +183,8 @@ def even_values(key: str, first: Any, last: Any, step: Any) -> list[float]:
     return [float(f"{one + place * by:.12g}") for place in range(whole + 1)]
 
 
-def _parsed(lines: Sequence[str]) -> dict[str, list[Any]]:
+def parsed_lines(lines: Sequence[str]) -> dict[str, list[Any]]:
+    """Return values by key path of lines such as ``film.thickness_nm = 50 to 1000 step 10``."""
     faults = Faults()
     axes: dict[str, list[Any]] = {}
     for line in lines:

@@ -2,13 +2,14 @@
 
 import json
 import os
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from pathlib import Path
 from typing import Any, BinaryIO
 
 import numpy as np
 
 from optics.errors import InputError
+from optics.study.engine import Pack, Place, Work, run
 
 JOURNAL = "answers.jsonl"
 BASIS = "basis.json"
@@ -106,6 +107,13 @@ class Journal:
         for point, line in zip(points, lines, strict=True):
             self._at[point] = end
             end += len(line)
+
+    def fill(self, work: Work, pack: Pack, place: Place, progress: Callable[[int, int], None] | None = None) -> None:
+        """Work on every point without an answer and append the answers as they come."""
+        for points, answers in run(work, pack, self.missing(), place):
+            self.append(points, answers)
+            if progress:
+                progress(self.done, self.points)
 
     def answers(self) -> Iterator[tuple[int, dict[str, Any]]]:
         """Yield points and answers in the order of the points, one at a time."""

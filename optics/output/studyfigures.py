@@ -1,0 +1,151 @@
+"""Figures of studies: lines and maps of sweeps, ladders and differences of comparisons, bands of tolerances."""
+
+from collections.abc import Mapping, Sequence
+from textwrap import shorten
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
+from matplotlib.patheffects import withStroke
+
+from optics.output.labels import spread
+from optics.output.palette import DARK, ENDS, LIGHT, End
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from pandas import DataFrame
+
+DPI = 160
+SMALL = 8.5
+SIZE_INCH = (8.0, 4.8)
+PLOT = (0.09, 0.12, 0.70, 0.76)
+SHOWN_ABOVE = 5e-4  # an end that takes less everywhere gets no line
+OUTLINE = [withStroke(linewidth=2.6, foreground="#8a8a8a")]  # pale colours stay visible on white
+MAPPED = ("trapped", "substrate", "free_below", "free_above")
+STACKS = ("#1d4a7d", "#b5562b", "#146c69", "#8a3b78", "#7a6a00", "#3b1a4f", "#5f8f3f", "#777777")
+MARKERS = "osD^vPX*"
+
+
+def sweep_figure(
+    table: "DataFrame", keys: Sequence[str], *, own: Mapping[str, Any], title: str = "", share: str | None = None
+) -> Figure | None:
+    """Draw a sweep: shares as lines over one axis, maps over two; None for more axes.
+
+    Parameters
+    ----------
+    table
+        The sweep's table.
+    keys
+        The key paths varied.
+    own
+        What the stack file itself has at these keys: marked.
+    title
+        The stack's title.
+    share
+        The share looked for; maps show it first.
+    """
+    if len(keys) == 1:
+        return _lines(table, keys[0], own.get(keys[0]), title)
+    if len(keys) == 2:
+        return _maps(table, keys[0], keys[1], own, title, share)
+    return None
+
+
+def _figure(title: str, note: str = "", size: tuple[float, float] = SIZE_INCH) -> Figure:
+    figure = Figure(figsize=size, dpi=DPI)
+    FigureCanvasAgg(figure)
+    figure.text(PLOT[0], 0.965, shorten(title, 90), fontsize=11, va="center", parse_math=False)
+    if note:
+        figure.text(PLOT[0], 0.925, note, fontsize=SMALL, va="center", color="#444444", parse_math=False)
+    return figure
+
+
+def _lines(table: "DataFrame", key: str, own: Any, title: str) -> Figure:
+    """Draw every end over one axis, named at its right end."""
+    figure = _figure(title, "shares of the photons born, averaged over the spectrum; grey line: the stack as it is")
+    axes = figure.add_axes(PLOT)
+    x, ticks = _positions(table[key].tolist())
+    shown = [end for end in ENDS if table[end.column].max() >= SHOWN_ABOVE]
+    style = {} if ticks is None else {"marker": "o", "linestyle": "none"}
+    for end in shown:
+        axes.plot(x, table[end.column], color=end.colour, linewidth=1.8, path_effects=OUTLINE, **style)
+    if own is not None and own in table[key].tolist() or isinstance(own, float) and ticks is None and min(x) <= own <= max(x):
+        axes.axvline(own if ticks is None else table[key].tolist().index(own), color="#999999", linewidth=0.9, zorder=0)
+    _name_lines(axes, shown, [float(table[end.column].iloc[-1]) for end in shown])
+    _frame(axes, key, ticks)
+    axes.set_ylabel("share of photons born")
+    return figure
+
+
+def _positions(values: list[Any]) -> tuple[list[float], list[str] | None]:
+    """Return where values stand on an axis, and their names when they are no numbers or stand in no order."""
+    if all(isinstance(each, float) for each in values) and np.all(np.diff(values) > 0):
+        return values, None
+    return [float(place) for place in range(len(values))], [shorten(str(each), 24) for each in values]
+
+
+def _frame(axes: "Axes", key: str, ticks: list[str] | None) -> None:
+    axes.set_xlabel(key)
+    axes.set_ylim(bottom=0)
+    axes.spines[["top", "right"]].set_visible(False)
+    if ticks is not None:
+        axes.set_xticks(range(len(ticks)), ticks, rotation=30 if len(ticks) > 5 else 0)
+        axes.set_xlim(-0.5, len(ticks) - 0.5)
+    else:
+        axes.margins(x=0)
+
+
+def _name_lines(axes: "Axes", ends: Sequence[End], heights: Sequence[float]) -> None:
+    low, high = 0.0, axes.get_ylim()[1]
+    order = np.argsort(heights, kind="stable")
+    gap = 0.052 * (high - low)
+    placed = spread([heights[place] for place in order], gap=gap, low=low, high=high)
+    right = axes.get_position().x1
+    for place, height in zip(order, placed, strict=True):
+        end = ends[place]
+        y = axes.get_position().y0 + axes.get_position().height * height / high
+        axes.figure.text(
+            right + 0.035, y, end.name, fontsize=SMALL, va="center", color=DARK
+        )
+        axes.plot(
+            [1.0, 1.045], [heights[place] / high, height / high], transform=axes.transAxes, clip_on=False,
+            color=end.colour, linewidth=1.2, path_effects=[withStroke(linewidth=2.0, foreground="#8a8a8a")],
+        )  # fmt: skip
+    axes.set_ylim(low, high)
+
+
+def _maps(table: "DataFrame", one: str, other: str, own: Mapping[str, Any], title: str, share: str | None) -> Figure:
+    """Draw four shares over two axes as maps, each with its own scale."""
+    figure = _figure(title, "shares of the photons born, averaged over the spectrum; cross: the stack as it is", (8.0, 6.4))
+    names = list(dict.fromkeys([*([share] if share in table else []), *MAPPED]))[:4]
+    rows, columns = (list(dict.fromkeys(table[key].tolist())) for key in (one, other))
+    flip = not _positions(columns)[1] is None and _positions(rows)[1] is None
+    (ykey, ys), (xkey, xs) = ((other, columns), (one, rows)) if flip else ((one, rows), (other, columns))
+    (x, xticks), (y, yticks) = _positions(xs), _positions(ys)
+    for number, name in enumerate(names):
+        axes = figure.add_axes((0.15 + 0.43 * (number % 2), 0.53 - 0.45 * (number // 2), 0.31, 0.32))
+        values = table[name].to_numpy(dtype=float).reshape(len(rows), len(columns))
+        mesh = axes.pcolormesh(x, y, values.T if flip else values, shading="nearest", cmap="cividis", rasterized=True)
+        axes.set_title(name.replace("_", " "), fontsize=SMALL + 1, loc="left")
+        bar = figure.colorbar(mesh, ax=axes, fraction=0.06, pad=0.03)
+        bar.ax.tick_params(labelsize=SMALL - 1)
+        for ticks, put, label, place in ((xticks, axes.set_xticks, axes.set_xlabel, xkey), (yticks, axes.set_yticks, axes.set_ylabel, ykey)):
+            if ticks is not None:
+                put(range(len(ticks)), ticks)
+            if put == axes.set_xticks or number % 2 == 0:
+                label(place, fontsize=SMALL)
+        if number % 2:
+            axes.set_yticklabels([])
+        axes.tick_params(labelsize=SMALL - 1)
+        mark = [_place(own.get(key), values_, ticks) for key, values_, ticks in ((xkey, xs, xticks), (ykey, ys, yticks))]
+        if None not in mark:
+            axes.plot(*mark, marker="+", markersize=9, color=LIGHT, markeredgewidth=1.6, path_effects=[withStroke(linewidth=3, foreground=DARK)])
+    return figure
+
+
+def _place(value: Any, values: list[Any], ticks: list[str] | None) -> float | None:
+    """Return where a value stands on a map's axis, None when it is not on it."""
+    if ticks is not None:
+        return float(values.index(value)) if value in values else None
+    return float(value) if isinstance(value, float) and min(values) <= value <= max(values) else None
