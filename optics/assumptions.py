@@ -4,6 +4,7 @@ import math
 
 from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.media.dispersion import Constant, Joined, Tabulated
+from optics.media.tail import Grafted, UrbachTail, repair
 from optics.radiation import FromAbsorption
 from optics.spectrum import spectrum_notes
 from optics.stack import ISOTROPIC, PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
@@ -16,6 +17,7 @@ def assumptions(stack: Stack) -> tuple[str, ...]:
     said += [_births(stack), _seen(stack)]
     said += spectrum_notes(stack.light.spectrum, stack.light.wavelengths_nm)
     said += _indices(stack)
+    said += [sentence for layer in stack.layers for sentence in _tail(layer)]
     return tuple(said)
 
 
@@ -78,14 +80,25 @@ def _seen(stack: Stack) -> str:
     )
 
 
+def _tail(layer: Layer) -> list[str]:
+    """Say what a layer's tail replaced, and how the table that it came from was read."""
+    if layer.tail is None:
+        return []
+    said = [f"{layer_place(layer.name)}: tail: {repair(layer.material, layer.tail).said}"]
+    if layer.tail.measured and layer.tail.measured.understood:
+        said.append(f"{layer_place(layer.name)}: tail: table: {'; '.join(layer.tail.measured.understood)}")
+    return said
+
+
 def _indices(stack: Stack) -> list[str]:
     """Say how tables are read between their rows, and which indices do not depend on wavelength."""
     media = {material.name: material.medium for _, material, _ in stack.media}
-    tables = [name for name, medium in media.items() if isinstance(medium, Tabulated | Joined)]
+    tables = [name for name, medium in media.items() if isinstance(medium, Tabulated | Joined | UrbachTail | Grafted)]
     constant = [
         name for name, medium in media.items() if isinstance(medium, Constant) and (medium.n, medium.k) != (1.0, 0.0)
     ]
-    said = []
+    read = {material.name: material.understood for _, material, _ in stack.media if material.understood}
+    said = [f"table {name} was read so: {'; '.join(how)}" for name, how in read.items()]
     if tables:
         said.append(f"n and k between the rows of a table by monotone cubic interpolation: {', '.join(tables)}")
     if constant:

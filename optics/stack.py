@@ -1,8 +1,8 @@
 """The stack: layers between two outer media, the light asked for and how it is emitted; no file is needed."""
 
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field, fields, replace
-from typing import Any, Literal, TypeAlias
+from typing import Any
 
 import numpy as np
 
@@ -11,100 +11,30 @@ from optics.byvalue import FloatArray
 from optics.collection import Collection
 from optics.depth import Depth, check_depth, check_depth_in_film
 from optics.errors import InputError
-from optics.faults import Faults, cut, quoted
+from optics.faults import Faults, cut
+from optics.layer import LONGEST_NAME as LONGEST_NAME
+from optics.layer import OUTER_NAMES as OUTER_NAMES
+from optics.layer import PLATE_LIMIT_NM as PLATE_LIMIT_NM
+from optics.layer import THICKNESS_EXAMPLES as THICKNESS_EXAMPLES
+from optics.layer import THICKNESS_TO_NM as THICKNESS_TO_NM
+from optics.layer import CountsAs as CountsAs
+from optics.layer import Layer as Layer
+from optics.layer import Outer as Outer
+from optics.layer import Phases as Phases
+from optics.layer import check_layer as check_layer
+from optics.layer import in_nm as in_nm
+from optics.layer import layer_place as layer_place
 from optics.light import Light
 from optics.media.cabinet import MaterialLike, find
 from optics.media.domain import RANGE_SLACK
 from optics.media.material import Material
+from optics.media.tailspec import tail_from
 from optics.sample import NearField, Sample, check_reach
-from optics.units import nm_from_mm, nm_from_um
 
-PLATE_LIMIT_NM = 20_000.0  # a thicker layer carries intensities, not phases
 ISOTROPIC = 2.0 / 3.0  # share of in-plane dipoles when all directions are alike
-THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
-    "thickness_nm": float,
-    "thickness_um": nm_from_um,
-    "thickness_mm": nm_from_mm,
-}
-THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
-LONGEST_NAME, LONGEST_TITLE = 60, 200  # characters that columns and figures have room for
-OUTER_NAMES = ("above", "below")
+LONGEST_TITLE = 200  # characters that figures have room for
 MOST_ROUGHNESS = 0.05  # of a wavelength: Aspnes 1982 asks for structure well below it
 HALF_WIDTH_PER_RMS = 3.0**0.5  # of heights spread evenly
-
-Phases: TypeAlias = Literal["keep", "ignore"]
-CountsAs: TypeAlias = Literal["free", "held"]
-
-
-@dataclass(frozen=True, kw_only=True)
-class Layer:
-    """One layer.
-
-    Parameters
-    ----------
-    name
-        Its name, used in messages and columns.
-    material
-        What it is made of.
-    thickness_nm
-        Thickness [nm].
-    emits
-        Whether photons are born in it.
-    phases
-        ``"keep"``: a thin layer, with interference; ``"ignore"``: a plate, without; None: by thickness.
-    roughness_nm
-        Root mean square height of its upper face [nm], well below a wavelength: a graded mixture of both sides.
-    """
-
-    name: str
-    material: Material
-    thickness_nm: float
-    emits: bool = False
-    phases: Phases | None = None
-    roughness_nm: float = 0.0
-
-    def __post_init__(self) -> None:
-        faults = Faults(layer_place(self.name))
-        check_layer(faults, **{part.name: getattr(self, part.name) for part in fields(self)})
-        faults.settle()
-        object.__setattr__(self, "thickness_nm", float(self.thickness_nm))
-        object.__setattr__(self, "emits", bool(self.emits))
-        object.__setattr__(self, "roughness_nm", float(self.roughness_nm))
-
-    @property
-    def plate(self) -> bool:
-        """Whether the layer carries intensities alone: over 20 um, unless `phases` says otherwise."""
-        if self.phases is not None:
-            return self.phases == "ignore"
-        return self.thickness_nm > PLATE_LIMIT_NM
-
-
-@dataclass(frozen=True, kw_only=True)
-class Outer:
-    """A half-space that ends the stack.
-
-    Parameters
-    ----------
-    material
-        What it is made of.
-    counts_as
-        ``"free"``: light that gets there is out; ``"held"``: it is held in it; None: free in a gas, else held.
-    """
-
-    material: Material
-    counts_as: CountsAs | None = None
-
-    def __post_init__(self) -> None:
-        faults = Faults()
-        faults.kind("material", self.material, Material)
-        if self.counts_as is not None:
-            faults.choice("counts_as", self.counts_as, ("free", "held"))
-        faults.settle()
-
-    @property
-    def free(self) -> bool:
-        """Whether light that reaches it counts as free."""
-        return self.material.gas if self.counts_as is None else self.counts_as == "free"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -192,7 +122,7 @@ class Stack:
             faults, self.emission.depth, film=layer_place(self.film.name), thickness_nm=self.film.thickness_nm
         )
         check_pump(faults, media=self.media, depth=self.emission.depth)
-        check_spectrum(faults, light=self.light, film=self.film.material)
+        check_spectrum(faults, light=self.light, film=self.film.repaired)
         check_apertures(faults, media=self.media, light=self.light, collection=self.collection)
         if self.sample is not None:
             check_reach(faults, sample=self.sample, wavelengths_nm=self.light.wavelengths_nm)
@@ -212,7 +142,7 @@ class Stack:
     @property
     def media(self) -> tuple[tuple[str, Material, bool], ...]:
         """Place, material and whether it emits, of the outer media and every layer, from above to below."""
-        layers = [(layer_place(layer.name), layer.material, layer.emits) for layer in self.layers]
+        layers = [(layer_place(layer.name), layer.repaired, layer.emits) for layer in self.layers]
         return (("above", self.above.material, False), *layers, ("below", self.below.material, False))
 
     def with_layer(self, name: str, /, **changes: Any) -> "Stack":
@@ -224,13 +154,14 @@ class Stack:
             The layer to change.
         **changes
             Fields of `Layer`; the thickness as ``thickness_nm``, ``thickness_um`` or ``thickness_mm``; the
-            material as anything `optics.media.cabinet.find` takes.
+            material as anything `optics.media.cabinet.find` takes, the tail as anything
+            `optics.media.tailspec.tail_from` takes.
         """
         names = [layer.name for layer in self.layers]
         if name not in names:
             raise InputError(f"{layer_place(name)}: not in this stack, which has {', '.join(names)}")
         faults = Faults(layer_place(name))
-        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm"))
+        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "tail"))
         given = [key for key in THICKNESS_TO_NM if key in changes]
         if len(given) > 1:
             faults.add(given[0], f"found {' and '.join(given)}, expected one of them")
@@ -239,6 +170,9 @@ class Stack:
         if "material" in changes:
             with faults.collecting("material"):
                 changes["material"] = find(changes["material"])
+        if changes.get("tail") is not None:
+            with faults.collecting("tail"):
+                changes["tail"] = tail_from(changes["tail"])
         faults.settle()
         place = names.index(name)
         layers = (*self.layers[:place], replace(self.layers[place], **changes), *self.layers[place + 1 :])
@@ -297,43 +231,9 @@ def outer(material: MaterialLike | Outer, *, counts_as: CountsAs | None = None, 
     raise InputError(faults.lines)
 
 
-def in_nm(faults: Faults, key: str, thickness: object) -> float:
-    """Return a thickness in nm; `key`, such as ``thickness_mm``, says its unit. Nan when it is none."""
-    unit = key.removeprefix("thickness_")
-    number = faults.number(key, thickness, unit=unit, above=0, example=THICKNESS_EXAMPLES[key])
-    return float(THICKNESS_TO_NM[key](number))
-
-
-def layer_place(name: object) -> str:
-    """Return how messages call the layer of this name."""
-    return f"layer {quoted(name)}" if isinstance(name, str) and name else "layer"
-
-
 def check_title(faults: Faults, title: object) -> None:
     """Note a title that is not one line of text."""
     faults.text("title", title, expected="a line of text", longest=LONGEST_TITLE, empty=True)
-
-
-def check_layer(
-    faults: Faults,
-    *,
-    name: object,
-    material: object,
-    thickness_nm: object,
-    emits: object,
-    phases: object,
-    roughness_nm: object = 0.0,
-) -> None:
-    """Note what is wrong with the parts of one layer."""
-    faults.text("name", name, expected='a short text, for example "film"', longest=LONGEST_NAME)
-    if name in OUTER_NAMES:
-        faults.add("name", f'found "{name}", which names an outer medium; choose another name')
-    faults.kind("material", material, Material)
-    faults.number("thickness_nm", thickness_nm, unit="nm", above=0, example=480)
-    faults.flag("emits", emits)
-    if phases is not None:
-        faults.choice("phases", phases, ("keep", "ignore"))
-    faults.number("roughness_nm", roughness_nm, unit="nm", at_least=0, example=5)
 
 
 def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool]) -> None:

@@ -11,6 +11,7 @@ from optics.assumptions import assumptions
 from optics.fate import advice, births, outside, ray, wave_account
 from optics.fate.drawing import bracket, drawing_of
 from optics.fate.ledger import SHARES, ZONES, Ledger, draw_up, merge
+from optics.fate.overlay import Measured
 from optics.fate.pump import Pumped
 from optics.fate.reflection import Reflection, at_normal
 from optics.fate.scenes import Drawing, scenes
@@ -82,6 +83,8 @@ class Result:
         Absorbed share of the pump and carrier densities; None without one.
     radiation
         Emission in the dark and radiative coefficient; None unless births follow from absorption.
+    measured
+        A measurement laid over one of the spectra, by `optics.fate.overlay.lay_over`; else None.
     warnings, assumptions
         Sentences.
     """
@@ -105,6 +108,7 @@ class Result:
     depth_averages: dict[str, dict[str, float]] = field(default_factory=dict)
     pump: Pumped | None = None
     radiation: births.Radiation | None = None
+    measured: Measured | None = None
     warnings: tuple[str, ...] = field(default=())
     assumptions: tuple[str, ...] = field(default=())
 
@@ -299,7 +303,7 @@ def _warnings(
     weight = born.per_nm * weights(drawing.wavelength_nm)
     said = [
         advice.metal_warning(names, drawing.index, drawing.thickness_nm, drawing.film),
-        floor_warning(stack.film.name, stack.film.material, drawing.wavelength_nm, film.imag, weight),
+        floor_warning(stack.film.name, stack.film.repaired, drawing.wavelength_nm, film.imag, weight),
         advice.error_warning(ledger.error),
         advice.near_field_warning(drawing.wavelength_nm, film, stack.film.thickness_nm, ledger.rate_factor),
         *births.births_warnings(stack, drawing, born, advised=advised, lead=lead),

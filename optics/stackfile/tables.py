@@ -17,6 +17,8 @@ from optics.light import Light, checked_wavelengths, even_wavelengths
 from optics.media.cabinet import find
 from optics.media.dispersion import Constant
 from optics.media.material import Material
+from optics.media.tail import Tail
+from optics.media.tailspec import tail_from
 from optics.radiation import FromAbsorption
 from optics.sample import Sample
 from optics.spectrum import Gaussian, Spectrum, given_per_nm
@@ -43,7 +45,7 @@ STACK_KEYS = ("title", "above", "below", "light", "emission", "collection", "sam
 EVEN_KEYS = ("from_nm", "to_nm", "step_nm")
 LIGHT_KEYS = (*EVEN_KEYS, "wavelengths_nm", "spectrum")
 EMISSION_KEYS = ("horizontal_share", "depth", "near_field")
-LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm")
+LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "tail")
 OUTER_KEYS = ("material", "counts_as")
 SPEC_KEYS = ("n", "k", "published")
 GRID = "a number in nm (from_nm, to_nm and step_nm, or a list wavelengths_nm)"
@@ -162,11 +164,21 @@ def _layer(faults: Faults, table: Any, number: int, home: Path) -> _Row:
         "emits": keys.get("emits", "emits" in keys.meant),
         "phases": keys.get("phases"),
         "roughness_nm": keys.get("roughness_nm", 0.0),
+        "tail": _tail(own, keys.get("tail"), home),
     }
     check_layer(own, **parts)
     faults.lines += own.lines
     layer = None if own.lines else Layer(**parts)
-    return _Row(name=label, material=parts["material"], emits=bool(parts["emits"]), layer=layer)
+    material = layer.repaired if layer else parts["material"]
+    return _Row(name=label, material=material, emits=bool(parts["emits"]), layer=layer)
+
+
+def _tail(faults: Faults, spec: Any, home: Path) -> Tail | None:
+    """Return the tail meant, or note why there is none."""
+    if spec is not None:
+        with faults.collecting("tail"):
+            return tail_from(spec, folder=home)
+    return None
 
 
 def _light(keys: Keys, home: Path) -> tuple[FloatArray, Spectrum]:

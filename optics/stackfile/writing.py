@@ -13,6 +13,8 @@ from optics.light import Light, even_wavelengths
 from optics.media.cabinet import bundled_names, find
 from optics.media.dispersion import Constant
 from optics.media.material import Material
+from optics.media.tail import MeasuredTail, Tail
+from optics.media.tailspec import measured_tail
 from optics.radiation import FromAbsorption
 from optics.sample import PerWavelength, Sample
 from optics.spectrum import Gaussian, Spectrum
@@ -91,7 +93,31 @@ def _layer(layer: Layer, home: Path | None) -> dict[str, Any]:
         table["phases"] = layer.phases
     if layer.roughness_nm:
         table["roughness_nm"] = _number(layer.roughness_nm)
+    if layer.tail is not None:
+        table["tail"] = _tail(layer.tail, layer_place(layer.name), home)
     return table
+
+
+def _tail(tail: Tail, place: str, home: Path | None) -> str | dict[str, Any]:
+    if tail.fit:
+        return "fit"
+    parts: dict[str, Any] = {}
+    if tail.measured is not None:
+        parts["table"] = _measured(tail.measured, place, home)
+    if tail.urbach_meV is not None:
+        parts["urbach_meV"] = _number(tail.urbach_meV)
+    if tail.red_of_nm is not None:
+        parts["red_of_nm"] = _number(tail.red_of_nm)
+    return parts | ({"scaled": True} if tail.scaled else {})
+
+
+def _measured(measured: MeasuredTail, place: str, home: Path | None) -> str:
+    try:
+        if measured.path and measured_tail(measured.path) == measured:
+            return _from_home(measured.path, home)
+    except InputError:
+        pass
+    raise InputError(f"{place}: tail: its table was made in Python, or its file has changed since; save it as a file")
 
 
 def _sample(sample: Sample) -> dict[str, Any]:
