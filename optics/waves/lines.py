@@ -24,7 +24,7 @@ SAME_LINE = 1e-3
 """Poles closer than this, in units of their half width, are one line."""
 
 SECANTS = 4
-CLEARANCE = 4.0
+CLEARANCE = 2.5
 """Lines nearer to another, or to an end of their panel, than this many half widths are not fitted: the ground under
 them is not smooth."""
 
@@ -33,6 +33,12 @@ CUT_FROM = 0.03
 
 CUT_APART = 1.0
 """Lines that follow another by less than this many half widths share its cut."""
+
+CELL_ORDER = 24
+"""Order of the rule between two lines."""
+
+FITS = 2
+"""Rounds of fitting, each with the other lines of the panel taken off as they were fitted before."""
 
 _OFFSETS = np.array([-2.0, -1.0, 0.0, 1.0, 2.0])
 _BELL = 1.0 / (1.0 + _OFFSETS**2)
@@ -91,12 +97,17 @@ def integrate_with_lines(
         out *= points.slope
         return out
 
-    cells = _cells(panels, lines)
-    rest = integrate(density, cells, wavelengths=scene.wavelengths, order=order, tolerance=tolerance)
-    values = rest.values.copy()
+    values: Real | float = 0.0
+    error: Real | float = 0.0
+    cut = lines.cut.any(axis=1)
+    for which, rule in ((cut, CELL_ORDER), (~cut, order)):
+        if which.any():
+            cells = _cells(panels, lines, which)
+            rest = integrate(density, cells, wavelengths=scene.wavelengths, order=rule, tolerance=tolerance)
+            values, error = values + rest.values, error + rest.error
     if bell.any():
         np.add.at(values, (slice(None), panels.owner), _areas(panels, taken, bell, odd))
-    return Integral(values, rest.error)
+    return Integral(values, error)
 
 
 def _amplitudes(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, Real]:
@@ -107,10 +118,14 @@ def _amplitudes(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple
     q = lines.centre[panel, line, None] + lines.width[panel, line, None] * _OFFSETS
     owner = panels.owner[panel]
     near = value(owner, Points(q, np.ones_like(q), scene.film_index[owner, None] - q))
-    fitted = near @ _FIT.T
     bell = np.zeros((len(near), *lines.centre.shape))
     odd = np.zeros_like(bell)
-    bell[:, panel, line], odd[:, panel, line] = fitted[..., 0], fitted[..., 1]
+    whole = replace(lines, centre=np.where(lines.fitted, lines.centre, 0.0))
+    for _ in range(FITS):
+        others = _profile(q, whole, bell, odd, panel) if bell.any() else np.zeros_like(near)
+        others -= bell[:, panel, line, None] * _BELL + odd[:, panel, line, None] * (_OFFSETS * _BELL)
+        fitted = (near - others) @ _FIT.T
+        bell[:, panel, line], odd[:, panel, line] = fitted[..., 0], fitted[..., 1]
     return bell, odd
 
 
@@ -243,11 +258,11 @@ def _packed(panel: Index, pole: Complex, panels: Rows) -> Lines:
     return Lines(centre, width, room, before)
 
 
-def _cells(panels: Rows, lines: Lines) -> Rows:
-    """Cut panels at the lines that ask for it; cells remember their panel."""
+def _cells(panels: Rows, lines: Lines, which: NDArray[np.bool_]) -> Rows:
+    """Cut the chosen panels at the lines that ask for it; cells remember their panel."""
     low, high = panels.shape[0], panels.shape[1]
     marks = np.where(lines.cut, lines.centre, high[:, None])
     marks = np.sort(np.hstack([low[:, None], marks, high[:, None]]), axis=1)
-    panel, cell = np.nonzero(np.diff(marks) > 0.0)
+    panel, cell = np.nonzero((np.diff(marks) > 0.0) & which[:, None])
     ends = np.stack([marks[panel, cell], marks[panel, cell + 1], panel])
     return Rows(panels.owner[panel], np.zeros(len(panel)), np.ones(len(panel)), ends)
