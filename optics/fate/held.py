@@ -5,7 +5,8 @@ on one of its returns, absorbed in a plate, out through the other side where tha
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -35,13 +36,15 @@ class Held:
     """Where light that left the group ends, (end, wavelength), in the order of :class:`Ends`.
 
     ``wide`` is a sample without edges, ``edged`` one with. Of births, held light alone; of scattered light (shares
-    of one unit sent up and down), everything. ``straight`` is what births send into outer media that hold it.
+    of one unit sent up and down), everything, and ``scattered_first`` without what is held in plates. ``straight`` is
+    what births send into outer media that hold it.
     """
 
     ends: Ends
     wide: Real
     edged: Real
-    scattered_wide: Real  # (side, end, wavelength)
+    scattered_first: Real  # (side, end, wavelength)
+    scattered_wide: Real
     scattered_edged: Real
     straight: Real  # (side, wavelength)
     error: Real
@@ -71,9 +74,9 @@ def follow(scene: Scene, settings: Settings, reach: Real, *, model: str, scatter
     values, error = _integrated(seen, end, reach, send, sources, settings)
     start = values[: 2 * ends.size].reshape(2, ends.size, -1)
     straight = values[2 * ends.size : 2 * ends.size + 2]
-    rest = values[2 * ends.size + 2 :].reshape(len(sources) - 1, 2, ends.size, scene.wavelengths)
-    lit = [_swallowed_at_once(seen, ends, rest[:, variant]) for variant in (0, 1)]
-    return Held(ends, start[0], start[1], lit[0], lit[1], straight, error)
+    rest = values[2 * ends.size + 2 :].reshape(len(sources) - 1, 3, ends.size, scene.wavelengths)
+    first, wide, edged = (_swallowed_at_once(seen, rest[:, variant], rest[:, 1]) for variant in (0, 1, 2))
+    return Held(ends, start[0], start[1], first, wide, edged, straight, error)
 
 
 Send = Callable[[Waves], tuple[Leaving, list[Response | None]]]
@@ -95,7 +98,7 @@ def _from_rays(waves: Waves) -> tuple[Leaving, list[Response | None]]:
 def _integrated(
     scene: Scene, end: Real, reach: Real, send: Send, sources: tuple[str, ...], settings: Settings
 ) -> tuple[Real, Real]:
-    size = 2 * Ends(scene.media).size * len(sources) + 2
+    size = Ends(scene.media).size * (3 * len(sources) - 1) + 2
     marks = np.vstack([light_lines(scene), *(_jumps(scene, side, reach) for side in scene.sides)])
     owner, low, high = split_panels(np.zeros(scene.wavelengths), end, marks)
     if not len(owner):
@@ -133,8 +136,9 @@ def _density(
             straight = at_once[[network.ends.kept(0), network.ends.kept(1)]]
             out += [*(v.sum(axis=1) for v in variants), straight.sum(axis=1)]
         else:
-            out += [(v + at_once).sum(axis=1) for v in variants]
-    return np.concatenate(out) * points.slope
+            out += [at_once.sum(axis=1), *((v + at_once).sum(axis=1) for v in variants)]
+    whole: Real = np.concatenate(out) * points.slope
+    return whole
 
 
 def _scattered(waves: Waves, k: int, end: Real) -> Leaving:
@@ -150,8 +154,8 @@ def _scattered(waves: Waves, k: int, end: Real) -> Leaving:
     return (one, nothing) if k == 0 else (nothing, one)
 
 
-def _swallowed_at_once(scene: Scene, ends: Ends, scattered: Real) -> Real:
-    """Return the ends of scattered light, with all of it taken where an absorber touches the group."""
+def _swallowed_at_once(scene: Scene, scattered: Real, whole: Real) -> Real:
+    """Return the ends of scattered light per unit of the ``whole``; an absorber that touches the group takes all."""
     out = scattered.copy()
     for k in range(len(out)):
         side = scene.sides[k]
@@ -159,7 +163,7 @@ def _swallowed_at_once(scene: Scene, ends: Ends, scattered: Real) -> Real:
             out[k] = 0.0
             out[k, side.outer] = 1.0
         else:
-            out[k] /= out[k].sum(axis=0)
+            out[k] /= whole[k].sum(axis=0)
     return out
 
 
@@ -169,12 +173,10 @@ def _jumps(scene: Scene, side: Side, reach: Real) -> Real:
     if not side.plates:
         return low[None]
     lines = np.sort(scene.index[list(side.clear)].real, axis=0)
-    found = [low]
-    starts, stops = lines[:-1], lines[1:]
-    for start, stop in zip(starts, stops, strict=True):
-        for count in range(1, MOST_COUNTED + 1):
-            found.append(_where_trips(scene, side, start, stop, reach / count))
-    return np.array(found)
+    ends = pairwise(lines)
+    return np.array(
+        [low, *(_where_trips(scene, side, *each, reach / n) for each in ends for n in range(1, MOST_COUNTED + 1))]
+    )
 
 
 def _where_trips(scene: Scene, side: Side, low: Real, high: Real, step: Real) -> Real:
@@ -210,10 +212,10 @@ def merge(parts: list[tuple[np.ndarray, Held]], wavelengths: int) -> Held:
     """Join results of some wavelengths each into one of all."""
     first = parts[0][1]
     fields = {}
-    for name in ("wide", "edged", "scattered_wide", "scattered_edged", "straight", "error"):
+    for name in ("wide", "edged", "scattered_first", "scattered_wide", "scattered_edged", "straight", "error"):
         like = getattr(first, name)
         whole = np.zeros((*like.shape[:-1], wavelengths))
         for chosen, part in parts:
             whole[..., chosen] = getattr(part, name)
         fields[name] = whole
-    return replace(first, **fields)
+    return Held(ends=first.ends, **fields)

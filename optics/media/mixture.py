@@ -12,8 +12,8 @@ from optics.media.dispersion import Medium
 class Bruggeman:
     """An effective medium in which both parts are treated alike.
 
-    f (e1 - e)/(e1 + 2 e) + (1 - f) (e2 - e)/(e2 + 2 e) = 0 (Bruggeman 1935; Aspnes, Thin Solid Films 89, 249 (1982), for
-    rough faces), the root that absorbs.
+    f (e1 - e)/(e1 + 2 e) + (1 - f) (e2 - e)/(e2 + 2 e) = 0 (Bruggeman 1935; for rough faces Aspnes, Thin Solid Films
+    89, 249 (1982)), the root that absorbs.
 
     Parameters
     ----------

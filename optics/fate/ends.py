@@ -1,0 +1,204 @@
+"""The ends of all light in a real sample: the ledger's first entries, and where held and guided light goes then."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from optics.fate import guided, held
+from optics.fate.guided import Guided, Scatter
+from optics.fate.held import Held
+from optics.fate.ledger import Ledger
+from optics.fate.scenes import Drawing, scenes
+from optics.fate.trips import Ends
+from optics.fate.wave import Settings
+from optics.sample import Sample, at_wavelengths
+from optics.waves.coherent import Real
+from optics.waves.paths import Index
+
+PLACES = ("to_film", "to_layers", "to_free", "to_outer", "at_edge", "unfinished")
+"""Where followed light ends: taken by the film, by other layers or plates, out through a face, in an outer medium that
+holds it, at the edge, or nowhere (nothing absorbs it and there is no edge)."""
+
+KINDS = ("held", "guided", "scattered")
+FIRST = ("reabsorbed", "elsewhere", "free_below", "free_above")
+"""Ends met before any light is held or guided."""
+
+SAMPLES = ("faces", "wide", "edged")
+"""Held light lost where it enters; a sample without edges; one with."""
+
+PER_CM = 1e-7
+"""1/cm in 1/nm."""
+
+
+@dataclass(frozen=True)
+class SampleEnds:
+    """Ends per wavelength, shares of the photons born; each array is (place, wavelength) in the order of ``PLACES``.
+
+    Attributes
+    ----------
+    model
+        ``"wave"`` or ``"ray"``.
+    rate_factor
+        P, (wavelength,).
+    first
+        Ends of ``FIRST``, light that is neither held nor guided.
+    entered, guided
+        Shares of held and of guided light on first entry, (wavelength,).
+    held, along, scattered
+        By sample of ``SAMPLES``: held light, guided light (less what is scattered) and scattered guided light. In
+        ``"faces"`` the light held in plates is in no place.
+    error
+        Estimated numerical error of held light, (wavelength,).
+    """
+
+    model: str
+    rate_factor: Real
+    first: dict[str, Real]
+    entered: Real
+    guided: Real
+    held: dict[str, Real]
+    along: dict[str, Real]
+    scattered: dict[str, Real]
+    error: Real
+
+    def total(self, sample: str, place: str) -> Real:
+        """Return all that ends in one of ``PLACES`` in one of ``SAMPLES``, first entries included, (wavelength,)."""
+        at = PLACES.index(place)
+        out: Real = self.held[sample][at] + self.along[sample][at] + self.scattered[sample][at]
+        if place == "to_film":
+            out = out + self.first["reabsorbed"]
+        if place == "to_layers":
+            out = out + self.first["elsewhere"]
+        if place == "to_free":
+            out = out + self.first["free_above"] + self.first["free_below"]
+        return out
+
+    def missing(self, sample: str) -> Real:
+        """Return what is in no place: light held in plates, where that counts as lost; rounding elsewhere."""
+        return 1.0 - np.sum([self.total(sample, place) for place in PLACES], axis=0)
+
+
+def follow(drawing: Drawing, ledger: Ledger, sample: Sample, settings: Settings, *, model: str) -> SampleEnds:
+    """Follow held and guided light of a stack to their ends.
+
+    Parameters
+    ----------
+    drawing
+        The stack.
+    ledger
+        Its ledger in the same model.
+    sample
+        Edges and scattering.
+    settings
+        How finely to integrate.
+    model
+        ``"wave"`` or ``"ray"``.
+    """
+    k0 = 2.0 * np.pi / drawing.wavelength_nm
+    reach = k0 * sample.to_edge_mm * 1e6
+    scatter = _scatter(sample, drawing.wavelength_nm, k0)
+    parts: list[tuple[Index, Held]] = []
+    along: list[tuple[Index, tuple[Guided, Guided]]] = []
+    for chosen, scene in scenes(drawing):
+        parts.append((chosen, held.follow(scene, settings, reach[chosen], model=model, scattered=sample.scatters)))
+        along.append((chosen, guided.follow_rays(scene, settings, reach[chosen], scatter.at(chosen))))
+    whole = held.merge(parts, len(k0))
+    ends = _guided_ends(ledger, along, len(k0), np.isfinite(sample.to_edge_mm))
+    return _joined(drawing, ledger, whole, ends, sample, model)
+
+
+def _scatter(sample: Sample, wavelength_nm: Real, k0: Real) -> Scatter:
+    per_cm = at_wavelengths("guided_scatter_per_cm", sample.guided_scatter_per_cm, wavelength_nm)
+    rough = np.ones_like(k0)
+    return Scatter(
+        per_cm * PER_CM / k0,
+        k0 * (sample.rms_nm or 0.0) * rough,
+        k0 * (sample.correlation_nm or 1.0) * rough,
+    )
+
+
+def _guided_ends(
+    ledger: Ledger, parts: list[tuple[Index, tuple[Guided, Guided]]], count: int, edged: bool
+) -> dict[str, tuple[Real, Real]]:
+    """Return guided light's ends by sample, (place, wavelength), and what is scattered, shares of births.
+
+    What absorbers keep is parted between film and other layers as the ledger parts it.
+    """
+    waveguided, elsewhere = ledger.shares["waveguided"], ledger.shares["guided_elsewhere"]
+    to_others = np.where(waveguided != 0.0, elsewhere / np.where(waveguided != 0.0, waveguided, 1.0), 0.0)
+    out = {}
+    for sample, variant in zip(SAMPLES, (0, 0, 1), strict=True):
+        shares = np.zeros((4, count))
+        for chosen, both in parts:
+            ends = both[variant]
+            shares[:, chosen] = [ends.kept, ends.edge, ends.scattered, ends.unfinished]
+        shares = _without_rays(shares, ledger, with_edge=variant == 1 and edged)
+        places = np.zeros((len(PLACES), count))
+        places[PLACES.index("to_film")] = shares[0] * (waveguided - elsewhere)
+        places[PLACES.index("to_layers")] = shares[0] * waveguided * to_others
+        places[PLACES.index("at_edge")] = shares[1] * waveguided
+        places[PLACES.index("unfinished")] = shares[3] * waveguided
+        out[sample] = places, shares[2] * waveguided
+    return out
+
+
+def _without_rays(shares: Real, ledger: Ledger, *, with_edge: bool) -> Real:
+    """Return the shares with those of guided light that no ray carries: the ledger says whether anything keeps it."""
+    alone = shares.sum(axis=0) < 0.5
+    clear = alone & (ledger.shares["guided_unfinished"] != 0.0)
+    out = shares.copy()
+    out[0, alone & ~clear] = 1.0
+    out[1 if with_edge else 3, clear] = 1.0
+    return out
+
+
+def _joined(
+    drawing: Drawing,
+    ledger: Ledger,
+    whole: Held,
+    along: dict[str, tuple[Real, Real]],
+    sample: Sample,
+    model: str,
+) -> SampleEnds:
+    shares = ledger.shares
+    straight = whole.straight / ledger.rate_factor
+    entered = shares["substrate"] + shares["cover"] + ledger.taken[1].sum(axis=0) - straight.sum(axis=0)
+    held_places = {name: np.zeros((len(PLACES), len(entered))) for name in SAMPLES}
+    for name, part in (("wide", whole.wide), ("edged", whole.edged)):
+        total = part.sum(axis=0)
+        held_places[name] = _places(whole.ends, part, drawing.film) * entered / np.where(total > 0.0, total, 1.0)
+    for places in held_places.values():
+        places[PLACES.index("to_outer")] += straight.sum(axis=0)
+    up = sample.scatter_up_share
+    scattered = {name: np.zeros((len(PLACES), len(entered))) for name in SAMPLES}
+    if sample.scatters:
+        lit = {"faces": whole.scattered_first, "wide": whole.scattered_wide, "edged": whole.scattered_edged}
+        for name, (_, amount) in along.items():
+            mixed = up * lit[name][0] + (1.0 - up) * lit[name][1]
+            scattered[name] = amount * _places(whole.ends, mixed, drawing.film)
+    return SampleEnds(
+        model=model,
+        rate_factor=ledger.rate_factor,
+        first={name: shares[name] for name in FIRST} | {"elsewhere": shares["elsewhere"] - ledger.taken[1].sum(axis=0)},
+        entered=entered,
+        guided=shares["waveguided"],
+        held=held_places,
+        along={name: places for name, (places, _) in along.items()},
+        scattered=scattered,
+        error=whole.error / ledger.rate_factor,
+    )
+
+
+def _places(ends: Ends, amounts: Real, film: int) -> Real:
+    """Return amounts per end, (end, wavelength), as (place, wavelength)."""
+    taken = amounts[: ends.media]
+    return np.array(
+        [
+            taken[film],
+            taken.sum(axis=0) - taken[film],
+            amounts[ends.free(0)] + amounts[ends.free(1)],
+            amounts[ends.kept(0)] + amounts[ends.kept(1)],
+            amounts[ends.edge],
+            amounts[ends.unfinished],
+        ]
+    )
