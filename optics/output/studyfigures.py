@@ -149,3 +149,74 @@ def _place(value: Any, values: list[Any], ticks: list[str] | None) -> float | No
     if ticks is not None:
         return float(values.index(value)) if value in values else None
     return float(value) if isinstance(value, float) and min(values) <= value <= max(values) else None
+
+
+def ladder_figure(shares: "DataFrame", *, title: str = "") -> Figure:
+    """Draw a ladder: a row an end, a dot a stack.
+
+    Parameters
+    ----------
+    shares
+        A row a share, a column a stack.
+    title
+        Put above.
+    """
+    rows = ["trapped", *(end.column for end in ENDS)]
+    figure = _figure(title, "share of the photons born; a row an end, a mark a stack", (8.0, 5.0))
+    axes = figure.add_axes((0.15, 0.11, 0.80, 0.70))
+    heights = np.arange(len(rows))[::-1]
+    for height, row in zip(heights, rows, strict=True):
+        values = shares.loc[row].to_numpy(dtype=float)
+        axes.plot([values.min(), values.max()], [height, height], color="#bbbbbb", linewidth=4, solid_capstyle="round", zorder=1)
+    step = 0.16 if len(shares.columns) > 1 else 0.0
+    offsets = step * (np.arange(len(shares.columns)) - (len(shares.columns) - 1) / 2) * min(1.0, 4 / len(shares.columns))
+    for number, (name, down) in enumerate(zip(shares.columns, offsets, strict=True)):
+        axes.plot(
+            shares.loc[rows, name], heights - down, linestyle="none", marker=MARKERS[number % len(MARKERS)], markersize=6.5,
+            color=STACKS[number % len(STACKS)], markeredgecolor=LIGHT, label=shorten(name, 30),
+        )  # fmt: skip
+    axes.set_yticks(heights, [row.replace("_", " ") for row in rows])
+    axes.axhline(heights[0] - 0.5, color="#dddddd", linewidth=0.8)
+    axes.set_xlim(left=min(0.0, 1.1 * float(shares.loc[rows].min().min())))
+    axes.set_ylim(-0.6, len(rows) - 0.4)
+    axes.set_xlabel("share of photons born")
+    axes.spines[["top", "right"]].set_visible(False)
+    axes.legend(loc="lower right", bbox_to_anchor=(1.0, 1.0), ncols=min(4, len(shares.columns)), fontsize=SMALL, frameon=False, handletextpad=0.2)
+    return figure
+
+
+def difference_figure(differences: "DataFrame", *, title: str = "") -> Figure:
+    """Draw what changes against the first stack, by wavelength: a panel a stack, a line an end.
+
+    Parameters
+    ----------
+    differences
+        Tidy: stack, wavelength_nm and a column a share, in percentage points.
+    title
+        Put above.
+    """
+    names = list(dict.fromkeys(differences["stack"]))
+    shown = [end for end in ENDS if differences[end.column].abs().max() >= 100 * SHOWN_ABOVE]
+    height = 1.2 + 2.1 * len(names)
+    figure = _figure("", "", (8.0, height))
+    figure.text(PLOT[0], 1 - 0.18 / height, shorten(title, 90), fontsize=11, va="center", parse_math=False)
+    note = "change of each share against the first stack, percentage points"
+    figure.text(PLOT[0], 1 - 0.40 / height, note, fontsize=SMALL, va="center", color="#444444")
+    limit = 1.08 * max(float(differences[end.column].abs().max()) for end in shown) if shown else 1.0
+    for number, name in enumerate(names):
+        axes = figure.add_axes((0.09, 1 - (0.85 + 2.1 * (number + 1) - 0.35) / height, 0.72, 1.75 / height))
+        rows = differences[differences["stack"] == name]
+        for end in shown:
+            style = {"marker": "o"} if len(rows) == 1 else {}
+            axes.plot(rows["wavelength_nm"], rows[end.column], color=end.colour, linewidth=1.8, path_effects=OUTLINE, label=end.name, **style)
+        axes.axhline(0.0, color=DARK, linewidth=0.7, zorder=0)
+        axes.set_ylim(-limit, limit)
+        axes.margins(x=0)
+        axes.set_title(shorten(name, 60), fontsize=SMALL + 1, loc="left", pad=3, parse_math=False)
+        axes.spines[["top", "right"]].set_visible(False)
+        if number < len(names) - 1:
+            axes.set_xticklabels([])
+    axes.set_xlabel("wavelength (nm)")
+    handles, labels = axes.get_legend_handles_labels()
+    figure.legend(handles, labels, loc="upper left", bbox_to_anchor=(0.82, 1 - 0.6 / height), fontsize=SMALL, frameon=False)
+    return figure
