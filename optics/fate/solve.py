@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
@@ -85,6 +85,9 @@ class Result:
         Emission in the dark and radiative coefficient; None unless births follow from absorption.
     measured
         A measurement laid over one of the spectra, by `optics.fate.overlay.lay_over`; else None.
+    moved_by_tail
+        How much the tails put in the place of absorption floors moved each of ``averages``, for the same births inside;
+        empty without any.
     warnings, assumptions
         Sentences.
     """
@@ -109,6 +112,7 @@ class Result:
     pump: Pumped | None = None
     radiation: births.Radiation | None = None
     measured: Measured | None = None
+    moved_by_tail: dict[str, float] = field(default_factory=dict)
     warnings: tuple[str, ...] = field(default=())
     assumptions: tuple[str, ...] = field(default=())
 
@@ -184,6 +188,7 @@ def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings
         depth_averages=_bracketed(stack, drawing, born, pump, lead, settings),
         pump=pump,
         radiation=births.radiation_of(stack, drawing, averages["rate_factor"]),
+        moved_by_tail=_moved_by_tail(stack, drawing, born, averages, lead, settings),
         warnings=_warnings(stack, drawing, names, born, ledger, advised=model, lead=lead),
         assumptions=assumptions(stack),
     )
@@ -199,6 +204,19 @@ def _bracketed(
         name: _booked(stack, each, born.per_nm, ledger_of(each, settings, model=model), model, settings).averages
         for name, each in bracket(drawing, pump).items()
     }
+
+
+def _moved_by_tail(
+    stack: Stack, drawing: Drawing, born: births.Born, averages: dict[str, float], model: str, settings: Settings
+) -> dict[str, float]:
+    """Return the averages less those of the same births with every table as it was; empty where no layer has a tail."""
+    if all(layer.tail is None for layer in stack.layers):
+        return {}
+    materials = [stack.above.material, *(layer.material for layer in stack.layers), stack.below.material]
+    index = np.array([material.index(drawing.wavelength_nm) for material in materials])
+    bare = replace(drawing, index=index)
+    booked = _booked(stack, bare, born.per_nm, ledger_of(bare, settings, model=model), model, settings)
+    return {name: averages[name] - value for name, value in booked.averages.items()}
 
 
 def medium_names(stack: Stack) -> list[str]:
@@ -305,7 +323,9 @@ def _warnings(
         advice.metal_warning(names, drawing.index, drawing.thickness_nm, drawing.film),
         floor_warning(stack.film.name, stack.film.repaired, drawing.wavelength_nm, film.imag, weight),
         advice.error_warning(ledger.error),
-        advice.near_field_warning(drawing.wavelength_nm, film, stack.film.thickness_nm, ledger.rate_factor),
+        advice.near_field_warning(
+            drawing.wavelength_nm, film, stack.film.thickness_nm, ledger.rate_factor, ledger.shares["trapped"]
+        ),
         *births.births_warnings(stack, drawing, born, advised=advised, lead=lead),
     ]
     return tuple(sentence for sentence in said if sentence)
