@@ -25,7 +25,7 @@ __all__ = [
     "bundled_names",
     "cabinet_beside",
     "find",
-    "is_card",
+    "is_bundled",
     "own_names",
     "users_cabinet",
 ]
@@ -105,9 +105,9 @@ def own_names(folder: str | Path | None = None) -> dict[str, Path]:
     return {card.stem: card for each in cabinets if each.is_dir() for card in sorted(each.glob(f"*{_CARD_SUFFIX}"))}
 
 
-def is_card(material: Material) -> bool:
-    """Say whether a material was read from a card, bundled or one's own."""
-    return material.path.endswith(_CARD_SUFFIX)
+def is_bundled(material: Material) -> bool:
+    """Say whether a material was read from a bundled card."""
+    return Path(material.path) in _cards().values()
 
 
 def _named(spec: str, folder: str | Path | None) -> Material:

@@ -8,7 +8,10 @@ from typing import Any
 
 from optics.depth import DepthTable
 from optics.errors import InputError
+from optics.layer import layer_place
+from optics.media.cabinet import CABINET, is_bundled
 from optics.media.material import Material
+from optics.media.tail import Tail
 from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, SpectrumTable
 from optics.stack import Stack
@@ -37,7 +40,7 @@ def copy_inputs(stack: Stack, folder: Path, *, stack_file: Path | None, taken: C
     places = _places_beside(tables, stack_file, taken)
     verbatim = stack_file is not None and places is not None
     if places is None:
-        places = {path: Path(TABLES) / f"{number}-{Path(path).name}" for number, path in enumerate(tables, start=1)}
+        places = {path: _place(path, number) for number, path in enumerate(tables, start=1)}
     for path, sha256 in tables.items():
         _copy(Path(path), folder / places[path], sha256)
     copy = folder / STACK_FILE
@@ -51,7 +54,9 @@ def copy_inputs(stack: Stack, folder: Path, *, stack_file: Path | None, taken: C
 def tables_of(stack: Stack) -> dict[str, str]:
     """Return path and hash of every table that a stack was made from; cards of bundled materials are none."""
     materials = [material for _, material, _ in stack.media]
-    tables = {each.path: each.sha256 for each in materials if each.path and not _bundled(each)}
+    tables = {each.path: each.sha256 for each in materials if each.path and not is_bundled(each)}
+    tails = [layer.tail.measured for layer in stack.layers if layer.tail and layer.tail.measured]
+    tables |= {each.path: each.sha256 for each in tails if each.path}
     spectrum = stack.light.spectrum
     if isinstance(spectrum, SpectrumTable) and spectrum.path:
         tables[spectrum.path] = spectrum.sha256
@@ -69,10 +74,15 @@ def inputs_of(stack: Stack, stack_file: Path | None) -> dict[str, Any]:
             "material": material.name,
             "source": material.source,
             "licence": material.licence,
-            "path": "" if _bundled(material) else material.path,
+            "path": "" if is_bundled(material) else material.path,
             "sha256": material.sha256,
         }
         for place, material, _ in stack.media
+    ]
+    media += [
+        {"place": layer_place(layer.name), "tail": measured.path, "sha256": measured.sha256}
+        for layer in stack.layers
+        if layer.tail and (measured := layer.tail.measured)
     ]
     file = {} if stack_file is None else {"path": str(stack_file), "sha256": _hash(stack_file.read_bytes())}
     return {"stack_file": file, "media": media, "spectrum": _spectrum(stack)}
@@ -109,8 +119,13 @@ def _spectrum(stack: Stack) -> dict[str, Any]:
     return {"kind": "table", "seen": spectrum.seen, "na": spectrum.na, **file}
 
 
-def _bundled(material: Material) -> bool:
-    return material.path.endswith(".toml")  # a card; tables never end so
+def _is_card(path: str) -> bool:
+    return path.endswith(".toml")  # tables never end so
+
+
+def _place(path: str, number: int) -> Path:
+    """Return where a table or a card of one's own stands in a result folder whose stack is written anew."""
+    return Path(CABINET) / Path(path).name if _is_card(path) else Path(TABLES) / f"{number}-{Path(path).name}"
 
 
 def _places_beside(tables: Collection[str], stack_file: Path | None, taken: Collection[str]) -> dict[str, Path] | None:
@@ -123,7 +138,9 @@ def _places_beside(tables: Collection[str], stack_file: Path | None, taken: Coll
         try:
             place = Path(path).resolve().relative_to(home)
         except ValueError:
-            return None
+            if not _is_card(path):
+                return None
+            place = Path(CABINET) / Path(path).name  # the user's own card, found by its name beside the copy
         if place.parts[0] in taken or Path(path).is_absolute() != stack_file.parent.is_absolute():
             return None
         places[path] = place
@@ -145,6 +162,8 @@ def _moved(stack: Stack, tables: dict[str, Path]) -> Stack:
         if material.path not in tables:
             return material
         place = tables[material.path]
+        if _is_card(material.path):
+            return replace(material, path=str(place))
         return replace(material, path=str(place), name=place.stem, source=f"table {place.name}")
 
     spectrum = stack.light.spectrum
@@ -157,10 +176,19 @@ def _moved(stack: Stack, tables: dict[str, Path]) -> Stack:
         stack,
         above=replace(stack.above, material=moved(stack.above.material)),
         below=replace(stack.below, material=moved(stack.below.material)),
-        layers=tuple(replace(layer, material=moved(layer.material)) for layer in stack.layers),
+        layers=tuple(
+            replace(layer, material=moved(layer.material), tail=_moved_tail(layer.tail, tables))
+            for layer in stack.layers
+        ),
         light=replace(stack.light, spectrum=spectrum),
         emission=emission,
     )
+
+
+def _moved_tail(tail: Tail | None, tables: dict[str, Path]) -> Tail | None:
+    if tail is None or tail.measured is None or tail.measured.path not in tables:
+        return tail
+    return replace(tail, measured=replace(tail.measured, path=str(tables[tail.measured.path])))
 
 
 def _hash(content: bytes) -> str:

@@ -202,7 +202,7 @@ def _spec(material: Material, place: str, home: Path | None) -> Any:
     """Return the way to name a material under which it is found again, the same in every part."""
     for spec in _candidates(material):
         try:
-            if find(spec) == material:
+            if find(spec, folder=home) == material:
                 return _from_home(spec, home) if spec == material.path else spec
         except InputError:
             continue
@@ -216,6 +216,8 @@ def _candidates(material: Material) -> Iterator[Any]:
     if isinstance(material.medium, Constant):
         yield {"n": _number(material.medium.n), "k": _number(material.medium.k)}
     if material.name in bundled_names():
+        yield material.name
+    if material.path.endswith(".toml"):  # a card in a cabinet that reading looks into
         yield material.name
     if material.path:
         yield material.path
