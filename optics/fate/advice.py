@@ -1,5 +1,7 @@
 """Which model to trust, and what a result should warn of."""
 
+import math
+
 import numpy as np
 
 from optics.waves.coherent import Complex, Real
@@ -25,8 +27,8 @@ def linewidth(wavelength_nm: Real, weight: Real) -> tuple[float, float]:
     The width is that of the Gaussian of the same standard deviation, so that structure does not upset it.
     """
     mean = float(weight @ wavelength_nm)
-    spread = float(np.sqrt(max(weight @ (wavelength_nm - mean) ** 2, 0.0)))
-    return mean, 2.0 * float(np.sqrt(2.0 * np.log(2.0))) * spread
+    spread = math.sqrt(max(float(weight @ (wavelength_nm - mean) ** 2), 0.0))
+    return mean, 2.0 * math.sqrt(2.0 * math.log(2.0)) * spread
 
 
 def advise(wavelength_nm: Real, weight: Real, film_index: Complex, thickness_nm: float) -> tuple[str, str]:
@@ -45,7 +47,7 @@ def advise(wavelength_nm: Real, weight: Real, film_index: Complex, thickness_nm:
 
 def metal_warning(names: list[str], index: Complex, thickness_nm: Real, film: int) -> str | None:
     """Return a warning where a metal lies within ``NEAR_METAL_NM`` of the film's births, else None."""
-    metal = ((index * index).real < 0.0).any(axis=1)
+    metal = [bool(row.any()) for row in (index * index).real < 0.0]
     close = []
     for step in (-1, 1):
         distance, medium = 0.0, film + step
@@ -58,8 +60,8 @@ def metal_warning(names: list[str], index: Complex, thickness_nm: Real, film: in
     if not close:
         return None
     return (
-        f"{' and '.join(close)}: a metal within {NEAR_METAL_NM:.0f} nm of the births takes energy through its near field "
-        "(plasmons among it) beyond the film's light line; that part is left out"
+        f"{' and '.join(close)}: a metal within {NEAR_METAL_NM:.0f} nm of the births takes energy through its near "
+        "field (plasmons among it) beyond the film's light line; that part is left out"
     )
 
 
@@ -72,20 +74,26 @@ def error_warning(error: Real) -> str | None:
     return f"numerical error up to {worst:.0e} in a share at {count} wavelength{'s' if count > 1 else ''}"
 
 
-def near_field_warning(wavelength_nm: Real, film_index: Complex, thickness_nm: float, rate_factor: Real) -> str | None:
+def near_field_warning(
+    wavelength_nm: Real, film_index: Complex, thickness_nm: float, rate_factor: Real, trapped: Real
+) -> str | None:
     """Return a warning where radiated light and near field cannot be told apart in the film, else None.
 
-    The film's near field reaches its neighbours in proportion to k/(k0 d); what of it counts as radiated is a convention.
+    The film's near field reaches its neighbours in proportion to k/(k0 d); what of it counts as radiated is a
+    convention, and next to denser neighbours it can leave the film less than nothing.
     """
-    if (rate_factor <= 0.0).any():
+    lost = rate_factor <= 0.0
+    if lost.any():
         return (
-            f"the rate factor is not positive at {int((rate_factor <= 0.0).sum())} of {len(rate_factor)} wavelengths: "
-            "the film absorbs too much within too little thickness for its shares to mean anything there"
+            f"the rate factor is not positive at {int(lost.sum())} of {len(lost)} wavelengths: the film absorbs too "
+            "much within too little thickness for its shares to mean anything there"
         )
     measure = float((film_index.imag * wavelength_nm).max() / (2.0 * np.pi * thickness_nm))
-    if measure <= STRONG_NEAR_FIELD:
+    lowest = float(trapped.min())
+    if measure <= STRONG_NEAR_FIELD and lowest > -ERROR_WORTH_A_WORD:
         return None
+    below = f"; the trapped share comes out as low as {lowest:.1e}" if lowest < -ERROR_WORTH_A_WORD else ""
     return (
-        f"the film absorbs so much within {thickness_nm:.3g} nm (k/(k0 d) up to {measure:.2g}) that radiated light and "
-        "near field cannot be told apart sharply; rate factor and reabsorbed share are a convention there"
+        f"radiated light and near field cannot be told apart sharply in an absorbing film of {thickness_nm:.3g} nm "
+        f"(k/(k0 d) up to {measure:.1g}): rate factor and reabsorbed share are a convention there{below}"
     )

@@ -10,7 +10,7 @@ import numpy as np
 
 from optics.waves.coherent import Real
 from optics.waves.paths import Index
-from optics.waves.plates import Shell, Waves, is_sink, shell
+from optics.waves.plates import Mask, Shell, Waves, is_sink, shell
 from optics.waves.scene import Scene, Side
 
 FREE_ABOVE, FREE_BELOW, COVER, SUBSTRATE = range(4)
@@ -20,9 +20,13 @@ FREE_ABOVE, FREE_BELOW, COVER, SUBSTRATE = range(4)
 class Response:
     """What the thin group does with one unit of power that returns to it from one side."""
 
-    back: Real
-    through: Real
+    back: Real | float
+    through: Real | float
     taken: Mapping[int, Real]  # film included
+
+
+NO_RESPONSE = Response(0.0, 0.0, {})
+"""Stands in where no plate can send light back."""
 
 
 @dataclass(frozen=True)
@@ -82,23 +86,14 @@ def coupled(
 ) -> tuple[Real, Real]:
     """Solve the two-by-two system of both sides: all passes through the group and back."""
     up, down = leaving
-    above, below = responses
-    if above is None and below is None:
-        return up, down
-    if above is None:
-        assert_below = below
-        out_down = down / (1.0 - assert_below.back * returned[1])
-        return up + assert_below.through * returned[1] * out_down, out_down
-    if below is None:
-        out_up = up / (1.0 - above.back * returned[0])
-        return out_up, down + above.through * returned[0] * out_up
+    above, below = (response or NO_RESPONSE for response in responses)
     self_up, self_down = 1.0 - above.back * returned[0], 1.0 - below.back * returned[1]
     to_down, to_up = above.through * returned[0], below.through * returned[1]
     whole = self_up * self_down - to_down * to_up
     return (up * self_down + to_up * down) / whole, (down * self_up + to_down * up) / whole
 
 
-def _settle(out: Real, layout: Layout, k: int, side: Side, folded: Shell | None, sink: Real, power: Real) -> None:
+def _settle(out: Real, layout: Layout, k: int, side: Side, folded: Shell | None, sink: Mask, power: Real) -> None:
     """Book the power that leaves the group on one side, all passes counted."""
     free = (FREE_ABOVE, FREE_BELOW)[k] if side.free else (COVER, SUBSTRATE)[k]
     held = (COVER, SUBSTRATE)[k]

@@ -53,8 +53,8 @@ class Account:
     zone: Real
     bound_first_flight: Real
     bound_taken: Real
-    has_bound: Real
-    unfinished: Real
+    has_bound: Mask
+    unfinished: Mask
     miss: Real
     path_error: Real
     open_error: Real
@@ -95,7 +95,8 @@ class Ledger:
     @property
     def error(self) -> Real:
         """Largest estimated error of any share, (wavelength,)."""
-        return np.max(list(self.errors.values()), axis=0)
+        worst: Real = np.max(list(self.errors.values()), axis=0)
+        return worst
 
 
 def draw_up(account: Account, *, film: int, walls: Sequence[int]) -> Ledger:
@@ -147,14 +148,14 @@ def draw_up(account: Account, *, film: int, walls: Sequence[int]) -> Ledger:
         {name: amounts[name] / account.power for name in SHARES},
         taken / account.power,
         account.miss / account.power,
-        {name: error / account.power for name, error in _errors(account, amounts).items()},
+        {name: error / np.abs(account.power) for name, error in _errors(account, amounts).items()},
     )
 
 
 def _errors(account: Account, amounts: dict[str, Real]) -> dict[str, Real]:
     """Return the estimated error of every share times the power: that of its own integrals and of the power."""
     path, zone, guided = account.path_error, account.open_error, account.guided_error
-    own = {name: zone for name in ENDS}
+    own = dict.fromkeys(ENDS, zone)
     own |= {"reabsorbed": zone + path, "waveguided": zone + path, "trapped": zone + path}
     own |= {"guided_reabsorbed": zone + path + guided, "guided_elsewhere": guided, "guided_unfinished": zone + path}
     return {name: own[name] + np.abs(amounts[name] / account.power) * path for name in SHARES}

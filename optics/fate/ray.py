@@ -94,7 +94,9 @@ def real_film(scene: Scene) -> Scene:
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     """Return everything the open zone needs per node, (quantity, row, node), Jacobian included."""
     points = curves.on_panel(rows, u, scene.film_index[rows.owner, None])
-    return open_values(scene, rows.owner, points) * points.slope
+    out = open_values(scene, rows.owner, points)
+    out *= points.slope
+    return out
 
 
 def open_values(scene: Scene, owner: Index, points: Points) -> Real:
@@ -204,7 +206,7 @@ def _account_alike(scene: Scene, settings: Settings, *, clear: bool, others: boo
         power=np.ones(scene.wavelengths),
         zone=zone.values,
         bound_first_flight=bound.values[1],
-        bound_taken=_shared_out(scene, bound.values, clear=clear),
+        bound_taken=_shared_out(bound.values, clear=clear),
         has_bound=has_bound,
         unfinished=has_bound & clear & (not others),
         miss=miss,
@@ -219,7 +221,7 @@ def edge_of_open(scene: Scene) -> Real:
     return np.minimum(scene.open_end, scene.film_index.real)
 
 
-def _shared_out(scene: Scene, bound: Real, *, clear: bool) -> Real:
+def _shared_out(bound: Real, *, clear: bool) -> Real:
     """Return what each medium but the film takes of bound rays; all of it where the film is clear."""
     taken = bound[2:]
     total = taken.sum(axis=0)

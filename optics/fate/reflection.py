@@ -48,4 +48,3 @@ def at_normal(scene: Scene, side: int, *, film_is_plate: bool) -> Reflection:
         taken[far.outer] += passed
         passed = np.zeros_like(passed)
     return Reflection(whole.reflects[0, :, 0], passed, taken)
-

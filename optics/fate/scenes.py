@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from optics.waves.coherent import Complex, Real
+from optics.waves.plates import Mask
 from optics.waves.scene import Index, Scene, Side
 from optics.waves.source import Moments, uniform
 
@@ -32,12 +33,13 @@ class Drawing:
     moments: Moments = uniform
 
 
-def swallows(drawing: Drawing, medium: int) -> np.ndarray:
+def swallows(drawing: Drawing, medium: int) -> Mask:
     """Tell per wavelength whether an outer medium (or a metallic plate) swallows what enters it."""
     index = drawing.index[medium]
-    metal = (index * index).real < 0.0
+    metal: Mask = (index * index).real < 0.0
     outer = medium in (0, len(drawing.index) - 1)
-    return metal | (outer & (4.0 * np.pi * index.imag * SWALLOWED_WITHIN_NM >= drawing.wavelength_nm))
+    opaque: Mask = 4.0 * np.pi * index.imag * SWALLOWED_WITHIN_NM >= drawing.wavelength_nm
+    return metal | opaque if outer else metal
 
 
 def scenes(drawing: Drawing) -> Iterator[tuple[Index, Scene]]:
@@ -50,7 +52,7 @@ def scenes(drawing: Drawing) -> Iterator[tuple[Index, Scene]]:
         yield chosen, _scene(drawing, chosen, pattern)
 
 
-def _side_ends(drawing: Drawing, step: int) -> tuple[np.ndarray, np.ndarray]:
+def _side_ends(drawing: Drawing, step: int) -> tuple[Index, Mask]:
     """Return per wavelength the medium that ends a side and whether it swallows: a metallic plate ends it early."""
     outermost = 0 if step < 0 else len(drawing.index) - 1
     ends = np.full(len(drawing.wavelength_nm), outermost)

@@ -232,9 +232,7 @@ class _Booked(NamedTuple):
     errors: dict[str, float]
 
 
-def _booked(
-    stack: Stack, drawing: Drawing, spectrum: Real, ledger: Ledger, model: str, settings: Settings
-) -> _Booked:
+def _booked(stack: Stack, drawing: Drawing, spectrum: Real, ledger: Ledger, model: str, settings: Settings) -> _Booked:
     import pandas as pd
 
     steps = weights(drawing.wavelength_nm)

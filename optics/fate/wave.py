@@ -112,7 +112,9 @@ def _fluxes(outlook: Outlook, amplitude: Complex, sent: Real) -> list[Real]:
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:
     """Return everything the open zone needs per node, (quantity, row, node), Jacobian included."""
     points = curves.on_panel(rows, u, scene.film_index[rows.owner, None])
-    return open_values(scene, rows.owner, points) * points.slope
+    out = open_values(scene, rows.owner, points)
+    out *= points.slope
+    return out
 
 
 def open_values(scene: Scene, owner: Index, points: Points) -> Real:

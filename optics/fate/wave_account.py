@@ -124,9 +124,7 @@ def _flown_within_film(scene: Scene, settings: Settings) -> tuple[Real, Real]:
     return own.values[1] + rise.values[1], own.error + rise.error
 
 
-def _taken_while_bound(
-    scene: Scene, settings: Settings, power: Real, near: Real, own: Integral
-) -> tuple[Real, Real]:
+def _taken_while_bound(scene: Scene, settings: Settings, power: Real, near: Real, own: Integral) -> tuple[Real, Real]:
     """Return what each medium but the film takes of bound light, and the error made.
 
     Exact cases first: nobody but the film absorbs, or a clear film has one absorbing neighbour. Elsewhere fluxes are

@@ -1,8 +1,9 @@
 """Guided and leaky lines: sharp resonances of the thin group, found and taken out of what is integrated.
 
 Near a pole p of the group's response every flux and power on the real axis is a Lorentzian about Re p of half width
-Im p, with an odd part, on a smooth ground. Taking fitted Lorentzians out before the quadrature and adding their integrals
-in closed form changes nothing but the number of nodes; a line that was missed or badly fitted is left to the refinement.
+Im p, with an odd part, on a smooth ground. Taking fitted Lorentzians out before the quadrature and adding their
+integrals in closed form changes nothing but the number of nodes; a line that was missed or badly fitted is left to the
+refinement.
 """
 
 from collections.abc import Callable, Sequence
@@ -29,7 +30,7 @@ CLEARANCE = 2.5
 them is not smooth."""
 
 CUT_FROM = 0.03
-"""Half width, in units of the room around a line, from which a panel is cut at the line: a fit leaves too much of it."""
+"""Half width, in units of the room around a line, from which a panel is cut there: a fit leaves too much of it."""
 
 CUT_APART = 1.0
 """Lines that follow another by less than this many half widths share its cut."""
@@ -97,17 +98,16 @@ def integrate_with_lines(
         out *= points.slope
         return out
 
-    values: Real | float = 0.0
-    error: Real | float = 0.0
-    cut = lines.cut.any(axis=1)
-    for which, rule in ((cut, CELL_ORDER), (~cut, order)):
-        if which.any():
-            cells = _cells(panels, lines, which)
-            rest = integrate(density, cells, wavelengths=scene.wavelengths, order=rule, tolerance=tolerance)
-            values, error = values + rest.values, error + rest.error
+    cut: NDArray[np.bool_] = np.any(lines.cut, axis=1)
+    parts = [
+        integrate(density, _cells(panels, lines, which), wavelengths=scene.wavelengths, order=rule, tolerance=tolerance)
+        for which, rule in ((cut, CELL_ORDER), (~cut, order))
+        if which.any()
+    ]
+    values: Real = np.sum([part.values for part in parts], axis=0)
     if bell.any():
-        np.add.at(values, (slice(None), panels.owner), _areas(panels, taken, bell, odd))
-    return Integral(values, error)
+        np.add.at(values.T, panels.owner, _areas(panels, taken, bell, odd).T)
+    return Integral(values, np.sum([part.error for part in parts], axis=0))
 
 
 def _amplitudes(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, Real]:
@@ -174,11 +174,9 @@ def find(scene: Scene, panels: Rows, candidates: Sequence[Resonator]) -> Lines:
 
     The phase of X on a grid brackets a line; secants on log X, which is nearly linear, polish it.
     """
-    parts = []
     # a round trip may underflow or a secant go astray; what is not finite is no line
     with np.errstate(all="ignore"):
-        for resonator in candidates:
-            parts.append(_lines_of(scene, panels, resonator))
+        parts = [_lines_of(scene, panels, resonator) for resonator in candidates]
     if not parts:
         return no_lines(panels)
     panel, pole = (np.concatenate(both) for both in zip(*parts, strict=True))

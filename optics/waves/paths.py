@@ -126,7 +126,7 @@ def integrate(
         if not np.isfinite(sums).all():
             raise FloatingPointError("a density is not finite on its path")
         done = (guess <= tolerance) if left else np.ones(len(rows), dtype=bool)
-        np.add.at(values, (slice(None), rows.owner[done]), sums[:, done])
+        np.add.at(values.T, rows.owner[done], sums[:, done].T)
         np.add.at(error, rows.owner[done], guess[done])
         rows = rows.take(~done).halves()
     if values is None:

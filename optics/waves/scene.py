@@ -69,7 +69,7 @@ class Scene:
     @property
     def wavelengths(self) -> int:
         """Number of wavelengths."""
-        return self.index.shape[1]
+        return int(self.index.shape[1])
 
     @property
     def sides(self) -> tuple[Side, Side]:
@@ -84,7 +84,8 @@ class Scene:
     @cached_property
     def film_index(self) -> Complex:
         """Film index, (wavelength,)."""
-        return self.index[self.film]
+        own: Complex = self.index[self.film]
+        return own
 
     @cached_property
     def group(self) -> tuple[int, ...]:
@@ -107,7 +108,8 @@ class Scene:
         """Largest real index of the other media of the group and those that touch it, metals (Re eps < 0) apart."""
         others = [*self.group, *(s.touching for s in self.sides)]
         real = np.where(self.eps[others].real < 0.0, 0.0, self.index[others].real)
-        return real.max(axis=0)
+        highest: Real = np.max(real, axis=0)
+        return highest
 
     def view(self, rows: Index) -> "View":
         """Return the scene at chosen wavelengths, shaped to broadcast over nodes."""
@@ -115,9 +117,7 @@ class Scene:
 
     def at(self, which: Index) -> "Scene":
         """Return the scene at some of its wavelengths only."""
-        return replace(
-            self, index=self.index[:, which], loss=self.loss[:, which], phase=self.phase[:, which]
-        )
+        return replace(self, index=self.index[:, which], loss=self.loss[:, which], phase=self.phase[:, which])
 
 
 class View:

@@ -32,12 +32,15 @@ class Moments(Protocol):
 
 def uniform(z: Wave) -> tuple[Wave, Wave]:
     """Return the means of exp(z a/d) and exp(z b/d) over births spread evenly through the film."""
-    if np.isrealobj(z):
-        mean = exprel(z)
-    else:
-        z = np.where(z == 0.0, 1e-300, z)
-        mean = np.expm1(z) / z
+    argument: Any = z
+    mean: Any = exprel(argument) if np.isrealobj(z) else _complex_exprel(argument)
     return mean, mean
+
+
+def _complex_exprel(z: Complex) -> Complex:
+    z = np.where(z == 0.0, 1e-300, z)
+    out: Complex = np.expm1(z) / z
+    return out
 
 
 def first_flight(slant: Wave, moments: Moments) -> Wave:
@@ -169,7 +172,9 @@ def _intensities(at: Cavity, fading: Real) -> tuple[Real, Real, Complex, Complex
         np.multiply(np.where(angle == 0.0, 1.0, swing), np.cos(angle), out=beat.real)
         return near, near, beat, beat
     fade_up, fade_down = moments(-2.0 * fading)
-    beat_up, beat_down = moments(2j * angle)
+    turn = np.zeros(angle.shape, dtype=complex)
+    turn.imag = 2.0 * angle
+    beat_up, beat_down = moments(turn)
     return fade_up, fade_down, beat_up, beat_down
 
 

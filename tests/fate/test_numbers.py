@@ -81,7 +81,7 @@ def test_rate_factor_as_the_index_below_passes_the_films(k, below, expected):
 # index below the film's, whose cut lies off the path.
 
 HIGH = 3.7
-ON_HIGH = {0.02: 0.992488, 1.0: 0.979503}  # this package's values, held by the two tests after the next
+ON_HIGH = {0.02: 0.992488, 1.0: 0.979504}  # this package's values, held by the two tests after the next
 
 
 @pytest.mark.parametrize("k", ON_HIGH)
@@ -117,7 +117,7 @@ def test_what_stands_behind_such_a_layer_does_not_matter():
     np.testing.assert_allclose(rates, rates[0], atol=SEVEN_DIGITS, rtol=0)
 
 
-CUSP = 0.8  # P has a cusp where light lines meet: it falls by at most this times the root of their distance (measured 0.54)
+CUSP = 0.8  # P has a cusp where light lines meet: it falls by this times the root of their distance (measured 0.54)
 
 
 @pytest.mark.parametrize("k", [0.0, 0.02, 1.0])
