@@ -24,7 +24,6 @@ from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 
-
 SHARP_FROM_DEPTH = 25.0
 """Phase through the group from which leaky lines are looked for in the open zone."""
 

@@ -172,7 +172,7 @@ def _intensities(at: Cavity, fading: Real) -> tuple[Real, Real, Complex, Complex
         np.multiply(np.where(angle == 0.0, 1.0, swing), np.cos(angle), out=beat.real)
         return near, near, beat, beat
     fade_up, fade_down = moments(-2.0 * fading)
-    turn = np.zeros(angle.shape, dtype=complex)
+    turn: Complex = np.zeros(angle.shape, dtype=complex)
     turn.imag = 2.0 * angle
     beat_up, beat_down = moments(turn)
     return fade_up, fade_down, beat_up, beat_down
