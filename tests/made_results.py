@@ -37,10 +37,18 @@ class MadeResult:
     averages: dict[str, float]
     ray_averages: dict[str, float]
     wave_minus_ray: dict[str, float]
+    spectra: pd.DataFrame
     advised_model: str = "wave"
     advice: str = "The film is thinner than the coherence length of its emission."
     numerical_error: float = 2e-7
     error_by_share: dict[str, float] = field(default_factory=lambda: dict.fromkeys(ENDS, 2e-7))
+    pattern: pd.DataFrame | None = None
+    depth: pd.DataFrame | None = None
+    depth_averages: dict[str, dict[str, float]] = field(default_factory=dict)
+    pump: None = None
+    radiation: None = None
+    measured: None = None
+    moved_by_tail: dict[str, float] = field(default_factory=dict)
     warnings: tuple[str, ...] = ("k stops falling at 720 nm",)
     assumptions: tuple[str, ...] = ("births are uniform over depth",)
 
@@ -82,8 +90,17 @@ def made_result(shares: dict[str, float] | None = None, *, ray: bool = False, st
         index=small,
         averages=ray_averages if ray else averages,
         ray_averages=ray_averages,
+        spectra=_spectra(table),
         wave_minus_ray={} if ray else {name: averages[name] - ray_averages[name] for name in averages},
     )
+
+
+def _spectra(table: pd.DataFrame) -> pd.DataFrame:
+    births = table["births_per_nm"]
+    lights = {"above": table["free_above"], "below": table["free_below"], "held": table["substrate"] + table["cover"]}
+    lights["guided"] = table["waveguided"]
+    columns = {f"{name}_per_nm": births * share for name, share in lights.items()}
+    return table[["wavelength_nm", "energy_eV", "births_per_nm"]].assign(**columns)
 
 
 def _outcomes(stack: Stack, ends: dict[str, float]) -> pd.DataFrame:

@@ -98,6 +98,19 @@ def pattern_table(
     return pd.DataFrame(columns)
 
 
+def aperture_deg(stack: Stack) -> float | None:
+    """Return the half angle of the stack's aperture in the outer medium [deg]; None without one, or if it takes all.
+
+    The outer index is taken at the middle of the light.
+    """
+    if stack.collection is None:
+        return None
+    outer = stack.above if stack.collection.side == "above" else stack.below
+    middle = 0.5 * (stack.light.wavelengths_nm[[0]] + stack.light.wavelengths_nm[[-1]])
+    sine = stack.collection.na / float(outer.material.index(middle).real[0])
+    return None if sine >= 1.0 else float(np.rad2deg(np.arcsin(sine)))
+
+
 def pump_in(stack: Stack) -> Pumped | None:
     """Return what the stack makes of its pump; None when births do not follow one."""
     depth = stack.emission.depth

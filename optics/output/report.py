@@ -40,6 +40,7 @@ def report(result: "Result", *, folder: Path | None = None, uncertainty: Mapping
         _listed("Assumed", result.assumptions),
         _listed("Warnings", result.warnings),
         "\n".join(_table(result, uncertainty or {})),
+        *(("\n".join(lines)) for lines in (tuple(part(result)) for part in (_depth, _outside, _radiation)) if lines),
         "\n".join(_trust(result)),
         f"Files: {folder}" if folder else "",
     ]
@@ -77,12 +78,60 @@ def _table(result: "Result", uncertainty: Mapping[str, float]) -> Iterator[str]:
     columns: list[tuple[str, Mapping[str, float], str]] = [("ray", result.ray_averages, "")]
     if result.table is not None:
         columns = [("wave", result.averages, ""), *columns, ("wave - ray", result.wave_minus_ray, "+")]
+    if result.moved_by_tail:
+        columns.append(("by the tail", result.moved_by_tail, "+"))
     if uncertainty:
         columns.append(("inputs +-", uncertainty, ""))
     yield "Share of photons born" + "".join(f"{name:>12}" for name, _, _ in columns)
     for share, name in ROWS:
         cells = [_number(values.get(share), decimals, sign) for _, values, sign in columns]
         yield f"{name:<21}" + "".join(f"{cell:>12}" for cell in cells)
+
+
+def _depth(result: "Result") -> Iterator[str]:
+    """Yield the pump and what the three readings of it give; they bracket a pulsed measurement."""
+    pump = result.pump
+    if pump is None:
+        return
+    decimals = decimals_for(result.numerical_error)
+    yield f"Pump absorbed in the film: {pump.absorbed:.4f} of what comes in"
+    mean, peak = pump.carriers_per_cm3, pump.peak_carriers_per_cm3
+    yield f"Carriers for 1 uJ/cm2: {mean:.3g} 1/cm3 in the mean, {peak:.3g} 1/cm3 at most"
+    yield "Births over depth     " + "".join(f"{name:>12}" for name in result.depth_averages)
+    for share, name in (*ROWS, ("rate_factor", "rate factor")):
+        cells = [_number(averages[share], decimals, "") for averages in result.depth_averages.values()]
+        yield f"{name:<22}" + "".join(f"{cell:>12}" for cell in cells)
+
+
+def _outside(result: "Result") -> Iterator[str]:
+    """Yield what an aperture gathers, and how a measurement fits."""
+    collection = result.stack.collection
+    if collection is not None:
+        decimals = decimals_for(result.numerical_error)
+        models = (
+            {"ray": result.ray_averages}
+            if result.table is None
+            else {"wave": result.averages, "ray": result.ray_averages}
+        )
+        shares = ", ".join(f"{name} {_number(each['collected'], decimals, '')}" for name, each in models.items())
+        yield f"Collected {collection.side} with NA {collection.na:g}: {shares} of the photons born"
+    measured = result.measured
+    if measured is not None:
+        yield f"Measured light laid over {measured.curve}: {measured.misfit:.1%} of its peak apart (root mean square)"
+
+
+def _radiation(result: "Result") -> Iterator[str]:
+    """Yield what the absorption implies for the dark."""
+    said = result.radiation
+    if said is None:
+        return
+    yield (
+        f"Emission in the dark at {said.temperature_K:g} K: {said.equilibrium_rate:.4g} 1/(cm3 s) in the bulk, "
+        f"{said.equilibrium_rate_in_stack:.4g} in this stack (times the rate factor)"
+    )
+    if said.coefficient is not None:
+        bulk, stack = said.coefficient, said.coefficient_in_stack
+        yield f"Radiative coefficient: {bulk:.4g} cm3/s in the bulk, {stack:.4g} cm3/s in this stack"
 
 
 def _number(value: float | None, decimals: int, sign: str) -> str:

@@ -1,5 +1,6 @@
 """The files of one solved stack."""
 
+from dataclasses import asdict
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -14,7 +15,7 @@ from optics.output.tables import write_json, write_table
 if TYPE_CHECKING:
     from optics.fate.solve import Result
 
-FIGURES = ("births.svg", "births.png")
+SUFFIXES = (".svg", ".png")
 SUMMARY = "summary.json"
 
 
@@ -55,10 +56,11 @@ def write_result(
         for name, table in tables.items():
             write_table(table, part / name)
         write_json(summary(result), part / SUMMARY)
-        _draw(result, part)
-        taken = (*tables, *FIGURES, SUMMARY, RECORD, STACK_FILE)
+        figures = _draw(result, part)
+        taken = (*tables, *figures, SUMMARY, RECORD, STACK_FILE)
         copy_inputs(result.stack, part, stack_file=source, taken=taken)
-        write_record(part, command="solve", inputs=inputs_of(result.stack, source), settings=settings_of(result.stack))
+        inputs = inputs_of(result.stack, source) | {"measured": _measured(result)}
+        write_record(part, command="solve", inputs=inputs, settings=settings_of(result.stack))
     return Path(folder)
 
 
@@ -74,6 +76,11 @@ def summary(result: "Result") -> dict[str, Any]:
         "numerical_error": result.numerical_error,
         "numerical_error_by_share": result.error_by_share,
         "largest_closure": largest_closure(result),
+        "depth_averages": result.depth_averages,
+        "pump": _pump(result),
+        "radiation": None if result.radiation is None else asdict(result.radiation),
+        "measured": _measured(result),
+        "moved_by_tail": result.moved_by_tail,
         "warnings": result.warnings,
         "assumptions": result.assumptions,
     }
@@ -85,21 +92,54 @@ def largest_closure(result: "Result") -> float:
     return float(np.abs(table["closure"]).max())
 
 
+def _pump(result: "Result") -> dict[str, Any] | None:
+    if result.pump is None:
+        return None
+    names = ("absorbed", "carriers_per_cm3", "peak_carriers_per_cm3")
+    return {"fluence_uJ_per_cm2": 1.0} | {name: getattr(result.pump, name) for name in names}
+
+
+def _measured(result: "Result") -> dict[str, Any] | None:
+    measured = result.measured
+    if measured is None:
+        return None
+    return {name: getattr(measured, name) for name in ("curve", "misfit", "path", "sha256")}
+
+
 def _tables(result: "Result") -> dict[str, Any]:
     wave = {} if result.table is None else {"outcomes.csv": result.table}
-    return wave | {
-        "outcomes_ray.csv": result.ray_table,
-        "where.csv": result.where,
-        "reflection.csv": result.reflection,
-        "index.csv": result.index,
-    }
+    asked = {"pattern.csv": result.pattern, "depth.csv": result.depth}
+    given = {name: table for name, table in asked.items() if table is not None}
+    return (
+        wave
+        | given
+        | {
+            "spectra.csv": result.spectra,
+            "outcomes_ray.csv": result.ray_table,
+            "where.csv": result.where,
+            "reflection.csv": result.reflection,
+            "index.csv": result.index,
+        }
+    )
 
 
-def _draw(result: "Result", folder: Path) -> None:
+def _draw(result: "Result", folder: Path) -> tuple[str, ...]:
+    """Draw everything; return the names of the files."""
+    from optics.fate.outside import aperture_deg
+    from optics.output.lightfigures import pattern_figure, spectra_figure
     from optics.output.figures import births_figure, save
 
     decimals = min(3, decimals_for(result.numerical_error))
     tables = (result.table, result.ray_table)
-    figure = births_figure(*tables, averages=result.averages, decimals=decimals, title=result.stack.title)
-    for name in FIGURES:
+    title = result.stack.title
+    figures = {"births": births_figure(*tables, averages=result.averages, decimals=decimals, title=title)}
+    if len(result.spectra) > 1:
+        figures["spectra"] = spectra_figure(result.spectra, measured=result.measured, title=title)
+    if result.pattern is not None and result.stack.collection is not None:
+        side, na = result.stack.collection.side, result.stack.collection.na
+        angle = aperture_deg(result.stack)
+        figures["pattern"] = pattern_figure(result.pattern, side=side, aperture_deg=angle, na=na, title=title)
+    names = {f"{name}{suffix}": figure for name, figure in figures.items() for suffix in SUFFIXES}
+    for name, figure in names.items():
         save(figure, folder / name)
+    return tuple(names)
