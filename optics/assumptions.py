@@ -1,6 +1,7 @@
 """What a stack takes for granted, in words: every default and convention that shapes the answer."""
 
 import math
+from collections.abc import Sequence
 
 from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.media.dispersion import Constant, Joined, Tabulated
@@ -8,6 +9,7 @@ from optics.media.tail import Grafted, UrbachTail, repair
 from optics.radiation import FromAbsorption
 from optics.spectrum import spectrum_notes
 from optics.stack import ISOTROPIC, PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
+from optics.tolerances import Alternatives, stated
 
 
 def assumptions(stack: Stack) -> tuple[str, ...]:
@@ -18,6 +20,7 @@ def assumptions(stack: Stack) -> tuple[str, ...]:
     said += spectrum_notes(stack.light.spectrum, stack.light.wavelengths_nm)
     said += _indices(stack)
     said += [sentence for layer in stack.layers for sentence in _tail(layer)]
+    said += [*_uneven(stack.film), *stated(stack.tolerances), *_alternatives(stack.alternatives)]
     return tuple(said)
 
 
@@ -42,6 +45,23 @@ def _length(nm: float) -> str:
     if nm >= 1e6:
         return f"{nm / 1e6:.6g} mm"
     return f"{nm / 1e3:.6g} um" if nm >= 1e4 else f"{nm:.6g} nm"
+
+
+def _uneven(film: Layer) -> list[str]:
+    if not film.varies_nm:
+        return []
+    return [
+        f"{layer_place(film.name)}: uneven within the spot, {film.varies_nm:g} nm (one standard deviation, normal): the "
+        "answer is the mean over it, births weighted with the rate factor alone"
+    ]
+
+
+def _alternatives(alternatives: Sequence[Alternatives]) -> list[str]:
+    return [
+        f"{each.key}: the first of {1 + len(each.materials)} tables is used; the others are "
+        f"{', '.join(material.name for material in each.materials)}"
+        for each in alternatives
+    ]
 
 
 def _births(stack: Stack) -> str:

@@ -4,7 +4,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, fields
 from typing import Any, Literal, TypeAlias
 
-from optics.faults import Faults, found, quoted
+from optics.faults import Faults, as_float, found, is_number, quoted
 from optics.media.material import Material
 from optics.media.tail import Tail, repair
 from optics.units import nm_from_mm, nm_from_um
@@ -18,6 +18,7 @@ THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
 THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
 LONGEST_NAME = 60  # characters that columns and figures have room for
 OUTER_NAMES = ("above", "below")
+MOST_UNEVEN = 1.0 / 6.0  # standard deviation over thickness: six of them stay inside the film
 
 Phases: TypeAlias = Literal["keep", "ignore"]
 CountsAs: TypeAlias = Literal["free", "held"]
@@ -41,6 +42,8 @@ class Layer:
         ``"keep"``: a thin layer, with interference; ``"ignore"``: a plate, without; None: by thickness.
     roughness_nm
         Root mean square height of its upper face [nm], well below a wavelength: a graded mixture of both sides.
+    varies_nm
+        For the emitting layer: standard deviation of its thickness within the spot [nm]; answers are the mean over it.
     tail
         What to put in the place of an absorption floor of its material; None leaves the material as it is.
     """
@@ -51,6 +54,7 @@ class Layer:
     emits: bool = False
     phases: Phases | None = None
     roughness_nm: float = 0.0
+    varies_nm: float = 0.0
     tail: Tail | None = None
 
     def __post_init__(self) -> None:
@@ -60,6 +64,7 @@ class Layer:
         object.__setattr__(self, "thickness_nm", float(self.thickness_nm))
         object.__setattr__(self, "emits", bool(self.emits))
         object.__setattr__(self, "roughness_nm", float(self.roughness_nm))
+        object.__setattr__(self, "varies_nm", float(self.varies_nm))
 
     @property
     def plate(self) -> bool:
@@ -123,6 +128,7 @@ def check_layer(
     emits: object,
     phases: object,
     roughness_nm: object = 0.0,
+    varies_nm: object = 0.0,
     tail: object = None,
 ) -> None:
     """Note what is wrong with the parts of one layer."""
@@ -135,8 +141,19 @@ def check_layer(
     if phases is not None:
         faults.choice("phases", phases, ("keep", "ignore"))
     faults.number("roughness_nm", roughness_nm, unit="nm", at_least=0, example=5)
+    _check_varies(faults, varies_nm, thickness_nm, emits)
     if tail is not None and not isinstance(tail, Tail):
         faults.add("tail", f"found {found(tail)}, expected a Tail")
     elif tail is not None and isinstance(material, Material):
         with faults.collecting("tail"):
             repair(material, tail)
+
+
+def _check_varies(faults: Faults, varies_nm: object, thickness_nm: object, emits: object) -> None:
+    """Note an unevenness of a layer that does not emit, or one that reaches through the layer."""
+    varies = faults.number("varies_nm", varies_nm, unit="nm", at_least=0, example=20)
+    if varies > 0 and not emits:
+        faults.add("varies_nm", "found in a layer that does not emit, expected in the emitting one alone")
+    elif is_number(thickness_nm) and varies > MOST_UNEVEN * as_float(thickness_nm) > 0:
+        most = MOST_UNEVEN * as_float(thickness_nm)
+        faults.add("varies_nm", f"found {varies:g}, expected at most a sixth of the thickness, {most:.6g}")

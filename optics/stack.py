@@ -30,6 +30,7 @@ from optics.media.domain import RANGE_SLACK
 from optics.media.material import Material
 from optics.media.tailspec import tail_from
 from optics.sample import NearField, Sample, check_reach
+from optics.tolerances import Alternatives, Tolerance, check_doubts, check_uneven
 
 ISOTROPIC = 2.0 / 3.0  # share of in-plane dipoles when all directions are alike
 LONGEST_TITLE = 200  # characters that figures have room for
@@ -85,6 +86,9 @@ class Stack:
         The aperture that gathers light outside; None: not asked for.
     sample
         Edges, scattering and what film absorption is worth; None: not asked for.
+    tolerances, alternatives
+        How well numbers are known, and other tables for its materials; the answer for the stack itself does not
+        depend on them.
 
     Raises
     ------
@@ -101,9 +105,12 @@ class Stack:
     emission: Emission = field(default_factory=Emission)
     collection: Collection | None = None
     sample: Sample | None = None
+    tolerances: tuple[Tolerance, ...] = ()
+    alternatives: tuple[Alternatives, ...] = ()
 
     def __post_init__(self) -> None:
-        object.__setattr__(self, "layers", tuple(self.layers))
+        for name in ("layers", "tolerances", "alternatives"):
+            object.__setattr__(self, name, tuple(getattr(self, name)))
         faults = Faults()
         for key, kind in (("above", Outer), ("below", Outer), ("light", Light), ("emission", Emission)):
             faults.kind(key, getattr(self, key), kind)
@@ -126,6 +133,8 @@ class Stack:
         check_apertures(faults, media=self.media, light=self.light, collection=self.collection)
         if self.sample is not None:
             check_reach(faults, sample=self.sample, wavelengths_nm=self.light.wavelengths_nm)
+        check_doubts(faults, layers=self.layers, tolerances=self.tolerances, alternatives=self.alternatives)
+        check_uneven(faults, film=self.film, light=self.light, collection=self.collection)
         check_roughness(faults, layers=self.layers, shortest_nm=self.light.range_nm[0])
         faults.settle()
 
@@ -161,7 +170,7 @@ class Stack:
         if name not in names:
             raise InputError(f"{layer_place(name)}: not in this stack, which has {', '.join(names)}")
         faults = Faults(layer_place(name))
-        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "tail"))
+        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "varies_nm", "tail"))
         given = [key for key in THICKNESS_TO_NM if key in changes]
         if len(given) > 1:
             faults.add(given[0], f"found {' and '.join(given)}, expected one of them")
@@ -182,7 +191,12 @@ class Stack:
         """Return the stack with the layer of this name emitting instead."""
         if name not in [layer.name for layer in self.layers]:
             raise InputError(f"{layer_place(name)}: not in this stack")
-        return replace(self, layers=tuple(replace(layer, emits=layer.name == name) for layer in self.layers))
+        emitting = {layer.name: layer.name == name for layer in self.layers}
+        layers = (
+            replace(layer, emits=emitting[layer.name], varies_nm=layer.varies_nm if emitting[layer.name] else 0.0)
+            for layer in self.layers
+        )
+        return replace(self, layers=tuple(layers))
 
     def with_above(self, material: MaterialLike | Outer, counts_as: CountsAs | None = None) -> "Stack":
         """Return the stack under another outer medium (an `Outer`, or anything `find` takes)."""

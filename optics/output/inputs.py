@@ -54,6 +54,7 @@ def copy_inputs(stack: Stack, folder: Path, *, stack_file: Path | None, taken: C
 def tables_of(stack: Stack) -> dict[str, str]:
     """Return path and hash of every table that a stack was made from; cards of bundled materials are none."""
     materials = [material for _, material, _ in stack.media]
+    materials += [material for each in stack.alternatives for material in each.materials]
     tables = {each.path: each.sha256 for each in materials if each.path and not is_bundled(each)}
     tails = [layer.tail.measured for layer in stack.layers if layer.tail and layer.tail.measured]
     tables |= {each.path: each.sha256 for each in tails if each.path}
@@ -182,6 +183,9 @@ def _moved(stack: Stack, tables: dict[str, Path]) -> Stack:
         ),
         light=replace(stack.light, spectrum=spectrum),
         emission=emission,
+        alternatives=tuple(
+            replace(each, materials=tuple(moved(material) for material in each.materials)) for each in stack.alternatives
+        ),
     )
 
 

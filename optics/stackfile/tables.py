@@ -38,6 +38,7 @@ from optics.stack import (
 )
 from optics.stackfile.births import spectrum_from
 from optics.stackfile.depths import collection_from, depth_from
+from optics.stackfile.doubts import INDEX_KEYS, Doubts
 from optics.stackfile.keys import Keys
 from optics.stackfile.samples import near_field_from, sample_from
 
@@ -45,8 +46,8 @@ STACK_KEYS = ("title", "above", "below", "light", "emission", "collection", "sam
 EVEN_KEYS = ("from_nm", "to_nm", "step_nm")
 LIGHT_KEYS = (*EVEN_KEYS, "wavelengths_nm", "spectrum")
 EMISSION_KEYS = ("horizontal_share", "depth", "near_field")
-LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "tail")
-OUTER_KEYS = ("material", "counts_as")
+LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "tail", "varies_nm", *INDEX_KEYS)
+OUTER_KEYS = ("material", "counts_as", *INDEX_KEYS)
 SPEC_KEYS = ("n", "k", "published")
 GRID = "a number in nm (from_nm, to_nm and step_nm, or a list wavelengths_nm)"
 MATERIAL = 'a bundled name, for example "air", a table, "film.csv", or { n = 1.5, k = 0 }'
@@ -81,7 +82,8 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
     """
     faults = Faults()
     home = Path(folder).resolve()
-    keys = Keys(tables, faults, STACK_KEYS)
+    doubts = Doubts(faults, home)
+    keys = Keys(doubts.taken_from(tables), faults, STACK_KEYS)
     title = keys.get("title", "")
     check_title(faults, title)
     above, below = (_outer(keys, side, home) for side in OUTER_NAMES)
@@ -104,6 +106,8 @@ def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack
         emission=emission,
         collection=collection,
         sample=sample,
+        tolerances=tuple(doubts.tolerances),
+        alternatives=tuple(doubts.alternatives),
     )
 
 
@@ -164,6 +168,7 @@ def _layer(faults: Faults, table: Any, number: int, home: Path) -> _Row:
         "emits": keys.get("emits", "emits" in keys.meant),
         "phases": keys.get("phases"),
         "roughness_nm": keys.get("roughness_nm", 0.0),
+        "varies_nm": keys.get("varies_nm", 0.0),
         "tail": _tail(own, keys.get("tail"), home),
     }
     check_layer(own, **parts)

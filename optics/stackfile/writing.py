@@ -1,7 +1,7 @@
 """Writing a stack as TOML that reads back as the same stack."""
 
 import os
-from collections.abc import Iterator
+from collections.abc import Container, Iterator
 from dataclasses import fields
 from pathlib import Path
 from typing import Any
@@ -19,6 +19,7 @@ from optics.radiation import FromAbsorption
 from optics.sample import PerWavelength, Sample
 from optics.spectrum import Gaussian, Spectrum
 from optics.stack import PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
+from optics.stackfile.doubts import put_back
 from optics.units import nm_from_mm
 
 
@@ -58,19 +59,30 @@ def write_stack(stack: Stack, *, folder: str | Path | None = None) -> str:
         document["emission"]["near_field"] = _inline({key: _number(value) for key, value in parts.items()})
     if stack.sample is not None:
         document["sample"] = {key: _inline(value) for key, value in _sample(stack.sample).items()}
+    known = {each.key for each in stack.tolerances}
     layers = tomlkit.aot()
     for layer in stack.layers:
         table = tomlkit.table()
-        for key, value in _layer(layer, home).items():
+        for key, value in _layer(layer, home, known).items():
             table[key] = _inline(value)
         layers.append(table)
     document["layer"] = layers
+    put_back(
+        document,
+        stack.tolerances,
+        stack.alternatives,
+        layers={layer.name: place for place, layer in enumerate(stack.layers)},
+        spec=lambda material: _spec(material, "material", home),
+        inline=_inline,
+    )
     return tomlkit.dumps(document)
 
 
 def _inline(value: Any) -> Any:
     import tomlkit
 
+    if isinstance(value, list):
+        return [_inline(part) for part in value]
     if not isinstance(value, dict):
         return value
     table = tomlkit.inline_table()
@@ -84,9 +96,11 @@ def _outer(outer: Outer, side: str, home: Path | None) -> Any:
     return spec if outer.counts_as is None else {"material": spec, "counts_as": outer.counts_as}
 
 
-def _layer(layer: Layer, home: Path | None) -> dict[str, Any]:
+def _layer(layer: Layer, home: Path | None, known: Container[str]) -> dict[str, Any]:
     table = {"name": layer.name, "material": _spec(layer.material, layer_place(layer.name), home)}
-    table |= _thickness(layer.thickness_nm)
+    table |= _thickness(layer.thickness_nm, in_nm=bool(layer.varies_nm) or f"{layer.name}.thickness_nm" in known)
+    if layer.varies_nm:
+        table["thickness_nm"] = {"value": _number(layer.thickness_nm), "varies_nm": _number(layer.varies_nm)}
     if layer.emits:
         table["emits"] = True
     if layer.phases is not None:
@@ -135,10 +149,10 @@ def _sample(sample: Sample) -> dict[str, Any]:
     return table
 
 
-def _thickness(thickness_nm: float) -> dict[str, Any]:
+def _thickness(thickness_nm: float, *, in_nm: bool) -> dict[str, Any]:
     """Return the thickness in mm for what is thick, when that loses nothing."""
     in_mm = thickness_nm / 1e6
-    if thickness_nm > PLATE_LIMIT_NM and float(nm_from_mm(in_mm)) == thickness_nm:
+    if not in_nm and thickness_nm > PLATE_LIMIT_NM and float(nm_from_mm(in_mm)) == thickness_nm:
         return {"thickness_mm": _number(in_mm)}
     return {"thickness_nm": _number(thickness_nm)}
 
