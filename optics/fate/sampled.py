@@ -83,7 +83,7 @@ def sampled(stack: Stack, *, settings: Settings | None = None) -> Sampled:
     InputError
         As :func:`optics.fate.solve.solve`.
     """
-    from optics.fate.solve import ledger_of
+    from optics.fate.account import ledger_of
 
     settings = settings or Settings()
     drawing = drawing_of(stack)

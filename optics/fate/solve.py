@@ -8,9 +8,10 @@ from typing import TYPE_CHECKING, NamedTuple
 import numpy as np
 
 from optics.assumptions import assumptions
-from optics.fate import advice, births, outside, ray, wave_account
+from optics.fate import advice, births, outside
+from optics.fate.account import ledger_of
 from optics.fate.drawing import bracket, drawing_of
-from optics.fate.ledger import SHARES, ZONES, Ledger, draw_up, merge
+from optics.fate.ledger import SHARES, ZONES, Ledger
 from optics.fate.overlay import Measured
 from optics.fate.pump import Pumped
 from optics.fate.reflection import Reflection, at_normal
@@ -147,15 +148,6 @@ def solve(stack: Stack, *, settings: Settings | None = None) -> Result:
     drawing = drawing_of(stack)
     models = ("ray",) if stack.film.plate else ("wave", "ray")
     return _result(stack, drawing, {model: ledger_of(drawing, settings, model=model) for model in models}, settings)
-
-
-def ledger_of(drawing: Drawing, settings: Settings, *, model: str) -> Ledger:
-    """Return the ledger of one model, ``"wave"`` or ``"ray"``."""
-    integrate = {"wave": wave_account.account, "ray": ray.account}[model]
-    parts = list(scenes(drawing))
-    account = merge([(chosen, integrate(scene, settings)) for chosen, scene in parts], len(drawing.wavelength_nm))
-    walls = [medium for medium, plate in enumerate(drawing.plate) if plate and medium != drawing.film]
-    return draw_up(account, film=drawing.film, walls=walls)
 
 
 def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings: Settings) -> Result:

@@ -1,7 +1,7 @@
 """Wave optics: dipoles in the thin group, from the power density to the integrals that the ledger needs."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -33,11 +33,12 @@ class Settings:
     """How finely to integrate.
 
     ``tolerance`` bounds the error of a piece of a path, ``finer`` multiplies the order of every rule. The defaults
-    keep closure within 1e-7 and shares within 1e-6.
+    keep closure within 1e-7 and shares within 1e-6. ``threads`` share the wavelengths.
     """
 
     tolerance: float = 1e-8
     finer: int = 1
+    threads: int = 2
 
     @property
     def loose(self) -> float:
@@ -47,7 +48,7 @@ class Settings:
     @property
     def strict(self) -> "Settings":
         """Settings a step finer, for what the defaults have missed."""
-        return Settings(0.1 * self.tolerance, 2 * self.finer)
+        return replace(self, tolerance=0.1 * self.tolerance, finer=2 * self.finer)
 
 
 def power_on_path(view: View, points: Points, *, flights: bool) -> Complex:
@@ -262,7 +263,7 @@ def open_zone(scene: Scene, settings: Settings) -> Integral:
 def bound_zone(scene: Scene, settings: Settings) -> Integral:
     """Integrate what each medium takes of the light that cannot leave the group, on the real axis."""
     ends = scene.open_end, scene.far_end
-    loose = Settings(settings.loose, settings.finer)
+    loose = replace(settings, tolerance=settings.loose)
     return _on_axis(bound_values, 1 + scene.media, scene, ends, loose, guides_of(scene))
 
 
