@@ -75,7 +75,8 @@ class SampleEnds:
 
     def missing(self, sample: str) -> Real:
         """Return what is in no place: light held in plates, where that counts as lost; rounding elsewhere."""
-        return 1.0 - np.sum([self.total(sample, place) for place in PLACES], axis=0)
+        out: Real = 1.0 - np.sum([self.total(sample, place) for place in PLACES], axis=0)
+        return out
 
 
 def follow(drawing: Drawing, ledger: Ledger, sample: Sample, settings: Settings, *, model: str) -> SampleEnds:
@@ -103,7 +104,7 @@ def follow(drawing: Drawing, ledger: Ledger, sample: Sample, settings: Settings,
         parts.append((chosen, held.follow(scene, settings, reach[chosen], model=model, scattered=sample.scatters)))
         along.append((chosen, guided.follow_rays(scene, settings, reach[chosen], scatter.at(chosen))))
     whole = held.merge(parts, len(k0))
-    ends = _guided_ends(ledger, along, len(k0), np.isfinite(sample.to_edge_mm))
+    ends = _guided_ends(ledger, drawing.film, along, len(k0), np.isfinite(sample.to_edge_mm))
     return _joined(drawing, ledger, whole, ends, sample, model)
 
 
@@ -118,14 +119,17 @@ def _scatter(sample: Sample, wavelength_nm: Real, k0: Real) -> Scatter:
 
 
 def _guided_ends(
-    ledger: Ledger, parts: list[tuple[Index, tuple[Guided, Guided]]], count: int, edged: bool
+    ledger: Ledger, film: int, parts: list[tuple[Index, tuple[Guided, Guided]]], count: int, edged: bool
 ) -> dict[str, tuple[Real, Real]]:
     """Return guided light's ends by sample, (place, wavelength), and what is scattered, shares of births.
 
-    What absorbers keep is parted between film and other layers as the ledger parts it.
+    What absorbers keep is parted between film and other layers as the ledger parts it. The film's part is what it takes
+    of all bound light, less the first flights that the ledger counts as reabsorbed already: below zero where an edge
+    or scattering cuts those short.
     """
-    waveguided, elsewhere = ledger.shares["waveguided"], ledger.shares["guided_elsewhere"]
-    to_others = np.where(waveguided != 0.0, elsewhere / np.where(waveguided != 0.0, waveguided, 1.0), 0.0)
+    elsewhere = ledger.shares["guided_elsewhere"]
+    flown = ledger.shares["reabsorbed"] - ledger.taken[0, film]
+    bound = ledger.shares["waveguided"] + flown
     out = {}
     for sample, variant in zip(SAMPLES, (0, 0, 1), strict=True):
         shares = np.zeros((4, count))
@@ -134,11 +138,11 @@ def _guided_ends(
             shares[:, chosen] = [ends.kept, ends.edge, ends.scattered, ends.unfinished]
         shares = _without_rays(shares, ledger, with_edge=variant == 1 and edged)
         places = np.zeros((len(PLACES), count))
-        places[PLACES.index("to_film")] = shares[0] * (waveguided - elsewhere)
-        places[PLACES.index("to_layers")] = shares[0] * waveguided * to_others
-        places[PLACES.index("at_edge")] = shares[1] * waveguided
-        places[PLACES.index("unfinished")] = shares[3] * waveguided
-        out[sample] = places, shares[2] * waveguided
+        places[PLACES.index("to_film")] = shares[0] * (bound - elsewhere) - flown
+        places[PLACES.index("to_layers")] = shares[0] * elsewhere
+        places[PLACES.index("at_edge")] = shares[1] * bound
+        places[PLACES.index("unfinished")] = shares[3] * bound
+        out[sample] = places, shares[2] * bound
     return out
 
 

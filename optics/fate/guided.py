@@ -1,7 +1,8 @@
 """Guided light until the sample's edge: it decays by its own absorption and scattering along its way.
 
 Along the film by the rays of the bound zone: each direction loses per round trip what the film and both halves take,
-over the distance that the round trip carries.
+over the distance that the round trip carries. Light counts from its birth: first flights along the film are cut short
+by an edge, and scattered, like all other ways.
 """
 
 from dataclasses import dataclass
@@ -17,7 +18,6 @@ from optics.waves.paths import Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scattering import guided_loss
 from optics.waves.scene import Scene
-from optics.waves.source import first_flight
 
 ORDER = 32
 TOLERANCE = 1e-8
@@ -112,7 +112,7 @@ def _values(waves: Waves, reach: Real, scatter: Scatter) -> Real:
     view = waves.view
     cosine = waves.kz(scene.film).real / view.film.real_index
     slant = 2.0 * view.loss[scene.film] * view.phase[scene.film] / cosine
-    survive = ray.launch(view, waves.q, cosine) * (1.0 - first_flight(slant, scene.moments))
+    launched = ray.launch(view, waves.q, cosine)
     along = 2.0 * view.phase[scene.film] * waves.q / (cosine * view.film.real_index)
     halves = [
         _loss(meet(waves, scene.film, layers, side.touching))
@@ -123,7 +123,7 @@ def _values(waves: Waves, reach: Real, scatter: Scatter) -> Real:
     out = []
     for ways in (np.array(np.inf), reach):
         ends = decays(absorbed, scattered, ways)
-        out += [(survive * part).sum(axis=0) for part in (ends.kept, ends.edge, ends.scattered, ends.unfinished)]
+        out += [(launched * part).sum(axis=0) for part in (ends.kept, ends.edge, ends.scattered, ends.unfinished)]
     return np.array(out)
 
 
