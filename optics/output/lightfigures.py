@@ -7,7 +7,7 @@ import numpy as np
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 
-from optics.output.figures import DPI, NOTE_CHARACTERS, PLOT, SIZE_INCH, SMALL, TITLE_CHARACTERS
+from optics.output.figures import DPI, NOTE_CHARACTERS, SIZE_INCH, SMALL, TITLE_CHARACTERS
 from optics.output.palette import DARK
 
 if TYPE_CHECKING:
@@ -16,6 +16,7 @@ if TYPE_CHECKING:
 
     from optics.fate.overlay import Measured
 
+ORDER = ("births", "collected", "below", "above")  # from the bottom: dashes show what they cover
 # Dark to light in the order of the way out, apart in grey print and for every kind of colour vision.
 CURVES = {
     "births": ("born inside", "#3b1a4f", 2.2),
@@ -25,6 +26,7 @@ CURVES = {
 }
 DASHED: dict[str, Any] = {"below": (0, (6, 2)), "above": (0, (2, 1.4)), "births": "-", "collected": "-"}
 GREY = "#777777"
+FRAME = (0.09, 0.12, 0.70, 0.74)  # left, bottom, width, height: names have their column on the right
 GAP = 0.055  # between names beside the plot, in heights of the plot
 EDGE = 1.03  # where they begin, in widths of the plot
 
@@ -49,7 +51,7 @@ def spectra_figure(spectra: "DataFrame", *, measured: "Measured | None" = None, 
         if column not in spectra or not spectra[column].any():
             continue
         y = spectra[column].to_numpy(dtype=float)
-        axes.plot(x, y / y.max(), color=colour, linewidth=width, linestyle=DASHED[key])
+        axes.plot(x, y / y.max(), color=colour, linewidth=width, linestyle=DASHED[key], zorder=ORDER.index(key) + 2)
         names.append((f"{name},\n{x[np.argmax(y)]:g} nm", colour))
     if measured is not None:
         top = spectra[f"{measured.curve}_per_nm"].max()
@@ -111,10 +113,10 @@ def pattern_figure(
 def _blank(title: str, note: str) -> "tuple[Figure, Axes]":
     figure = Figure(figsize=SIZE_INCH, dpi=DPI)
     FigureCanvasAgg(figure)
-    axes = figure.add_axes(PLOT)
+    axes = figure.add_axes(FRAME)
     axes.spines[["top", "right"]].set_visible(False)
-    figure.text(PLOT[0], 0.965, shorten(title, TITLE_CHARACTERS), fontsize=11, va="center", parse_math=False)
-    figure.text(PLOT[0], 0.93, fill(note, NOTE_CHARACTERS), fontsize=SMALL, va="top", color="#444444")
+    figure.text(FRAME[0], 0.965, shorten(title, TITLE_CHARACTERS), fontsize=11, va="center", parse_math=False)
+    figure.text(FRAME[0], 0.93, fill(note, NOTE_CHARACTERS), fontsize=SMALL, va="top", color="#444444")
     return figure, axes
 
 

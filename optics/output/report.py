@@ -126,8 +126,8 @@ def _radiation(result: "Result") -> Iterator[str]:
     if said is None:
         return
     yield (
-        f"Emission in the dark at {said.temperature_K:g} K: {said.equilibrium_rate:.4g} 1/(cm3 s) in the bulk, "
-        f"{said.equilibrium_rate_in_stack:.4g} in this stack (times the rate factor)"
+        f"Equilibrium emission rate at {said.temperature_K:g} K: {said.equilibrium_rate:.4g} 1/(cm3 s) in the bulk, "
+        f"{said.equilibrium_rate_in_stack:.4g} in this stack (times the mean rate factor)"
     )
     if said.coefficient is not None:
         bulk, stack = said.coefficient, said.coefficient_in_stack

@@ -126,8 +126,8 @@ def _tables(result: "Result") -> dict[str, Any]:
 def _draw(result: "Result", folder: Path) -> tuple[str, ...]:
     """Draw everything; return the names of the files."""
     from optics.fate.outside import aperture_deg
-    from optics.output.lightfigures import pattern_figure, spectra_figure
     from optics.output.figures import births_figure, save
+    from optics.output.lightfigures import pattern_figure, spectra_figure
 
     decimals = min(3, decimals_for(result.numerical_error))
     tables = (result.table, result.ray_table)
