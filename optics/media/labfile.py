@@ -16,9 +16,10 @@ from numpy.typing import NDArray
 
 from optics.errors import InputError
 from optics.media.dialects import DECIMALS, SEPARATORS, Grid, grid_of_cells, grid_of_text, text_of
-from optics.media.dispersion import Medium, Tabulated
+from optics.media.dispersion import Tabulated
 from optics.media.headings import AXIS, AXIS_UNITS, Heading, heading, unit_named
 from optics.media.labvalues import Values, index_from, ordered, value_faults
+from optics.media.material import Material
 from optics.media.sheet import read_bytes, shortened, shown
 from optics.units import energy_eV
 
@@ -59,7 +60,7 @@ class Hints:
     separator: str = ""
     decimal: str = ""
     sheet: str = ""
-    n_from: Medium | None = None
+    n_from: Material | None = None
     conjugate: bool = False
     zero_negative: bool = False
 

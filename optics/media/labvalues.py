@@ -183,7 +183,7 @@ def index_from(
     for _, other, name in candidates[1:]:
         _refuse_disagreement(k, other, how, name, place)
     if how not in ("n and k", "k"):
-        converted.append(f"k from {how}")
+        converted.append(f"{'n and k' if 'eps1' in how else 'k'} from {how}")
     if n is None and wanted == "nk":
         n, said = _n_elsewhere(hints, wavelength)
         converted.append(said)
@@ -231,7 +231,7 @@ def _n_elsewhere(hints: "Hints", wavelength: Real) -> tuple[Real, str]:
     n = np.full(wavelength.shape, np.nan)
     n[known] = hints.n_from.index(wavelength[known]).real
     left = "" if known.all() else f"; {int((~known).sum())} rows outside its range left out"
-    return n, f"n taken from elsewhere (--n-from){left}"
+    return n, f"n taken from {hints.n_from.name}{left}"
 
 
 def _refuse_large(k: Real, place: str) -> None:
