@@ -6,7 +6,10 @@ Import what you need from here. A name is loaded when it is first used, so that 
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from optics.collection import Collection
+    from optics.depth import Decay, DepthTable, Pump, Sheet
     from optics.errors import InputError
+    from optics.fate.overlay import lay_over
     from optics.fate.solve import Result, solve
     from optics.light import Light
     from optics.media.cabinet import bundled_names
@@ -14,6 +17,7 @@ if TYPE_CHECKING:
     from optics.media.labfile import read_table
     from optics.media.material import Material
     from optics.output.result import write_result
+    from optics.radiation import FromAbsorption, equilibrium_rate
     from optics.spectrum import Gaussian, SpectrumTable
     from optics.stack import Emission, Layer, Outer, Stack
     from optics.stackfile.reading import parse_stack, read_stack
@@ -22,18 +26,26 @@ if TYPE_CHECKING:
     __version__: str
 
 __all__ = [
+    "Collection",
+    "Decay",
+    "DepthTable",
     "Emission",
+    "FromAbsorption",
     "Gaussian",
     "InputError",
     "Layer",
     "Light",
     "Material",
     "Outer",
+    "Pump",
     "Result",
+    "Sheet",
     "SpectrumTable",
     "Stack",
     "bundled_names",
+    "equilibrium_rate",
     "find_material",
+    "lay_over",
     "parse_stack",
     "read_stack",
     "read_table",
@@ -43,18 +55,26 @@ __all__ = [
 ]
 
 _HOMES = {
+    "Collection": "optics.collection:Collection",
+    "Decay": "optics.depth:Decay",
+    "DepthTable": "optics.depth:DepthTable",
     "Emission": "optics.stack:Emission",
+    "FromAbsorption": "optics.radiation:FromAbsorption",
     "Gaussian": "optics.spectrum:Gaussian",
     "InputError": "optics.errors:InputError",
     "Layer": "optics.stack:Layer",
     "Light": "optics.light:Light",
     "Material": "optics.media.material:Material",
     "Outer": "optics.stack:Outer",
+    "Pump": "optics.depth:Pump",
     "Result": "optics.fate.solve:Result",
+    "Sheet": "optics.depth:Sheet",
     "SpectrumTable": "optics.spectrum:SpectrumTable",
     "Stack": "optics.stack:Stack",
     "bundled_names": "optics.media.cabinet:bundled_names",
+    "equilibrium_rate": "optics.radiation:equilibrium_rate",
     "find_material": "optics.media.cabinet:find",
+    "lay_over": "optics.fate.overlay:lay_over",
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
     "read_table": "optics.media.labfile:read_table",

@@ -51,15 +51,23 @@ def check_spectrum(faults: Faults, *, light: Light, film: Material) -> None:
 def check_apertures(faults: Faults, *, media: Media, light: Light, collection: Collection | None) -> None:
     """Note apertures that the outer medium on their side cannot fill."""
     spectrum = light.spectrum
-    asked: list[tuple[str, str, float]] = [] if collection is None else [(COLLECTION, collection.side, collection.na)]
+    asked: list[tuple[str, str, str, float]] = []
+    if collection is not None:
+        asked.append((COLLECTION, "side", collection.side, collection.na))
     if not isinstance(spectrum, FromAbsorption) and spectrum.seen != "inside" and spectrum.na is not None:
-        asked.append((SPECTRUM, spectrum.seen, spectrum.na))
-    for place, side, na in asked:
+        asked.append((SPECTRUM, "seen", spectrum.seen, spectrum.na))
+    for place, key, side, na in asked:
         material = media[0 if side == "above" else -1][1]
         try:
-            largest = float(material.index(light.wavelengths_nm).real.max())
+            index = material.index(light.wavelengths_nm)
         except InputError:
             continue  # said where materials are looked at
+        if (index * index).real.max() < 0.0:
+            faults.add(
+                place, f'{key}: found "{side}", where {material.name} lets no light out; expected the other side'
+            )
+            continue
+        largest = float(index.real.max())
         if na > largest + NA_SLACK:
             said = f"at most {largest:.4g}, the index of {material.name}"
             faults.add(place, f"na: found {na:.12g}, expected {said}; with an immersion medium, {side} = that medium")
