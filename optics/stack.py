@@ -134,7 +134,9 @@ class Stack:
         if self.sample is not None:
             check_reach(faults, sample=self.sample, wavelengths_nm=self.light.wavelengths_nm)
         check_doubts(faults, layers=self.layers, tolerances=self.tolerances, alternatives=self.alternatives)
-        check_uneven(faults, film=self.film, light=self.light, collection=self.collection)
+        check_uneven(
+            faults, film=self.film, light=self.light, depth=self.emission.depth, collection=self.collection
+        )
         check_roughness(faults, layers=self.layers, shortest_nm=self.light.range_nm[0])
         faults.settle()
 

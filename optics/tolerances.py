@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from typing import Literal, TypeAlias
 
 from optics.collection import Collection
+from optics.depth import Depth
 from optics.faults import Faults, found
 from optics.layer import OUTER_NAMES, Layer
 from optics.light import Light
@@ -96,12 +97,15 @@ def check_doubts(
             faults.add(each.key, f"sd: found {each.sd:g}, expected {most}: a draw could fall below zero")
 
 
-def check_uneven(faults: Faults, *, film: Layer, light: Light, collection: Collection | None) -> None:
-    """Note an uneven film together with an aperture: what that gathers is known for one thickness alone."""
+def check_uneven(faults: Faults, *, film: Layer, light: Light, depth: Depth, collection: Collection | None) -> None:
+    """Note an uneven film together with an aperture or births over depth: those are known for one thickness alone."""
+    place = f'layer "{film.name}"'
+    if film.varies_nm and depth != "uniform":
+        faults.add(place, 'varies_nm: found together with births over depth, expected depth = "uniform"')
     seen_through = getattr(light.spectrum, "na", None)
     if film.varies_nm and (collection is not None or seen_through is not None):
         faults.add(
-            f'layer "{film.name}"',
+            place,
             "varies_nm: found together with an aperture (collection or na), expected one of the two alone",
         )
 

@@ -8,6 +8,7 @@ import numpy as np
 from optics.fate import ray, wave_account
 from optics.fate.ledger import Account, Ledger, draw_up, merge
 from optics.fate.scenes import Drawing, scenes
+from optics.fate.uneven import doubted, evened, mean_of
 from optics.fate.wave import Settings
 from optics.waves.paths import Index
 
@@ -18,7 +19,13 @@ MODELS = {"wave": wave_account.account, "ray": ray.account}
 
 
 def ledger_of(drawing: Drawing, settings: Settings, *, model: str) -> Ledger:
-    """Return the ledger of one model, ``"wave"`` or ``"ray"``."""
+    """Return the ledger of one model, ``"wave"`` or ``"ray"``; of an uneven film, the mean over its thicknesses."""
+    if drawing.uneven:
+        fine, coarse = (
+            mean_of([(weight, ledger_of(part, settings, model=model)) for weight, part in evened(drawing, rule)])
+            for rule in drawing.uneven
+        )
+        return doubted(fine, coarse)
     count = len(drawing.wavelength_nm)
     threads = max(1, min(settings.threads, count // FEWEST_A_THREAD))
     # every n-th wavelength: hard ones come in rows and are shared out alike

@@ -7,8 +7,9 @@ import numpy as np
 from optics.depth import Decay, DepthTable, Pump, Sheet, in_film
 from optics.fate.pump import Pumped, pumped
 from optics.fate.scenes import Drawing
+from optics.fate.uneven import Rule, rules
 from optics.stack import Stack
-from optics.waves.coherent import Real
+from optics.waves.coherent import Complex, Real
 from optics.waves.depth import SheetProfile, decay, pieces
 from optics.waves.source import Moments, uniform
 
@@ -21,15 +22,26 @@ def drawn(stack: Stack, wavelength_nm: Real) -> Drawing:
     InputError
         Where a material's table does not reach.
     """
+    index = np.array([material.index(wavelength_nm) for _, material, _ in stack.media])
+    film = stack.film_index + 1
     return Drawing(
         wavelength_nm=wavelength_nm,
-        index=np.array([material.index(wavelength_nm) for _, material, _ in stack.media]),
+        index=index,
         thickness_nm=np.array([0.0, *(layer.thickness_nm for layer in stack.layers), 0.0]),
         plate=(True, *(layer.plate for layer in stack.layers), True),
-        film=stack.film_index + 1,
+        film=film,
         free=(stack.above.free, stack.below.free),
         in_plane=stack.emission.horizontal_share,
+        uneven=_uneven(stack, index[film], wavelength_nm),
     )
+
+
+def _uneven(stack: Stack, index: Complex, wavelength_nm: Real) -> tuple[Rule, ...]:
+    film = stack.film
+    if not film.varies_nm:
+        return ()
+    largest, shortest = float(index.real.max()), float(wavelength_nm.min())
+    return rules(thickness_nm=film.thickness_nm, sd_nm=film.varies_nm, index=largest, wavelength_nm=shortest)
 
 
 def drawing_of(stack: Stack) -> Drawing:

@@ -20,7 +20,8 @@ class Drawing:
     """A stack as plain arrays, outer media included; lengths in nm.
 
     ``index`` is (medium, wavelength), ``thickness_nm`` and ``plate`` run over the media (outer ones: 0 and True),
-    ``free`` tells of either outer medium whether light in it counts as free.
+    ``free`` tells of either outer medium whether light in it counts as free. ``uneven`` holds two rules,
+    weights and film thicknesses over which answers are averaged, the second a coarser one; empty for an even film.
     """
 
     wavelength_nm: Real
@@ -31,6 +32,7 @@ class Drawing:
     free: tuple[bool, bool]
     in_plane: float
     moments: Moments = uniform
+    uneven: tuple[tuple[tuple[float, float], ...], ...] = ()
 
 
 def swallows(drawing: Drawing, medium: int) -> Mask:
