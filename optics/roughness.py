@@ -2,9 +2,10 @@
 
 from dataclasses import replace
 
+from optics.layer import Layer
 from optics.media.material import Material
 from optics.media.mixture import Bruggeman
-from optics.stack import HALF_WIDTH_PER_RMS, Layer, Stack
+from optics.stack import HALF_WIDTH_PER_RMS, Stack
 
 SLICES = 6
 """Steps of the grading; twice as many move no share of a film by 1e-4 at the largest roughness allowed."""
@@ -27,21 +28,20 @@ def graded(stack: Stack) -> Stack:
         layers += _slices(above, layer, half)
         rest = layer.thickness_nm - half - HALF_WIDTH_PER_RMS * next_rough
         layers.append(replace(layer, thickness_nm=rest, roughness_nm=0.0, phases="ignore" if layer.plate else "keep"))
-        above = layer.material
+        above = layer.repaired
     return replace(stack, layers=tuple(layers))
 
 
 def _slices(above: Material, layer: Layer, half_nm: float) -> list[Layer]:
-    """Return the slices of a layer's upper face, from above; the film's other face may be an outer medium's."""
+    """Return the slices of a layer's upper face, from above."""
     if not half_nm:
         return []
-    # where the layer tops the stack the outer medium gives its half too
     thickness = 2.0 * half_nm / SLICES
     out = []
     for number in range(SLICES):
         share = (number + 0.5) / SLICES
         name = f"{layer.name} rough {number + 1}"
-        medium = Bruggeman(layer.material.medium, above.medium, share)
+        medium = Bruggeman(layer.repaired.medium, above.medium, share)
         source = f"{share:.0%} {layer.material.name} in {above.name}, Bruggeman"
         material = Material(name=f"{layer.material.name} in {above.name} {share:.2f}", medium=medium, source=source)
         out.append(Layer(name=name, material=material, thickness_nm=thickness, phases="keep"))

@@ -79,7 +79,7 @@ class Sample:
 
     def __post_init__(self) -> None:
         faults = Faults(PLACE)
-        taken = {
+        taken: dict[str, Amount | None] = {
             "to_edge_mm": faults.number("to_edge_mm", self.to_edge_mm, unit="mm", at_least=0, example=TO_EDGE_MM),
             "guided_scatter_per_cm": _amount(
                 faults, "guided_scatter_per_cm", self.guided_scatter_per_cm, unit="1/cm", example=2

@@ -10,6 +10,7 @@ from optics.fate.held import Held
 from optics.fate.ledger import Ledger
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.trips import Ends
+from optics.fate.uneven import evened
 from optics.fate.wave import Settings
 from optics.sample import Sample, at_wavelengths
 from optics.waves.coherent import Real
@@ -100,12 +101,15 @@ def follow(drawing: Drawing, ledger: Ledger, sample: Sample, settings: Settings,
     scatter = _scatter(sample, drawing.wavelength_nm, k0)
     parts: list[tuple[Index, Held]] = []
     along: list[tuple[Index, tuple[Guided, Guided]]] = []
-    for chosen, scene in scenes(drawing):
-        parts.append((chosen, held.follow(scene, settings, reach[chosen], model=model, scattered=sample.scatters)))
-        along.append((chosen, guided.follow_rays(scene, settings, reach[chosen], scatter.at(chosen))))
-    whole = held.merge(parts, len(k0))
-    ends = _guided_ends(ledger, drawing.film, along, len(k0), np.isfinite(sample.to_edge_mm))
-    return _joined(drawing, ledger, whole, ends, sample, model)
+    for weight, even in evened(drawing, drawing.uneven[0]) if drawing.uneven else [(1.0, drawing)]:
+        for chosen, scene in scenes(even):
+            ends = held.follow(scene, settings, reach[chosen], model=model, scattered=sample.scatters)
+            parts.append((chosen, held.scaled(ends, weight)))
+            along.append(
+                (chosen, guided.scaled(guided.follow_rays(scene, settings, reach[chosen], scatter.at(chosen)), weight))
+            )
+    whole = held.added(parts, len(k0))
+    return _joined(drawing, ledger, whole, _guided_ends(ledger, drawing.film, along, len(k0)), sample, model)
 
 
 def _scatter(sample: Sample, wavelength_nm: Real, k0: Real) -> Scatter:
@@ -119,7 +123,7 @@ def _scatter(sample: Sample, wavelength_nm: Real, k0: Real) -> Scatter:
 
 
 def _guided_ends(
-    ledger: Ledger, film: int, parts: list[tuple[Index, tuple[Guided, Guided]]], count: int, edged: bool
+    ledger: Ledger, film: int, parts: list[tuple[Index, tuple[Guided, Guided]]], count: int
 ) -> dict[str, tuple[Real, Real]]:
     """Return guided light's ends by sample, (place, wavelength), and what is scattered, shares of births.
 
@@ -135,8 +139,8 @@ def _guided_ends(
         shares = np.zeros((4, count))
         for chosen, both in parts:
             ends = both[variant]
-            shares[:, chosen] = [ends.kept, ends.edge, ends.scattered, ends.unfinished]
-        shares = _without_rays(shares, ledger, with_edge=variant == 1 and edged)
+            shares[:, chosen] += [ends.kept, ends.edge, ends.scattered, ends.unfinished]
+        shares = _without_rays(shares, ledger, with_edge=variant == 1)
         places = np.zeros((len(PLACES), count))
         places[PLACES.index("to_film")] = shares[0] * (bound - elsewhere) - flown
         places[PLACES.index("to_layers")] = shares[0] * elsewhere

@@ -107,6 +107,14 @@ def follow_rays(scene: Scene, settings: Settings, reach: Real, scatter: Scatter)
     return Guided(*shares[0]), Guided(*shares[1])
 
 
+def scaled(both: tuple[Guided, Guided], weight: float) -> tuple[Guided, Guided]:
+    """Return the ends times a weight."""
+    first, second = (
+        Guided(weight * g.kept, weight * g.edge, weight * g.scattered, weight * g.unfinished) for g in both
+    )
+    return first, second
+
+
 def _values(waves: Waves, reach: Real, scatter: Scatter) -> Real:
     scene = waves.view.scene
     view = waves.view

@@ -16,7 +16,7 @@ from optics.fate.trips import MOST_COUNTED, Ends, Leaving, Network, endless, to_
 from optics.fate.wave import Settings
 from optics.waves import curves
 from optics.waves.coherent import Real
-from optics.waves.paths import Integral, Rows, integrate
+from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene, Side
 
@@ -208,14 +208,21 @@ def _way(scene: Scene, side: Side, q: Real, low: Real, high: Real) -> Real:
     return total
 
 
-def merge(parts: list[tuple[np.ndarray, Held]], wavelengths: int) -> Held:
-    """Join results of some wavelengths each into one of all."""
+ARRAYS = ("wide", "edged", "scattered_first", "scattered_wide", "scattered_edged", "straight", "error")
+
+
+def scaled(ends: Held, weight: float) -> Held:
+    """Return the ends times a weight."""
+    return Held(ends=ends.ends, **{name: weight * getattr(ends, name) for name in ARRAYS})
+
+
+def added(parts: list[tuple[Index, Held]], wavelengths: int) -> Held:
+    """Add up results of some wavelengths each, the light of one wavelength in one part or several."""
     first = parts[0][1]
     fields = {}
-    for name in ("wide", "edged", "scattered_first", "scattered_wide", "scattered_edged", "straight", "error"):
-        like = getattr(first, name)
-        whole = np.zeros((*like.shape[:-1], wavelengths))
+    for name in ARRAYS:
+        whole = np.zeros((*getattr(first, name).shape[:-1], wavelengths))
         for chosen, part in parts:
-            whole[..., chosen] = getattr(part, name)
+            whole[..., chosen] += getattr(part, name)
         fields[name] = whole
     return Held(ends=first.ends, **fields)

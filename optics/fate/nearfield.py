@@ -41,8 +41,10 @@ class StandOff:
 
 @dataclass(frozen=True)
 class Transfer:
-    """Near-field power in units of the bulk's, (wavelength,): up to the cut-off, what a cut-off a quarter further
-    adds, and the estimated numerical error.
+    """Near-field power in units of the bulk's, (wavelength,).
+
+    Up to the cut-off, what a cut-off a quarter further adds, and the estimated numerical error. Where the film absorbs,
+    the power may be negative: its images change what it takes of its own near field.
     """
 
     power: Real

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.fate.account import ledger_of
 from optics.fate.births import born_inside
 from optics.fate.drawing import drawing_of
 from optics.fate.ends import FIRST, KINDS, PLACES, SampleEnds, follow
@@ -15,6 +16,7 @@ from optics.fate.readings import READINGS, Reading, readings
 from optics.fate.scenes import Drawing
 from optics.fate.scrambled import Scrambled, scrambled
 from optics.fate.wave import Settings
+from optics.roughness import graded
 from optics.sample import Sample, at_wavelengths
 from optics.spectrum import weights
 from optics.stack import Stack
@@ -83,10 +85,8 @@ def sampled(stack: Stack, *, settings: Settings | None = None) -> Sampled:
     InputError
         As :func:`optics.fate.solve.solve`.
     """
-    from optics.fate.account import ledger_of
-
     settings = settings or Settings()
-    drawing = drawing_of(stack)
+    drawing = drawing_of(graded(stack))
     models = ("ray",) if stack.film.plate else ("wave", "ray")
     return sample_of(stack, drawing, {model: ledger_of(drawing, settings, model=model) for model in models}, settings)
 

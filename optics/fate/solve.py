@@ -8,16 +8,18 @@ from typing import TYPE_CHECKING, NamedTuple
 import numpy as np
 
 from optics.assumptions import assumptions
-from optics.fate import advice, births, outside
+from optics.fate import advice, births, nearfield, outside
 from optics.fate.account import ledger_of
 from optics.fate.drawing import bracket, drawing_of
 from optics.fate.ledger import SHARES, ZONES, Ledger
 from optics.fate.overlay import Measured
 from optics.fate.pump import Pumped
 from optics.fate.reflection import Reflection, at_normal
+from optics.fate.sampled import Sampled, sample_of
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
 from optics.media.checks import floor_warning
+from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
 from optics.units import energy_eV
@@ -91,6 +93,8 @@ class Result:
         empty without any.
     warnings, assumptions
         Sentences.
+    sample
+        Where held and guided light ends and the readings, for a stack with a sample; else None.
     """
 
     stack: Stack
@@ -116,6 +120,7 @@ class Result:
     moved_by_tail: dict[str, float] = field(default_factory=dict)
     warnings: tuple[str, ...] = field(default=())
     assumptions: tuple[str, ...] = field(default=())
+    sample: Sampled | None = None
 
     @property
     def numerical_error(self) -> float:
@@ -145,9 +150,11 @@ def solve(stack: Stack, *, settings: Settings | None = None) -> Result:
         none gets out.
     """
     settings = settings or Settings()
-    drawing = drawing_of(stack)
+    smooth = graded(stack)
+    drawing = drawing_of(smooth)
     models = ("ray",) if stack.film.plate else ("wave", "ray")
-    return _result(stack, drawing, {model: ledger_of(drawing, settings, model=model) for model in models}, settings)
+    ledgers = {model: ledger_of(drawing, settings, model=model) for model in models}
+    return replace(_result(smooth, drawing, ledgers, settings), stack=stack, assumptions=assumptions(stack))
 
 
 def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings: Settings) -> Result:
@@ -182,7 +189,7 @@ def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings
         radiation=births.radiation_of(stack, drawing, averages["rate_factor"]),
         moved_by_tail=_moved_by_tail(stack, drawing, born, averages, lead, settings),
         warnings=_warnings(stack, drawing, names, born, ledger, advised=model, lead=lead),
-        assumptions=assumptions(stack),
+        sample=sample_of(stack, drawing, ledgers, settings) if stack.sample else None,
     )
 
 
@@ -244,10 +251,13 @@ def _booked(stack: Stack, drawing: Drawing, spectrum: Real, ledger: Ledger, mode
     collected = outside.collected_share(stack, drawing, ledger, model=model, settings=settings)
     if collected is not None:
         shares["collected"] = columns["collected"] = collected
+    if stack.emission.near_field is not None and model == "wave":
+        beyond = nearfield.transfer(drawing, stack.emission.near_field, settings).power
+        shares["near_field"] = columns["near_field"] = beyond / ledger.rate_factor
     averages = {name: float(weight @ share) for name, share in shares.items()}
     averages["rate_factor"] = float((spectrum * steps) @ ledger.rate_factor)
     errors = {name: float(weight @ error) for name, error in ledger.errors.items()}
-    order = [name for name in (*COLUMNS, "collected") if name in columns]
+    order = [name for name in (*COLUMNS, "collected", "near_field") if name in columns]
     return _Booked(pd.DataFrame({name: columns[name] for name in order}), averages, errors)
 
 
