@@ -53,6 +53,7 @@ thickness_mm = 1.1
 FILM = "wavelength_nm,n,k\n600,2.5,0.1\n700,2.45,0.05\n800,2.4,0.02\n900,2.35,0.0\n"
 BIRTHS = "wavelength_nm,births_per_nm\n650,0\n768,1\n900,0\n"
 GAUSSIAN = 'kind = "gaussian"\nseen = "inside"\npeak_nm = 768\nfwhm_nm = 40'
+ABSORPTION = 'kind = "from-absorption"'
 GRID = "from_nm = 700\nto_nm = 860\nstep_nm = 1"
 
 
@@ -109,6 +110,17 @@ def births(content: bytes | str) -> Callable[[Path], Path]:
     def write(folder: Path) -> Path:
         path = edited((GAUSSIAN, 'kind = "table"\nfile = "births.csv"'))(folder)
         (folder / "births.csv").write_bytes(content if isinstance(content, bytes) else content.encode())
+        return path
+
+    return write
+
+
+def profile(content: str) -> Callable[[Path], Path]:
+    """Return a writer of a stack file whose births over depth are a table of this content."""
+
+    def write(folder: Path) -> Path:
+        path = edited(('"uniform"', '{ table = "profile.csv" }'))(folder)
+        (folder / "profile.csv").write_text(content, encoding="utf-8")
         return path
 
     return write
@@ -303,6 +315,20 @@ CASES = [
     # emission
     Case("share above one", edited(("0.6667", "1.2")), ("emission: horizontal_share: found 1.2", "from 0 up to 1")),
     Case("share in percent as text", edited(("0.6667", '"67 %"')), ("emission: horizontal_share", '"67 %" (text)')),
+    Case("absorption on a floor", edited((GAUSSIAN, ABSORPTION)), ("light.spectrum", "a floor or a cut, not a tail")),
+    Case(
+        "absorption seen above",
+        edited((GAUSSIAN, f'{ABSORPTION}\nseen = "above"')),
+        ("light.spectrum: seen", 'expected "inside"'),
+    ),
+    Case("absorption at no kelvin", edited((GAUSSIAN, f"{ABSORPTION}\ntemperature_K = 0")), ("temperature_K", "in K")),
+    Case("splitting below zero", edited((GAUSSIAN, f"{ABSORPTION}\nsplitting_eV = -1")), ("splitting_eV", "from 0")),
+    Case("no carriers at all", edited((GAUSSIAN, f"{ABSORPTION}\nn_i_per_cm3 = 0")), ("n_i_per_cm3", "above 0")),
+    Case("gain", edited((GAUSSIAN, f"{ABSORPTION}\nsplitting_eV = 1.6")), ("splitting_eV: found 1.6", "gain")),
+    Case("profile without a depth", profile("x,births\n0,1\n"), ("emission: depth: table", '"x" is not known')),
+    Case("profile with two depths", profile("depth_nm,depth_um,births\n0,0,1\n"), ("depth_nm and depth_um",)),
+    Case("profile without a column", profile("depth_nm\n0\n"), ("found depth_nm, expected", "births")),
+    Case("profile with a depth twice", profile("depth_nm,births\n0,1\n0,2\n480,1\n"), ("found 0 after 0",)),
     Case(
         "decay from nowhere", edited(('"uniform"', "{ decay_nm = 120 }")), ("emission: depth: side: missing", '"above"')
     ),
