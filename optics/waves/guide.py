@@ -93,8 +93,8 @@ def mismatch(pile: Guide, q: Complex, roots: tuple[Complex, Complex]) -> tuple[C
             other_slope * cosine + other * cosine_slope - field_slope * back - field * back_slope,
         )
         field, other = field * cosine + other * weight * sine, other * cosine - field * back
-        size = np.abs(field) + np.abs(other)
-        field, other, field_slope, other_slope = (v / size for v in (field, other, field_slope, other_slope))
+        keep = 1.0 / (np.abs(field) + np.abs(other))
+        field, other, field_slope, other_slope = field * keep, other * keep, field_slope * keep, other_slope * keep
     wanted = 1j * bottom / pile.weight[-1]
     wanted_slope = -0.5j / (bottom * pile.weight[-1])
     return field * wanted - other, field_slope * wanted + field * wanted_slope - other_slope
@@ -103,11 +103,11 @@ def mismatch(pile: Guide, q: Complex, roots: tuple[Complex, Complex]) -> tuple[C
 def _turn(eps: Complex, phase: Real, q: Complex) -> tuple[Complex, Complex, Complex, Complex]:
     """Return cos(kz d), sin(kz d)/kz, the slope of the latter in q^2, all times exp(i kz d), and kz^2."""
     squared = eps - q * q
-    kz = 1j * np.sqrt(-squared)
-    kz = np.where(kz == 0.0, 1e-150, kz)
+    kz: Complex = 1j * np.sqrt(-squared)
+    kz[kz == 0.0] = 1e-150
     turn_less_one = np.expm1(2j * kz * phase)
-    cosine = 1.0 + 0.5 * turn_less_one
-    sine = turn_less_one / (2j * kz)
+    cosine: Complex = 1.0 + 0.5 * turn_less_one
+    sine: Complex = turn_less_one / (2j * kz)
     angle = squared * phase * phase
     near = np.abs(angle) < SMALL_TURN**2
     plain = (sine - phase * cosine) / (2.0 * np.where(near, 1.0, squared))

@@ -1,0 +1,316 @@
+"""Transport in the plane: how far from its birth a photon is taken back by the film."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from optics.assumptions import assumptions
+from optics.fate import births
+from optics.fate.account import ledger_of
+from optics.fate.drawing import drawing_of
+from optics.fate.ledger import Ledger
+from optics.fate.scenes import Drawing, scenes
+from optics.fate.wave import Settings
+from optics.spectrum import weights
+from optics.stack import Stack
+from optics.transport import compact, flights, rings
+from optics.transport.flights import Taken
+from optics.transport.guided import Guided, guided_modes, modes_table
+from optics.waves.coherent import Real
+from optics.waves.scene import Index
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+KERNEL_COLUMNS = (
+    "radius_from_um",
+    "radius_to_um",
+    "share",
+    "share_rays",
+    "share_guided",
+    "share_held",
+    "cumulative",
+    "per_um_radius",
+    "per_cm2",
+    "line_per_cm",
+    "line_cumulative",
+)
+"""Columns of ``InPlane.kernel``: a row a ring (or, for the two on a line, a cell on either side of the birth)."""
+
+RAY_WARNING = "the film carries intensities alone (a plate): no guided modes, all of its kernel is from rays"
+
+REACHES_UM = (1.0, 3.0, 10.0, 30.0, 100.0, 300.0, 1000.0, 10000.0)
+
+CONVENTIONS = (
+    "in the plane: the sample is endless; light held in plates and taken back later stands apart (share_held)",
+    "in the plane: rays give the shape of what the open zone takes, with births spread evenly; the ledger its amount",
+    "in the plane: bound light decays mode by mode, exp(-2 Im(q) r); what no mode carries follows bound rays",
+)
+
+
+@dataclass(frozen=True)
+class InPlane:
+    """How far in the plane photons travel before the film takes them back.
+
+    Attributes
+    ----------
+    stack
+        The stack.
+    model
+        ``"wave"`` or ``"ray"`` (a film that is a plate).
+    kernel
+        Averaged over the births, columns ``KERNEL_COLUMNS``: per ring from ``radius_from_um`` to ``radius_to_um`` [um]
+        the share of all births that the film takes back there (``share`` = ``share_rays`` + ``share_guided``, which
+        add to the ledger's film share), ``share_held`` (what it takes of light held in plates on later round trips; the
+        ledger books that as substrate or cover), ``cumulative`` share within ``radius_to_um``, ``per_um_radius`` (per
+        unit radius), ``per_cm2`` (per area) and, projected on a line, ``line_per_cm`` (mean over the cells
+        from_um < |x| < to_um) and ``line_cumulative`` (|x| < to_um).
+    by_wavelength
+        wavelength_nm, radius_from_um, radius_to_um, share, cumulative: shares of the births at that wavelength.
+    modes
+        As `optics.transport.guided.modes_table`; empty for rays.
+    guided_spectrum
+        wavelength_nm, births_per_nm and ``guided_per_nm_<d>_um``: guided light left after 0, 1, 3, 10, 30, 100 um, per
+        nm and per photon born.
+    compact
+        A row a wavelength, see `optics.transport.compact.COLUMNS`.
+    exponentials
+        form ("radius" or "line"), weight, length_um, largest_miss: non-negative sums of exponentials fitted to the
+        kernel's cumulative share.
+    averages
+        Numbers over all births: shares, distances [um], what reaches given radii.
+    """
+
+    stack: Stack
+    model: str
+    kernel: pd.DataFrame
+    by_wavelength: pd.DataFrame
+    modes: pd.DataFrame
+    guided_spectrum: pd.DataFrame
+    compact: pd.DataFrame
+    exponentials: pd.DataFrame
+    averages: dict[str, float]
+    warnings: tuple[str, ...] = field(default=())
+    assumptions: tuple[str, ...] = field(default=())
+
+
+@dataclass(frozen=True)
+class Parts:
+    """What the film takes within each radius, per wavelength, as shares of its births."""
+
+    radius_nm: Real
+    rays: Taken
+    guided: Taken
+    held: Taken
+    modes: Guided | None
+    mode_shares: Real  # share of the births that the film takes from each mode, (mode,)
+    guided_shares: Real  # share of the births in each mode, whoever takes it, (mode,)
+    continuum: Real  # share of the births in the bound zone that no mode carries, (wavelength,)
+
+
+def inplane(stack: Stack, *, model: str | None = None, settings: Settings | None = None) -> InPlane:
+    """Work out how far in the plane photons travel before the film takes them back.
+
+    Parameters
+    ----------
+    stack
+        The stack.
+    model
+        ``"wave"`` or ``"ray"``; None: wave optics unless the film is a plate.
+    settings
+        How finely to integrate the ledger.
+
+    Raises
+    ------
+    InputError
+        As `optics.solve`.
+    """
+    settings = settings or Settings()
+    drawing = drawing_of(stack)
+    model = "ray" if stack.film.plate else (model or "wave")
+    ledger = ledger_of(drawing, settings, model=model)
+    born = births.born_inside(stack, drawing, ledger, model=model, settings=settings).per_nm
+    births_nm = born * ledger.rate_factor
+    births_nm = births_nm / (births_nm @ weights(drawing.wavelength_nm))
+    parts = taken_in_plane(stack, drawing, ledger, model=model)
+    return _tables(stack, drawing, ledger, parts, births_nm, model)
+
+
+def taken_in_plane(stack: Stack, drawing: Drawing, ledger: Ledger, *, model: str) -> Parts:
+    """Return the parts of the kernel, wavelength by wavelength, each with the amount that the ledger gives it."""
+    radius = rings.edges_nm()
+    count = len(drawing.wavelength_nm)
+    film = drawing.film
+    open_rays, bound_rays, held = (flights.nothing(len(radius), count) for _ in range(3))
+    for chosen, scene in scenes(drawing):
+        at = radius[:, None] * (2.0 * np.pi / drawing.wavelength_nm[chosen])
+        first = flights.flights(scene, at, bound=False)
+        _put(open_rays, chosen, first.plus(flights.returns(scene, at)))
+        _put(bound_rays, chosen, flights.flights(scene, at, bound=True))
+        _put(held, chosen, flights.held(scene, at, model=model))
+    held = Taken(held.within / ledger.rate_factor, held.total / ledger.rate_factor)
+    rays = open_rays.scaled(ledger.taken[0, film])
+    bound = ledger.taken[2, film]
+    if model == "ray":
+        rays = rays.plus(bound_rays.scaled(bound))
+        return Parts(
+            radius, rays, flights.nothing(len(radius), count), held, None, np.zeros(0), np.zeros(0), np.zeros(count)
+        )
+    return _with_modes(stack, drawing, ledger, rays, bound_rays, held)
+
+
+def _put(whole: Taken, chosen: Index, part: Taken) -> None:
+    whole.within[:, chosen] = part.within
+    whole.total[chosen] = part.total
+
+
+def _with_modes(stack: Stack, drawing: Drawing, ledger: Ledger, rays: Taken, bound_rays: Taken, held: Taken) -> Parts:
+    """Add the guided part: modes, and bound rays for what the film takes of bound light that is in none of them."""
+    radius = rings.edges_nm()
+    count = len(drawing.wavelength_nm)
+    guided = guided_modes(stack, drawing)
+    modes = guided.modes
+    share = modes.power / ledger.rate_factor[modes.wavelength]
+    film_share = share * modes.taken[drawing.film]
+    bound = ledger.taken[2, drawing.film]
+    found = modes.summed(film_share, count)
+    # modes that overlap hold a little more than there is: they are cut to it
+    fit = np.where(found > bound, bound / np.where(found > 0.0, found, 1.0), 1.0)
+    film_share = film_share * fit[modes.wavelength]
+    within = np.zeros((len(radius), count))
+    rate = 4.0 * np.pi * modes.index.imag / drawing.wavelength_nm[modes.wavelength]
+    reach = film_share * rings.within_of_exponential(rate, radius[:, None])
+    for i, row in enumerate(reach):
+        within[i] = modes.summed(row, count)
+    rest = bound_rays.scaled(np.maximum(bound - found, 0.0))
+    total = modes.summed(film_share, count)
+    # a bound zone without rays of its own (guided by neighbours alone) has modes alone: they take the rest too
+    lack = np.where(total > 0.0, np.maximum(bound - total - rest.total, 0.0) / np.where(total > 0.0, total, 1.0), 0.0)
+    grown = 1.0 + lack
+    taken = Taken(within * grown + rest.within, total * grown + rest.total)
+    zone = ledger.taken[2].sum(axis=0) + ledger.shares["guided_unfinished"]
+    walls = [medium for medium, plate in enumerate(drawing.plate) if plate and medium != drawing.film]
+    carried = modes.summed(share * (1.0 - modes.taken[walls].sum(axis=0)), count)
+    film_share = film_share * grown[modes.wavelength]
+    return Parts(radius, rays, taken, held, guided, film_share, share, zone - carried)
+
+
+def _tables(stack: Stack, drawing: Drawing, ledger: Ledger, parts: Parts, births_nm: Real, model: str) -> InPlane:
+    import pandas as pd
+
+    weight = births_nm * weights(drawing.wavelength_nm)
+    kernel = _kernel(drawing, parts, weight)
+    fits, line_fit = rings.fitted_exponentials, kernel["line_cumulative"].to_numpy()
+    radius_um = parts.radius_nm * 1e-3
+    terms = {"radius": fits(kernel["cumulative"].to_numpy(), radius_um), "line": fits(line_fit, radius_um)}
+    modes = pd.DataFrame()
+    if parts.modes is not None:
+        modes = modes_table(stack, parts.modes, wavelength_nm=drawing.wavelength_nm, rate_factor=ledger.rate_factor)
+    table = compact.table(drawing, parts)
+    spectrum = compact.guided_spectrum(drawing, parts, births_nm)
+    return InPlane(
+        stack=stack,
+        model=model,
+        kernel=kernel,
+        by_wavelength=_by_wavelength(drawing, parts),
+        modes=modes,
+        guided_spectrum=spectrum,
+        compact=table,
+        exponentials=_terms(terms),
+        averages=_averages(parts, kernel, weight) | compact.averages(drawing, parts, table, spectrum, weight),
+        warnings=(RAY_WARNING,) if model == "ray" else (),
+        assumptions=(*assumptions(stack), *CONVENTIONS, *compact.ASSUMPTIONS),
+    )
+
+
+def _kernel(drawing: Drawing, parts: Parts, weight: Real) -> pd.DataFrame:
+    import pandas as pd
+
+    radius = parts.radius_nm
+    low = np.concatenate([[0.0], radius[:-1]])
+    within = {name: getattr(parts, name).within @ weight for name in ("rays", "guided", "held")}
+    ring = {name: np.diff(inside, prepend=0.0) for name, inside in within.items()}
+    share = ring["rays"] + ring["guided"]
+    line = np.minimum(_on_line(drawing, parts, weight), within["rays"][-1] + within["guided"][-1])
+    width_cm, area_cm2 = (radius - low) * 1e-7, np.pi * (radius - low) * (radius + low) * 1e-14
+    columns = {
+        "radius_from_um": low * 1e-3,
+        "radius_to_um": radius * 1e-3,
+        "share": share,
+        "share_rays": ring["rays"],
+        "share_guided": ring["guided"],
+        "share_held": ring["held"],
+        "cumulative": np.cumsum(share),
+        "per_um_radius": share / (width_cm * 1e4),
+        "per_cm2": share / area_cm2,
+        "line_per_cm": np.diff(line, prepend=0.0) / (2.0 * width_cm),
+        "line_cumulative": line,
+    }
+    return pd.DataFrame({name: columns[name] for name in KERNEL_COLUMNS})
+
+
+def _on_line(drawing: Drawing, parts: Parts, weight: Real) -> Real:
+    """Return the share projected within each distance on a line: modes in closed form, the rest ring by ring."""
+    radius = parts.radius_nm
+    rest = (parts.rays.within + parts.guided.within) @ weight
+    if parts.modes is None or not len(parts.modes.modes):
+        return rings.on_line(rest, radius)
+    modes = parts.modes.modes
+    rate = 4.0 * np.pi * modes.index.imag / drawing.wavelength_nm[modes.wavelength]
+    share = parts.mode_shares * weight[modes.wavelength]
+    rest = rest - rings.within_of_exponential(rate, radius[:, None]) @ share
+    return rings.on_line(rest, radius) + rings.on_line_of_exponential(rate, radius[:, None]) @ share
+
+
+def _by_wavelength(drawing: Drawing, parts: Parts) -> pd.DataFrame:
+    import pandas as pd
+
+    radius, count = parts.radius_nm * 1e-3, len(drawing.wavelength_nm)
+    within = (parts.rays.within + parts.guided.within).T  # (wavelength, radius)
+    return pd.DataFrame(
+        {
+            "wavelength_nm": np.repeat(drawing.wavelength_nm, len(radius)),
+            "radius_from_um": np.tile(np.concatenate([[0.0], radius[:-1]]), count),
+            "radius_to_um": np.tile(radius, count),
+            "share": np.diff(within, axis=1, prepend=0.0).ravel(),
+            "cumulative": within.ravel(),
+        }
+    )
+
+
+def _terms(terms: dict[str, tuple[Real, Real, float]]) -> pd.DataFrame:
+    import pandas as pd
+
+    parts = [
+        pd.DataFrame({"form": form, "weight": weight, "length_um": length, "largest_miss": miss})
+        for form, (weight, length, miss) in terms.items()
+        if len(weight)
+    ]
+    if not parts:
+        return pd.DataFrame(columns=["form", "weight", "length_um", "largest_miss"])
+    return pd.concat(parts, ignore_index=True)
+
+
+def _averages(parts: Parts, kernel: pd.DataFrame, weight: Real) -> dict[str, float]:
+    """Return shares and distances over all births."""
+    radius_um = parts.radius_nm * 1e-3
+    inside = kernel["cumulative"].to_numpy()
+    total = float((parts.rays.total + parts.guided.total) @ weight)
+    said = {
+        "taken_back": total,
+        "taken_back_rays": float(parts.rays.total @ weight),
+        "taken_back_guided": float(parts.guided.total @ weight),
+        "taken_back_held": float(parts.held.total @ weight),
+        "beyond_grid": total - float(inside[-1]),
+        "bound_in_no_mode": float(parts.continuum @ weight),
+    }
+    rings_um = rings.ring_means(radius_um)
+    said["mean_um"] = float(kernel["share"].to_numpy() @ rings_um / inside[-1]) if inside[-1] > 0.0 else float("nan")
+    for name, share in (("median_um", 0.5), ("within_90_um", 0.9), ("within_99_um", 0.99)):
+        said[name] = rings.quantile(inside, radius_um, share)
+    for reach in REACHES_UM:
+        said[f"taken_back_beyond_{reach:g}_um"] = total - float(np.interp(np.log(reach), np.log(radius_um), inside))
+    return said
