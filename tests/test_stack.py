@@ -7,6 +7,7 @@ import numpy as np
 import pytest
 
 from optics.assumptions import assumptions
+from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.errors import InputError
 from optics.light import Light, even_wavelengths
 from optics.media import Constant, Material, Tabulated, find
@@ -229,3 +230,21 @@ def test_a_constant_medium_covers_any_light():
     wide = Light(wavelengths_nm=[10, 1e6], spectrum=Gaussian(peak_nm=1000, fwhm_nm=1e6))
     layer = Layer(name="film", material=Material(name="any", medium=Constant(2.0)), thickness_nm=1, emits=True)
     assert _stack(layer, light=wide).light.range_nm == (10.0, 1e6)
+
+
+@pytest.mark.parametrize(
+    ("depth", "said"),
+    [
+        (Pump(pump_nm=620, side="below"), 'births = "linear"), 620 nm from below at normal incidence'),
+        (Decay(decay_nm=80, side="above"), "births fall by a factor e every 80 nm from the film's face above"),
+        (Sheet(at_nm=20), "all births in a sheet 20 nm below the film's upper face"),
+        (DepthTable(depth_nm=[0, 1e4], births=[1, 2]), "births over depth as the table says"),
+    ],
+)
+def test_where_births_are_is_told(depth, said):
+    assert any(said in line for line in assumptions(_stack(FILM).with_emission(depth=depth)))
+
+
+def test_where_a_spectrum_was_seen_is_told():
+    seen = _stack(FILM).with_light(spectrum=Gaussian(peak_nm=768, fwhm_nm=40, seen="above", na=0.5))
+    assert any("light within na = 0.5 above the stack; divided by" in line for line in assumptions(seen))

@@ -33,6 +33,7 @@ def solve(stack: Path, output: Path | None, measured: Path | None, laid_over: st
     from optics.output.result import result_folder, write_result
     from optics.stackfile import read_stack
     from optics.stackfile.births import read_births
+    from optics.study.inputs import input_uncertainty
 
     loaded = read_stack(stack)
     folder = output or result_folder(stack)
@@ -41,5 +42,6 @@ def solve(stack: Path, output: Path | None, measured: Path | None, laid_over: st
     result = solve_stack(loaded)
     if seen is not None:
         result = lay_over(result, seen[0], seen[1], curve=laid_over, path=str(measured), sha256=seen[2])
-    write_result(result, folder, stack_file=stack, replace=replace)
-    click.echo(report(result, folder=folder))
+    inputs = input_uncertainty(result)
+    write_result(result, folder, stack_file=stack, replace=replace, inputs=inputs)
+    click.echo(report(result, folder=folder, uncertainty=inputs.by_share, known=inputs.lines()))
