@@ -113,4 +113,3 @@ def check_uneven(faults: Faults, *, film: Layer, light: Light, depth: Depth, col
 def stated(tolerances: Sequence[Tolerance]) -> list[str]:
     """Return a sentence for each tolerance."""
     return [f"{each.key} is known to {each.sd:g} (one standard deviation, {each.shape})" for each in tolerances]
-

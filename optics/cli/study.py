@@ -27,5 +27,7 @@ def go_on(folder: Path, basis: Mapping[str, Any], points: int, *, restart: bool)
             click.echo(f"{place}: {journal.done} of {points} points are kept; the same command goes on", err=True)
             raise
         except UnfinishedError as error:
-            click.echo(f"{place}: {error}; {journal.done} of {points} points are kept, the same command tries again", err=True)
+            click.echo(
+                f"{place}: {error}; {journal.done} of {points} points are kept, the same command tries again", err=True
+            )
             raise click.exceptions.Exit(1) from None

@@ -8,7 +8,9 @@ import click
 @click.command(short_help="Solve a stack at many thicknesses, materials or cases.")
 @click.argument("file", metavar="STACK", type=click.Path(path_type=Path))
 @click.option("--vary", multiple=True, metavar='"KEY = VALUES"', help="An axis: A to B step C, or values with commas.")
-@click.option("--cases", type=click.Path(path_type=Path), help="A CSV table instead: a row a case, columns are key paths.")
+@click.option(
+    "--cases", type=click.Path(path_type=Path), help="A CSV table instead: a row a case, columns are key paths."
+)
 @click.option("--spectra", is_flag=True, help="Keep every wavelength too.")
 @click.option("--best", multiple=True, metavar="max:SHARE", help="Report the best point with its neighbourhood.")
 @click.option("--workers", type=click.IntRange(1), default=1, show_default=True, help="Processes on this machine.")

@@ -31,10 +31,16 @@ def write_comparison(
         write_table(found.by_wavelength, part / "differences_by_wavelength.csv")
         write_table(found.why, part / "why.csv")
         write_json(_summary(found), part / SUMMARY)
-        for figure, name in ((ladder_figure(found.shares, title=title), "ladder"), (difference_figure(found.by_wavelength, title=title), "differences")):
+        for figure, name in (
+            (ladder_figure(found.shares, title=title), "ladder"),
+            (difference_figure(found.by_wavelength, title=title), "differences"),
+        ):
             for suffix in ("svg", "png"):
                 save(figure, part / f"{name}.{suffix}")
-        inputs = {name: inputs_of(r.stack, file) for name, r, file in zip(found.names, found.results, stack_files, strict=True)}
+        inputs = {
+            name: inputs_of(r.stack, file)
+            for name, r, file in zip(found.names, found.results, stack_files, strict=True)
+        }
         settings = {name: settings_of(r.stack) for name, r in zip(found.names, found.results, strict=True)}
         write_record(part, command="compare", inputs=inputs, settings=settings)
     return folder
@@ -48,7 +54,10 @@ def report(found: "Comparison", *, folder: Path | None = None) -> str:
     lines += ["", f"{'Share of photons born':<21}" + "".join(f"{name:>{width}}" for name in found.names)]
     for share, name in ROWS:
         lines.append(f"{name:<21}" + "".join(f"{found.shares.loc[share, each]:>{width}.4f}" for each in found.names))
-    lines += ["", f"{f'Against {first}, points':<21}" + " " * (width * 1) + "".join(f"{name:>{width}}" for name in others)]
+    lines += [
+        "",
+        f"{f'Against {first}, points':<21}" + " " * (width * 1) + "".join(f"{name:>{width}}" for name in others),
+    ]
     for share, name in ROWS:
         cells = "".join(f"{found.differences.loc[share, each]:>+{width}.2f}" for each in others)
         lines.append(f"{name:<21}" + " " * width + cells)
@@ -56,7 +65,9 @@ def report(found: "Comparison", *, folder: Path | None = None) -> str:
         lines += ["", *_why(found, name)]
     error = max(result.numerical_error for result in found.results)
     lines += ["", f"Numerical error of the shares: {error:.0e} (largest estimate; inputs not counted)"]
-    warnings = [f"{name}: {line}" for name, result in zip(found.names, found.results, strict=True) for line in result.warnings]
+    warnings = [
+        f"{name}: {line}" for name, result in zip(found.names, found.results, strict=True) for line in result.warnings
+    ]
     lines += ["", "Warnings:", *(f"  - {line}" for line in warnings)] if warnings else []
     return "\n".join([*lines, *(["", f"Files: {folder}"] if folder else [])])
 
@@ -74,7 +85,11 @@ def _summary(found: "Comparison") -> dict[str, Any]:
         "against": found.names[0],
         "averages": {name: result.averages for name, result in zip(found.names, found.results, strict=True)},
         "differences_points": {name: found.differences[name].to_dict() for name in found.names[1:]},
-        "numerical_error": {name: result.numerical_error for name, result in zip(found.names, found.results, strict=True)},
-        "wave_minus_ray": {name: result.wave_minus_ray for name, result in zip(found.names, found.results, strict=True)},
+        "numerical_error": {
+            name: result.numerical_error for name, result in zip(found.names, found.results, strict=True)
+        },
+        "wave_minus_ray": {
+            name: result.wave_minus_ray for name, result in zip(found.names, found.results, strict=True)
+        },
         "warnings": {name: result.warnings for name, result in zip(found.names, found.results, strict=True)},
     }

@@ -23,7 +23,13 @@ ROWS = (
 )
 
 
-def report(result: "Result", *, folder: Path | None = None, uncertainty: Mapping[str, float] | None = None) -> str:
+def report(
+    result: "Result",
+    *,
+    folder: Path | None = None,
+    uncertainty: Mapping[str, float] | None = None,
+    known: Sequence[str] = (),
+) -> str:
     """Return what to show of a result.
 
     Parameters
@@ -34,12 +40,14 @@ def report(result: "Result", *, folder: Path | None = None, uncertainty: Mapping
         Where its files are.
     uncertainty
         How far each share moves within the uncertainty of the inputs, where that is known.
+    known
+        What that uncertainty rests on, a line each.
     """
     parts = [
         "\n".join(_heading(result.stack)),
         _listed("Assumed", result.assumptions),
         _listed("Warnings", result.warnings),
-        "\n".join(_table(result, uncertainty or {})),
+        "\n".join([*_table(result, uncertainty or {}), *known]),
         *(("\n".join(lines)) for lines in (tuple(part(result)) for part in (_depth, _outside, _radiation)) if lines),
         "\n".join(_trust(result)),
         f"Files: {folder}" if folder else "",

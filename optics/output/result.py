@@ -14,9 +14,11 @@ from optics.output.tables import write_json, write_table
 
 if TYPE_CHECKING:
     from optics.fate.solve import Result
+    from optics.study.inputs import InputUncertainty
 
 SUFFIXES = (".svg", ".png")
 SUMMARY = "summary.json"
+INPUTS = "inputs.csv"
 
 
 def result_folder(stack_file: Path) -> Path:
@@ -25,7 +27,12 @@ def result_folder(stack_file: Path) -> Path:
 
 
 def write_result(
-    result: "Result", folder: str | Path, *, stack_file: str | Path | None = None, replace: bool = False
+    result: "Result",
+    folder: str | Path,
+    *,
+    stack_file: str | Path | None = None,
+    replace: bool = False,
+    inputs: "InputUncertainty | None" = None,
 ) -> Path:
     """Write a result folder, whole or not at all.
 
@@ -39,6 +46,8 @@ def write_result(
         Where the stack was read from, to be copied; None writes the stack anew.
     replace
         Whether to replace any other folder too.
+    inputs
+        What the answer owes to its inputs, where that is known.
 
     Returns
     -------
@@ -55,22 +64,25 @@ def write_result(
         tables = _tables(result)
         for name, table in tables.items():
             write_table(table, part / name)
-        write_json(summary(result), part / SUMMARY)
+        if inputs is not None:
+            write_table(inputs.by_input, part / INPUTS)
+        write_json(summary(result, inputs), part / SUMMARY)
         figures = _draw(result, part)
-        taken = (*tables, *figures, SUMMARY, RECORD, STACK_FILE)
+        taken = (*tables, *figures, INPUTS, SUMMARY, RECORD, STACK_FILE)
         copy_inputs(result.stack, part, stack_file=source, taken=taken)
-        inputs = inputs_of(result.stack, source) | {"measured": _measured(result)}
-        write_record(part, command="solve", inputs=inputs, settings=settings_of(result.stack))
+        made_from = inputs_of(result.stack, source) | {"measured": _measured(result)}
+        write_record(part, command="solve", inputs=made_from, settings=settings_of(result.stack))
     return Path(folder)
 
 
-def summary(result: "Result") -> dict[str, Any]:
+def summary(result: "Result", inputs: "InputUncertainty | None" = None) -> dict[str, Any]:
     """Return the averages and what to think of them, in plain values."""
     return {
         "title": result.stack.title,
         "averages": result.averages,
         "ray_averages": result.ray_averages,
         "wave_minus_ray": result.wave_minus_ray,
+        "input_uncertainty": None if inputs is None else _inputs(inputs),
         "advised_model": result.advised_model,
         "advised_because": result.advice,
         "numerical_error": result.numerical_error,
@@ -83,6 +95,18 @@ def summary(result: "Result") -> dict[str, Any]:
         "moved_by_tail": result.moved_by_tail,
         "warnings": result.warnings,
         "assumptions": result.assumptions,
+    }
+
+
+def _inputs(inputs: "InputUncertainty") -> dict[str, Any]:
+    key, share = inputs.most_sensitive
+    return {
+        "by_share": inputs.by_share,
+        "most_sensitive": {"input": key, "share": share},
+        "inputs": [
+            {"key": each.key, "value": each.value, "sd": each.sd, "shape": each.shape, "stated": each.stated}
+            for each in inputs.inputs
+        ],
     }
 
 

@@ -70,7 +70,13 @@ def _lines(table: "DataFrame", key: str, own: Any, title: str) -> Figure:
     style = {} if ticks is None else {"marker": "o", "linestyle": "none"}
     for end in shown:
         axes.plot(x, table[end.column], color=end.colour, linewidth=1.8, path_effects=OUTLINE, **style)
-    if own is not None and own in table[key].tolist() or isinstance(own, float) and ticks is None and min(x) <= own <= max(x):
+    if (
+        own is not None
+        and own in table[key].tolist()
+        or isinstance(own, float)
+        and ticks is None
+        and min(x) <= own <= max(x)
+    ):
         axes.axvline(own if ticks is None else table[key].tolist().index(own), color="#999999", linewidth=0.9, zorder=0)
     _name_lines(axes, shown, [float(table[end.column].iloc[-1]) for end in shown])
     _frame(axes, key, ticks)
@@ -105,9 +111,7 @@ def _name_lines(axes: "Axes", ends: Sequence[End], heights: Sequence[float]) -> 
     for place, height in zip(order, placed, strict=True):
         end = ends[place]
         y = axes.get_position().y0 + axes.get_position().height * height / high
-        axes.figure.text(
-            right + 0.035, y, end.name, fontsize=SMALL, va="center", color=DARK
-        )
+        axes.figure.text(right + 0.035, y, end.name, fontsize=SMALL, va="center", color=DARK)
         axes.plot(
             [1.0, 1.045], [heights[place] / high, height / high], transform=axes.transAxes, clip_on=False,
             color=end.colour, linewidth=1.2, path_effects=[withStroke(linewidth=2.0, foreground="#8a8a8a")],
@@ -117,7 +121,9 @@ def _name_lines(axes: "Axes", ends: Sequence[End], heights: Sequence[float]) -> 
 
 def _maps(table: "DataFrame", one: str, other: str, own: Mapping[str, Any], title: str, share: str | None) -> Figure:
     """Draw four shares over two axes as maps, each with its own scale."""
-    figure = _figure(title, "shares of the photons born, averaged over the spectrum; cross: the stack as it is", (8.0, 6.4))
+    figure = _figure(
+        title, "shares of the photons born, averaged over the spectrum; cross: the stack as it is", (8.0, 6.4)
+    )
     names = list(dict.fromkeys([*([share] if share in table else []), *MAPPED]))[:4]
     rows, columns = (list(dict.fromkeys(table[key].tolist())) for key in (one, other))
     flip = not _positions(columns)[1] is None and _positions(rows)[1] is None
@@ -130,7 +136,10 @@ def _maps(table: "DataFrame", one: str, other: str, own: Mapping[str, Any], titl
         axes.set_title(name.replace("_", " "), fontsize=SMALL + 1, loc="left")
         bar = figure.colorbar(mesh, ax=axes, fraction=0.06, pad=0.03)
         bar.ax.tick_params(labelsize=SMALL - 1)
-        for ticks, put, label, place in ((xticks, axes.set_xticks, axes.set_xlabel, xkey), (yticks, axes.set_yticks, axes.set_ylabel, ykey)):
+        for ticks, put, label, place in (
+            (xticks, axes.set_xticks, axes.set_xlabel, xkey),
+            (yticks, axes.set_yticks, axes.set_ylabel, ykey),
+        ):
             if ticks is not None:
                 put(range(len(ticks)), ticks)
             if put == axes.set_xticks or number % 2 == 0:
@@ -138,9 +147,18 @@ def _maps(table: "DataFrame", one: str, other: str, own: Mapping[str, Any], titl
         if number % 2:
             axes.set_yticklabels([])
         axes.tick_params(labelsize=SMALL - 1)
-        mark = [_place(own.get(key), values_, ticks) for key, values_, ticks in ((xkey, xs, xticks), (ykey, ys, yticks))]
+        mark = [
+            _place(own.get(key), values_, ticks) for key, values_, ticks in ((xkey, xs, xticks), (ykey, ys, yticks))
+        ]
         if None not in mark:
-            axes.plot(*mark, marker="+", markersize=9, color=LIGHT, markeredgewidth=1.6, path_effects=[withStroke(linewidth=3, foreground=DARK)])
+            axes.plot(
+                *mark,
+                marker="+",
+                markersize=9,
+                color=LIGHT,
+                markeredgewidth=1.6,
+                path_effects=[withStroke(linewidth=3, foreground=DARK)],
+            )
     return figure
 
 
@@ -167,9 +185,18 @@ def ladder_figure(shares: "DataFrame", *, title: str = "") -> Figure:
     heights = np.arange(len(rows))[::-1]
     for height, row in zip(heights, rows, strict=True):
         values = shares.loc[row].to_numpy(dtype=float)
-        axes.plot([values.min(), values.max()], [height, height], color="#bbbbbb", linewidth=4, solid_capstyle="round", zorder=1)
+        axes.plot(
+            [values.min(), values.max()],
+            [height, height],
+            color="#bbbbbb",
+            linewidth=4,
+            solid_capstyle="round",
+            zorder=1,
+        )
     step = 0.16 if len(shares.columns) > 1 else 0.0
-    offsets = step * (np.arange(len(shares.columns)) - (len(shares.columns) - 1) / 2) * min(1.0, 4 / len(shares.columns))
+    offsets = (
+        step * (np.arange(len(shares.columns)) - (len(shares.columns) - 1) / 2) * min(1.0, 4 / len(shares.columns))
+    )
     for number, (name, down) in enumerate(zip(shares.columns, offsets, strict=True)):
         axes.plot(
             shares.loc[rows, name], heights - down, linestyle="none", marker=MARKERS[number % len(MARKERS)], markersize=6.5,
@@ -181,7 +208,14 @@ def ladder_figure(shares: "DataFrame", *, title: str = "") -> Figure:
     axes.set_ylim(-0.6, len(rows) - 0.4)
     axes.set_xlabel("share of photons born")
     axes.spines[["top", "right"]].set_visible(False)
-    axes.legend(loc="lower right", bbox_to_anchor=(1.0, 1.0), ncols=min(4, len(shares.columns)), fontsize=SMALL, frameon=False, handletextpad=0.2)
+    axes.legend(
+        loc="lower right",
+        bbox_to_anchor=(1.0, 1.0),
+        ncols=min(4, len(shares.columns)),
+        fontsize=SMALL,
+        frameon=False,
+        handletextpad=0.2,
+    )
     return figure
 
 
@@ -208,7 +242,15 @@ def difference_figure(differences: "DataFrame", *, title: str = "") -> Figure:
         rows = differences[differences["stack"] == name]
         for end in shown:
             style = {"marker": "o"} if len(rows) == 1 else {}
-            axes.plot(rows["wavelength_nm"], rows[end.column], color=end.colour, linewidth=1.8, path_effects=OUTLINE, label=end.name, **style)
+            axes.plot(
+                rows["wavelength_nm"],
+                rows[end.column],
+                color=end.colour,
+                linewidth=1.8,
+                path_effects=OUTLINE,
+                label=end.name,
+                **style,
+            )
         axes.axhline(0.0, color=DARK, linewidth=0.7, zorder=0)
         axes.set_ylim(-limit, limit)
         axes.margins(x=0)
@@ -218,5 +260,7 @@ def difference_figure(differences: "DataFrame", *, title: str = "") -> Figure:
             axes.set_xticklabels([])
     axes.set_xlabel("wavelength (nm)")
     handles, labels = axes.get_legend_handles_labels()
-    figure.legend(handles, labels, loc="upper left", bbox_to_anchor=(0.82, 1 - 0.6 / height), fontsize=SMALL, frameon=False)
+    figure.legend(
+        handles, labels, loc="upper left", bbox_to_anchor=(0.82, 1 - 0.6 / height), fontsize=SMALL, frameon=False
+    )
     return figure

@@ -50,7 +50,11 @@ def write_sweep(
         _draw(plan, table, found, part)
         taken = (SWEEP, SPECTRA, SUMMARY, *FIGURES, RECORD, STACK_FILE)
         copy_inputs(plan.stack, part, stack_file=stack_file, taken=taken)
-        settings = settings_of(plan.stack) | {"varied": list(plan.points.keys), "points": len(plan.points), "spectra": plan.spectra}
+        settings = settings_of(plan.stack) | {
+            "varied": list(plan.points.keys),
+            "points": len(plan.points),
+            "spectra": plan.spectra,
+        }
         write_record(part, command="sweep", inputs=inputs_of(plan.stack, stack_file), settings=settings)
     return table, found
 
@@ -96,7 +100,10 @@ def report(plan: Plan, table: "DataFrame", found: Sequence[Best], *, folder: Pat
         lines.append(f"{name.replace('_', ' '):<21}{table[name].min():>12.4f}{table[name].max():>12.4f}")
     for each in found:
         lines += ["", *_best(each)]
-    lines += ["", f"Numerical error of the shares: {table['numerical_error'].max():.0e} (largest estimate; inputs not counted)"]
+    lines += [
+        "",
+        f"Numerical error of the shares: {table['numerical_error'].max():.0e} (largest estimate; inputs not counted)",
+    ]
     return "\n".join([*lines, "", f"Files: {folder}"])
 
 

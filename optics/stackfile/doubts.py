@@ -72,7 +72,10 @@ class Doubts:
             spec = plain.get(name)
             if isinstance(spec, Mapping) and "value" in spec:
                 plain |= self._thickness(name, spec, key, place)
-        return {name: value if name == "material" else self._plain(value, f"{key}.{name}", place) for name, value in plain.items()}
+        return {
+            name: value if name == "material" else self._plain(value, f"{key}.{name}", place)
+            for name, value in plain.items()
+        }
 
     def _thickness(self, name: str, spec: Mapping[str, Any], key: str, place: str) -> dict[str, Any]:
         """Return a thickness and its unevenness as plain keys; its tolerance is kept in nm."""
@@ -184,11 +187,12 @@ def _at(document: Any, key: str, layers: Mapping[str, int], inline: Callable[[An
         table, steps = document["layer"][layers[name]], key[len(name) + 1 :].split(".")
     else:
         table, steps = document, key.split(".")
-        if steps[0] in OUTER_NAMES and not (isinstance(document[steps[0]], Mapping) and "material" in document[steps[0]]):
+        if steps[0] in OUTER_NAMES and not (
+            isinstance(document[steps[0]], Mapping) and "material" in document[steps[0]]
+        ):
             document[steps[0]] = inline({"material": document[steps[0]]})
     for step in steps[:-1]:
         table = table[step] if step in table else {}
     if steps[-1] not in table and steps[-1] not in OFFSETS:
         raise InputError(f"{key}: has a tolerance, but the stack has no such number in its file")
     return table, steps[-1]
-

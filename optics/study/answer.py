@@ -6,8 +6,10 @@ import numpy as np
 
 from optics.fate.ledger import SHARES
 from optics.fate.solve import Result, solve
+from optics.fate.wave import Settings
 from optics.stack import Stack
 
+ONE_THREAD = Settings(threads=1)
 RAY = "ray_"
 FIGURES = (
     *SHARES,
@@ -29,8 +31,11 @@ Answer = dict[str, Any]
 
 
 def answer(stack: Stack, *, spectra: bool = False) -> Answer:
-    """Solve a stack and return `FIGURES` and `WORDS`, with ``spectra`` also `SPECTRAL` columns as lists."""
-    return answer_of(solve(stack), spectra=spectra)
+    """Solve a stack and return `FIGURES` and `WORDS`, with ``spectra`` also `SPECTRAL` columns as lists.
+
+    One thread does the work: studies share the cores between processes.
+    """
+    return answer_of(solve(stack, settings=ONE_THREAD), spectra=spectra)
 
 
 def answer_of(result: Result, *, spectra: bool = False) -> Answer:

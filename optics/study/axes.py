@@ -16,7 +16,7 @@ from optics.media.cabinet import find
 from optics.media.material import Material
 from optics.media.sheet import decode, read_bytes
 from optics.stack import Stack
-from optics.study.keypath import all_changed, changed, is_material, place_of
+from optics.study.keypath import all_changed, changed, is_material, place_of, without_doubts
 
 RANGE = re.compile(r"\s*(\S+)\s+to\s+(\S+)\s+step\s+(\S+)\s*")
 OUTSIDE_BRACES = re.compile(r",(?![^{]*\})")
@@ -175,7 +175,9 @@ def even_values(key: str, first: Any, last: Any, step: Any) -> list[float]:
     faults.settle()
     steps = (other - one) / by if by else math.nan
     if not 0.0 <= steps <= MOST_POINTS:
-        raise InputError(f"{key}: found {one:g} to {other:g} step {by:g}, expected a step that leads from one to the other")
+        raise InputError(
+            f"{key}: found {one:g} to {other:g} step {by:g}, expected a step that leads from one to the other"
+        )
     whole = round(steps)
     if abs(steps - whole) > 1e-9 * max(whole, 1):
         end = one + int(steps) * by
@@ -208,7 +210,7 @@ def _value(stack: Stack, key: str, given: Any, folder: Path | None) -> Any:
             value = find(given, folder=folder)
         except InputError as error:
             raise InputError(f"{key} = {found(given)}: {fault}" for fault in error.faults) from None
-    changed(stack, key, value)
+    changed(without_doubts(stack), key, value)
     return value
 
 
@@ -226,7 +228,7 @@ def _checked(points: Points, stack: Stack) -> Points:
         for point in range(len(points)):
             faults.place = f"point {point}"
             with faults.collecting():
-                all_changed(stack, points.values(point))
+                all_changed(without_doubts(stack), points.values(point))
             if len(faults.lines) > 10:
                 faults.add("", "and perhaps more after it")
                 break
@@ -246,7 +248,9 @@ def _case_rows(path: Path) -> tuple[list[str], list[tuple[int, list[str]]]]:
     (start, header), rows = lines[0], lines[1:]
     faults = Faults(str(path))
     for key in dict.fromkeys(key for key in header if header.count(key) > 1 or not key):
-        faults.add(f"line {start}", f"column {quoted(key)}: found {header.count(key)} times, expected key paths, each once")
+        faults.add(
+            f"line {start}", f"column {quoted(key)}: found {header.count(key)} times, expected key paths, each once"
+        )
     for number, row in rows:
         if len(row) != len(header) or not all(row):
             filled = sum(bool(cell) for cell in row)

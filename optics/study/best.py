@@ -64,7 +64,9 @@ def goal(text: str) -> Goal:
     if kind not in KINDS or column not in NAMES:
         near = closest(column, NAMES) if column else None
         hint = f"; did you mean {near}?" if near and near != column else f"; columns: {', '.join(NAMES)}"
-        raise InputError(f"best: found {quoted(text)}, expected max:COLUMN or min:COLUMN, for example max:free_above{hint}")
+        raise InputError(
+            f"best: found {quoted(text)}, expected max:COLUMN or min:COLUMN, for example max:free_above{hint}"
+        )
     return Goal(kind, column)
 
 
@@ -76,12 +78,22 @@ def best(points: Points, table: pd.DataFrame, wanted: Goal) -> Best:
     sign = 1.0 if wanted.kind == "max" else -1.0
     top = int(np.argmax(sign * values))
     rows = [
-        {"key": key, "value": points.labels(near)[key], wanted.column: values[near], "worse_by": sign * (values[top] - values[near])}
+        {
+            "key": key,
+            "value": points.labels(near)[key],
+            wanted.column: values[near],
+            "worse_by": sign * (values[top] - values[near]),
+        }
         for key, near in points.neighbours(top)
     ]
     columns = ["key", "value", wanted.column, "worse_by"]
     return Best(
-        wanted, top, float(values[top]), points.labels(top), pd.DataFrame(rows, columns=columns), _holds(points, values, top)
+        wanted,
+        top,
+        float(values[top]),
+        points.labels(top),
+        pd.DataFrame(rows, columns=columns),
+        _holds(points, values, top),
     )
 
 

@@ -73,7 +73,9 @@ def compare(
     names = tuple(stacks)
     solved: dict[int, Result] = {}
     packed = [stacks[name] for name in names]
-    for places, answers in run(_work, lambda at: [packed[place] for place in at], range(len(names)), Place(workers, cluster, executor)):
+    for places, answers in run(
+        _work, lambda at: [packed[place] for place in at], range(len(names)), Place(workers, cluster, executor)
+    ):
         solved.update(zip(places, answers, strict=True))
     return compared({name: solved[place] for place, name in enumerate(names)})
 
@@ -87,7 +89,8 @@ def check_comparable(stacks: Mapping[str, Stack]) -> None:
     differing = [name for name in others if not np.array_equal(stacks[name].light.wavelengths_nm, grid)]
     if differing:
         raise InputError(
-            f"{name}: light: the wavelengths differ from those of {first}; give both the same [light]" for name in differing
+            f"{name}: light: the wavelengths differ from those of {first}; give both the same [light]"
+            for name in differing
         )
 
 
@@ -96,7 +99,9 @@ def compared(results: Mapping[str, Result]) -> Comparison:
     import pandas as pd
 
     first, *others = results
-    shares = pd.DataFrame({name: {key: result.averages[key] for key in (*SHARES, "rate_factor")} for name, result in results.items()})
+    shares = pd.DataFrame(
+        {name: {key: result.averages[key] for key in (*SHARES, "rate_factor")} for name, result in results.items()}
+    )
     shares.index.name = "share"
     ends = shares.loc[list(SHARES)]
     differences = POINTS_PER_SHARE * ends[others].sub(ends[first], axis=0)
@@ -104,7 +109,12 @@ def compared(results: Mapping[str, Result]) -> Comparison:
     parts = {name: parts_of(result) for name, result in results.items()}
     why = [_why(name, parts[first], parts[name]) for name in others]
     return Comparison(
-        tuple(results), tuple(results.values()), shares, differences, pd.concat(spectral, ignore_index=True), pd.concat(why, ignore_index=True)
+        tuple(results),
+        tuple(results.values()),
+        shares,
+        differences,
+        pd.concat(spectral, ignore_index=True),
+        pd.concat(why, ignore_index=True),
     )
 
 

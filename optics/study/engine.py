@@ -106,7 +106,9 @@ class _Queue:
             return self.again.pop()
         size = max(1, int(self.chunk_s / self.point_s)) if self.point_s else 1
         fair = max(1, len(self.waiting) // (2 * self.slots))
-        return _Chunk([self.waiting.popleft() for _ in range(min(size, fair if self.slots > 1 else size, len(self.waiting)))])
+        return _Chunk(
+            [self.waiting.popleft() for _ in range(min(size, fair if self.slots > 1 else size, len(self.waiting)))]
+        )
 
     def learn(self, seconds: float, points: int) -> None:
         """Take note of the pace; the newest counts half, since points differ."""

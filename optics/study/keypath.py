@@ -17,10 +17,15 @@ from optics.study.nudged import nudged
 INDEX_KEYS = ("material", "n_offset", "k_scale")
 CONSTANT_KEYS = ("material.n", "material.k")
 EVEN_KEYS = ("from_nm", "to_nm", "step_nm")
-LAYER_KEYS = (*THICKNESS_TO_NM, *INDEX_KEYS, "phases")
+LAYER_KEYS = (*THICKNESS_TO_NM, *INDEX_KEYS, "phases", "roughness_nm", "varies_nm")
 OUTER_KEYS = (*INDEX_KEYS, "counts_as")
-PARTS = ("light", "emission", "collection")
+PARTS = ("light", "emission", "collection", "sample")
 NOT_VARIED = ("wavelengths_nm", "wavelength_nm", "per_nm", "x", "births", "path", "sha256", "spectrum", "depth")
+
+
+def without_doubts(stack: Stack) -> Stack:
+    """Return the stack without its tolerances and alternatives: what a study solves at each of its points."""
+    return replace(stack, tolerances=(), alternatives=())
 
 
 def is_material(key: str) -> bool:
@@ -31,6 +36,7 @@ def is_material(key: str) -> bool:
 def keys_of(stack: Stack) -> tuple[str, ...]:
     """Return every key path of a stack that a study may change."""
     keys = [f"{layer.name}.{key}" for layer in stack.layers for key in (*LAYER_KEYS, *_constant(layer.material))]
+    keys += [key for layer in stack.layers for key in _fields(layer.tail, f"{layer.name}.tail")]
     for side in OUTER_NAMES:
         material = getattr(stack, side).material
         keys += [f"{side}.{key}" for key in (*OUTER_KEYS, *_constant(material))]
@@ -119,8 +125,15 @@ def _changed(stack: Stack, place: str, name: str, value: Any, folder: str | Path
     if isinstance(part, Layer) and name in THICKNESS_TO_NM:
         return stack.with_layer(place, **{name: value})
     if place in (*OUTER_NAMES, *(each.name for each in stack.layers)) and name in (*INDEX_KEYS, *CONSTANT_KEYS):
+        if name in ("n_offset", "k_scale"):
+            part = _grown(part)
         name, value = "material", _material(part.material, name, value, folder)
     return _with_part(stack, place, _replaced(part, name.split("."), value))
+
+
+def _grown(part: Any) -> Any:
+    """Return a layer with its tail grown into its material: what is nudged is the index that light meets."""
+    return replace(part, material=part.repaired, tail=None) if getattr(part, "tail", None) is not None else part
 
 
 def _material(old: Material, name: str, value: Any, folder: str | Path | None) -> Material:

@@ -35,14 +35,27 @@ class Study:
             When nothing or two things are varied, or the stack refuses a value.
         """
         if bool(self.vary) == (self.cases is not None):
-            what = "both axes and cases, expected one of them" if self.vary else f"nothing to vary, expected for example {EXAMPLE}"
+            what = (
+                "both axes and cases, expected one of them"
+                if self.vary
+                else f"nothing to vary, expected for example {EXAMPLE}"
+            )
             raise InputError(f"sweep: found {what}")
         home = self.stack_file.parent
-        return from_values(stack, self.vary, folder=home) if self.vary else from_cases(stack, self.cases or Path(), folder=home)
+        return (
+            from_values(stack, self.vary, folder=home)
+            if self.vary
+            else from_cases(stack, self.cases or Path(), folder=home)
+        )
 
 
 def asked(
-    file: Path, *, vary: tuple[str, ...] = (), cases: Path | None = None, spectra: bool = False, best: tuple[str, ...] = ()
+    file: Path,
+    *,
+    vary: tuple[str, ...] = (),
+    cases: Path | None = None,
+    spectra: bool = False,
+    best: tuple[str, ...] = (),
 ) -> Study:
     """Return the study of a stack file and options, or of a study file, whose entries the options add to."""
     tables = _tables(file)
@@ -103,4 +116,6 @@ def _axis(table: Any) -> tuple[str, list[Any]]:
     if "values" in table and not isinstance(table["values"], list):
         faults.add("values", f"found {found(table['values'])}, expected a list")
     faults.settle()
-    return str(key), table["values"] if "values" in table else even_values(str(key), *(table[name] for name in VARY_KEYS[2:]))
+    return str(key), table["values"] if "values" in table else even_values(
+        str(key), *(table[name] for name in VARY_KEYS[2:])
+    )

@@ -13,7 +13,7 @@ from optics.stack import Stack
 from optics.study.answer import FIGURES, SPECTRAL, WORDS, Answer, answer
 from optics.study.axes import Points, from_cases, from_values
 from optics.study.engine import Place, run
-from optics.study.keypath import all_changed
+from optics.study.keypath import all_changed, without_doubts
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -32,7 +32,7 @@ class Plan:
 
     def pack(self, points: Sequence[int]) -> tuple[Stack, list[dict[str, Any]], bool]:
         """Return what a worker needs for some points."""
-        return self.stack, [self.points.values(point) for point in points], self.spectra
+        return without_doubts(self.stack), [self.points.values(point) for point in points], self.spectra
 
 
 @dataclass(frozen=True)
@@ -94,7 +94,9 @@ def sweep(
     if (vary is None) == (cases is None):
         raise InputError("sweep: found both or none of vary and cases, expected one of them")
     home = None if folder is None else Path(folder)
-    points = from_values(stack, vary, folder=home) if vary is not None else from_cases(stack, Path(cases or ""), folder=home)
+    points = (
+        from_values(stack, vary, folder=home) if vary is not None else from_cases(stack, Path(cases or ""), folder=home)
+    )
     plan = Plan(stack, points, spectra)
     place = Place(workers, cluster, executor)
     found: dict[int, Answer] = {}
@@ -127,7 +129,8 @@ def collected(plan: Plan, answers: Iterator[tuple[int, Answer]]) -> Sweep:
     """Return the answers, which come in the order of the points, as tables."""
     import pandas as pd
 
-    rows, spectral = [], []
+    rows: list[dict[str, Any]] = []
+    spectral: list[dict[str, Any]] = []
     for point, found in answers:
         rows.append(row(plan, point, found))
         if plan.spectra:

@@ -1,0 +1,147 @@
+"""What an answer owes to its inputs: every one moved by its standard deviation, one at a time."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from optics.fate.ledger import SHARES
+from optics.fate.solve import Result
+from optics.stack import Stack
+from optics.study.answer import answer
+from optics.study.keypath import changed, value_at, without_doubts
+from optics.tolerances import Tolerance
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+DEFAULT_THICKNESS = 0.05
+DEFAULT_K = 0.10
+DEFAULT_N = 0.02
+FIGURES = (*SHARES, "rate_factor")
+LEADING = ("trapped", "substrate", "cover", "free_below", "free_above", "elsewhere")
+"""Shares by which the most sensitive input is chosen: those that no convention cuts apart."""
+
+
+@dataclass(frozen=True)
+class Input:
+    """One number of the stack in doubt: its key path, value, standard deviation, shape, and whether the file says so."""
+
+    key: str
+    value: float
+    sd: float
+    shape: str
+    stated: bool
+
+    def __str__(self) -> str:
+        name = self.key.removesuffix("_offset").removesuffix("_scale") if self.relative or self.offset else self.key
+        size = f"{100 * self.sd:.3g} %" if self.relative else f"{self.sd:.3g}"
+        return f"{name} {size}" + ("" if self.stated else " (default)")
+
+    @property
+    def relative(self) -> bool:
+        """Whether it is a scale."""
+        return self.key.endswith(".k_scale")
+
+    @property
+    def offset(self) -> bool:
+        """Whether it is an offset."""
+        return self.key.endswith(".n_offset")
+
+
+@dataclass(frozen=True)
+class InputUncertainty:
+    """How far averaged shares move within what is known of the inputs.
+
+    Attributes
+    ----------
+    by_share
+        Of every share and the rate factor: the root of the sum of squares of what each input does alone.
+    by_input
+        A row an input: key, value, sd, shape, stated, then a column a share, how far it moves.
+    most_sensitive
+        The input that moves a share the most, and which share.
+    inputs
+        The inputs moved.
+    """
+
+    by_share: dict[str, float]
+    by_input: pd.DataFrame
+    most_sensitive: tuple[str, str]
+    inputs: tuple[Input, ...]
+
+    def lines(self) -> tuple[str, ...]:
+        """Return what the uncertainty rests on and what it owes the most to, a line each."""
+        key, share = self.most_sensitive
+        rests = ", ".join(str(each) for each in self.inputs)
+        return (
+            f"inputs +-: {rests}; each moved alone by one standard deviation",
+            f"Most sensitive to {key}: it moves {share.replace('_', ' ')} the most",
+        )
+
+
+def inputs_of(stack: Stack) -> tuple[Input, ...]:
+    """Return the numbers in doubt: those of the stack's tolerances, and the film's thickness, n and k in any case.
+
+    Where the stack says nothing of them the film's thickness is taken as known to 5 %, its k to 10 % and its n to
+    0.02. A film that absorbs nothing has no k in doubt.
+    """
+    film = stack.film
+    known = {each.key: each for each in stack.tolerances}
+    said = set(known)
+    defaults = []
+    if f"{film.name}.thickness_nm" not in said:
+        defaults.append(Tolerance(key=f"{film.name}.thickness_nm", sd=DEFAULT_THICKNESS * film.thickness_nm))
+    if not said & {f"{film.name}.n_offset", f"{film.name}.material.n"}:
+        defaults.append(Tolerance(key=f"{film.name}.n_offset", sd=DEFAULT_N))
+    absorbs = bool(film.repaired.index(stack.light.wavelengths_nm).imag.any())
+    if absorbs and not said & {f"{film.name}.k_scale", f"{film.name}.material.k"}:
+        defaults.append(Tolerance(key=f"{film.name}.k_scale", sd=DEFAULT_K))
+    return tuple(
+        Input(each.key, float(value_at(stack, each.key)), each.sd, each.shape, each.key in known)
+        for each in (*stack.tolerances, *defaults)
+    )
+
+
+def input_uncertainty(result: Result) -> InputUncertainty:
+    """Return how far a solved stack's averaged shares move within its inputs.
+
+    Every input is moved up and down by its standard deviation, the others kept; it counts with the root mean square
+    of both moves, so that a share at its maximum over a fringe is not taken for one that nothing moves.
+
+    Parameters
+    ----------
+    result
+        What `optics.solve` returned.
+    """
+    stack = without_doubts(result.stack)
+    base = np.array([result.averages[name] for name in FIGURES])
+    inputs = inputs_of(result.stack)
+    moved = [_moved(stack, each, base) for each in inputs]
+    return _summed(inputs, np.array(moved).reshape(len(inputs), len(FIGURES)))
+
+
+def _moved(stack: Stack, each: Input, base: np.ndarray[Any, np.dtype[np.float64]]) -> np.ndarray[Any, np.dtype[np.float64]]:
+    moves = []
+    for step in (each.sd, -each.sd):
+        found = answer(changed(stack, each.key, each.value + step))
+        moves.append([found[name] for name in FIGURES] - base)
+    out: np.ndarray[Any, np.dtype[np.float64]] = np.sqrt(np.mean(np.square(moves), axis=0))
+    return out
+
+
+def _summed(inputs: Sequence[Input], moved: np.ndarray[Any, np.dtype[np.float64]]) -> InputUncertainty:
+    import pandas as pd
+
+    heads: list[Mapping[str, object]] = [
+        {"key": i.key, "value": i.value, "sd": i.sd, "shape": i.shape, "stated": i.stated} for i in inputs
+    ]
+    table = pd.concat([pd.DataFrame(heads), pd.DataFrame(moved, columns=list(FIGURES))], axis=1)
+    total = np.sqrt(np.square(moved).sum(axis=0))
+    leading = moved[:, [FIGURES.index(name) for name in LEADING]]
+    which, share = np.unravel_index(int(np.argmax(leading)), leading.shape) if leading.size else (0, 0)
+    most = (inputs[which].key, LEADING[share]) if leading.size else ("", "")
+    return InputUncertainty(dict(zip(FIGURES, total.tolist(), strict=True)), table, most, tuple(inputs))
