@@ -5,6 +5,8 @@ from typing import TYPE_CHECKING
 
 import click
 
+from optics.cli.labfile import check, import_material
+
 if TYPE_CHECKING:
     from optics.media.material import Material
 
@@ -17,21 +19,27 @@ def material() -> None:
     Example:
       photonfate material list
       photonfate material show float-glass --at 770
+      photonfate material check ch3nh3pbi3
     """
+
+
+material.add_command(import_material)
+material.add_command(check)
 
 
 @material.command("list", short_help="List the bundled materials.")
 def list_materials() -> None:
-    """List the bundled materials with their ranges.
+    """List the bundled materials, and those imported under names of your own, with their ranges.
 
     \b
     Example:
       photonfate material list
     """
     from optics.media import bundled_names, find
+    from optics.media.cabinet import own_names
     from optics.output.materials import material_list
 
-    click.echo(material_list([find(name) for name in bundled_names()]))
+    click.echo(material_list([find(name) for name in (*bundled_names(), *sorted(own_names()))]))
 
 
 @material.command(short_help="Show source, range, n and k of a material.")

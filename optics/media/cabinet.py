@@ -26,6 +26,7 @@ __all__ = [
     "cabinet_beside",
     "find",
     "is_bundled",
+    "is_table",
     "own_names",
     "users_cabinet",
 ]
@@ -103,6 +104,11 @@ def own_names(folder: str | Path | None = None) -> dict[str, Path]:
     """Return the cards of one's own by name: those beside stack files in a folder before the user's."""
     cabinets = (users_cabinet(), cabinet_beside(folder))
     return {card.stem: card for each in cabinets if each.is_dir() for card in sorted(each.glob(f"*{_CARD_SUFFIX}"))}
+
+
+def is_table(spec: str) -> bool:
+    """Say whether a specification names a table of numbers, not a card and not a name."""
+    return _is_path(spec) and not spec.lower().endswith(_CARD_SUFFIX)
 
 
 def is_bundled(material: Material) -> bool:

@@ -50,6 +50,8 @@ class Finding:
         ``"range"``, ``"gap"``, ``"outlier"``, ``"sign"``, ``"noise"``, ``"kramers-kronig"`` or ``"tail"``.
     said
         A sentence.
+    short
+        The same in a few words.
     fault
         Whether it makes the table unfit as it is.
     at_nm
@@ -58,6 +60,7 @@ class Finding:
 
     kind: str
     said: str
+    short: str = ""
     fault: bool = False
     at_nm: tuple[float, ...] = ()
 
@@ -144,8 +147,8 @@ def floor_warning(name: str, material: Material, wavelength_nm: Real, k: Real, w
     level = float(np.median(k[beyond]))
     return (
         f'layer "{name}": k stops falling at {floor.onset_nm:.0f} nm (k = {floor.k:.2g}, {level:.2g} in the median '
-        f"beyond) instead of dying off below the gap; {share:.0%} of the births lie beyond, and a floor that a fit left there "
-        "overstates what the film takes back; tail = ... replaces it"
+        f"beyond) instead of dying off below the gap; {share:.0%} of the births lie beyond, and a floor that a fit "
+        "left there overstates what the film takes back; tail = ... replaces it"
     )
 
 
@@ -158,7 +161,7 @@ def _range(wavelength: Real, wanted: tuple[float, float] | None) -> list[Finding
     missing = [f"{low:.6g} to {min(first, high):.6g} nm"] if low < first else []
     missing += [f"{max(last, low):.6g} to {high:.6g} nm"] if high > last else []
     said = f"{span}; {' and '.join(missing)} missing" if missing else f"{span}, which cover {low:.6g} to {high:.6g} nm"
-    return [Finding("range", said, fault=bool(missing))]
+    return [Finding("range", said, "range missing", fault=bool(missing))]
 
 
 def _gaps(wavelength: Real) -> list[Finding]:
@@ -173,7 +176,9 @@ def _gaps(wavelength: Real) -> list[Finding]:
     ends = [(float(wavelength[place]), float(wavelength[place + 1])) for place in found]
     places = ", ".join(f"{one:.6g} to {two:.6g} nm" for one, two in ends[:5])
     more = f" and {len(ends) - 5} more" if len(ends) > 5 else ""
-    return [Finding("gap", f"gaps: {places}{more}; what lies in them is a guess", fault=True, at_nm=sum(ends, ()))]
+    return [
+        Finding("gap", f"gaps: {places}{more}; what lies in them is a guess", "gaps", fault=True, at_nm=sum(ends, ()))
+    ]
 
 
 def _residuals(wavelength: Real, values: Real) -> tuple[Real, Real]:
@@ -211,7 +216,15 @@ def _outliers(name: str, wavelength: Real, values: Real) -> list[Finding]:
     if not found:
         return []
     places = ", ".join(f"{nm:.6g}" for nm in found[:5]) + (f" and {len(found) - 5} more" if len(found) > 5 else "")
-    return [Finding("outlier", f"{name} is off its neighbours at {places} nm", fault=True, at_nm=tuple(found))]
+    return [
+        Finding(
+            "outlier",
+            f"{name} is off its neighbours at {places} nm",
+            f"{name} off its neighbours",
+            fault=True,
+            at_nm=tuple(found),
+        )
+    ]
 
 
 def _signs(wavelength: Real, k: Real) -> list[Finding]:
@@ -220,7 +233,7 @@ def _signs(wavelength: Real, k: Real) -> list[Finding]:
         return []
     where = wavelength[negative]
     said = f"k is negative in {where.size} rows, {where[0]:.6g} to {where[-1]:.6g} nm, down to {k.min():.2g}"
-    return [Finding("sign", said, fault=True, at_nm=(float(where[0]), float(where[-1])))]
+    return [Finding("sign", said, "k below zero", fault=True, at_nm=(float(where[0]), float(where[-1])))]
 
 
 def _noise(wavelength: Real, k: Real) -> list[Finding]:
@@ -237,7 +250,7 @@ def _noise(wavelength: Real, k: Real) -> list[Finding]:
         f"k is noisy in {where.size} rows, {where[0]:.6g} to {where[-1]:.6g} nm: "
         f"{np.median(noise[noisy]):.2g} of noise on {np.median(level[noisy]):.2g}"
     )
-    return [Finding("noise", said, fault=True, at_nm=(float(where[0]), float(where[-1])))]
+    return [Finding("noise", said, "k noisy", fault=True, at_nm=(float(where[0]), float(where[-1])))]
 
 
 def _belonging(consistency: Consistency | None, n: Real, k: Real) -> Finding:
@@ -253,17 +266,17 @@ def _belonging(consistency: Consistency | None, n: Real, k: Real) -> Finding:
     apart = consistency.rms > max(NOT_TOGETHER * span, LEAST_DIFFERENCE, 2.0 * consistency.doubt)
     word = "they do not belong together" if apart else "they belong together"
     at = (consistency.worst_nm,) if apart else ()
-    return Finding("kramers-kronig", f"{said}; {word}: {METHOD}", fault=bool(apart), at_nm=at)
+    return Finding("kramers-kronig", f"{said}; {word}: {METHOD}", "n and k do not belong together", bool(apart), at)
 
 
 def _tail(floor: Floor | None) -> Finding:
     if floor is None:
-        return Finding("tail", "no floor: the absorption does not stop falling below an edge")
+        return Finding("tail", "no floor found below an absorption edge")
     falls = f"falls by a factor e in {floor.decay_meV:.0f} meV" if np.isfinite(floor.decay_meV) else "does not fall"
     said = (
         f"beyond {floor.onset_nm:.0f} nm k stops falling like a tail (k = {floor.k:.2g}; it {falls} from there on): a "
-        f"floor that a fit left, or another absorber; the edge falls fastest at {floor.steepest_nm:.0f} nm, a factor e in "
-        f'{floor.steepest_meV:.0f} meV; tail = "fit" or {{ urbach_meV = ..., red_of_nm = ... }} in the stack file '
+        f"floor that a fit left, or another absorber; the edge falls fastest at {floor.steepest_nm:.0f} nm, a factor e "
+        f'in {floor.steepest_meV:.0f} meV; tail = "fit" or {{ urbach_meV = ..., red_of_nm = ... }} in the stack file '
         "replaces it"
     )
-    return Finding("tail", said, fault=True, at_nm=(floor.onset_nm,))
+    return Finding("tail", said, f"floor from {floor.onset_nm:.0f} nm", fault=True, at_nm=(floor.onset_nm,))

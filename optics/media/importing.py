@@ -130,17 +130,17 @@ def _card(name: str, path: Path, table: LabTable, about: About) -> str:
 
 
 def _same(card: Path, text: str) -> bool:
-    """Say whether a card holds the same as a text, but for the day of the import."""
+    """Say whether a card holds the same as a text, but for the day of the import and the words about it."""
     try:
         found = tomllib.loads(card.read_text(encoding="utf-8"))
     except (OSError, ValueError):
         return False
-    return _undated(found) == _undated(tomllib.loads(text))
+    return _essence(found) == _essence(tomllib.loads(text))
 
 
-def _undated(card: dict[str, Any]) -> dict[str, Any]:
+def _essence(card: dict[str, Any]) -> dict[str, Any]:
     imported = card.get("imported", {})
-    return card | {"imported": {key: value for key, value in imported.items() if key != "date"}}
+    return card | {"imported": {key: imported.get(key) for key in ("original", "original_sha256")}}
 
 
 def _write(card: Path, text: str) -> None:

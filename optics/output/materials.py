@@ -3,12 +3,19 @@
 import os
 from collections.abc import Sequence
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from optics.errors import InputError
 from optics.media.domain import range_text
 from optics.media.material import Material
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+    from optics.media.checks import Fitness
+    from optics.media.importing import Imported
 
 FIGURE_KINDS = (".png", ".svg", ".pdf")
 
@@ -51,6 +58,40 @@ def material_report(material: Material, wavelengths_nm: Sequence[float]) -> str:
     return "\n".join(lines)
 
 
+def import_report(done: "Imported") -> str:
+    """Return what was understood of an imported table, what was converted, and where its card is."""
+    lines = ["Understood:", *(f"  - {sentence}" for sentence in done.table.understood)]
+    if done.table.converted:
+        lines += ["Converted:", *(f"  - {sentence}" for sentence in done.table.converted)]
+    word = "Card" if done.written else "Nothing changed, the card is there already"
+    lines += ["", f"{word}: {done.path}", f'In a stack file: material = "{done.material.name}"']
+    return "\n".join(lines)
+
+
+def fitness_report(found: "Fitness") -> str:
+    """Return what was found in a table, a line each; what makes it unfit is marked."""
+    lines = [f"{'!' if finding.fault else ' '} {finding.kind}: {finding.said}" for finding in found.findings]
+    faults = sum(finding.fault for finding in found.findings)
+    verdict = "fit" if not faults else f"unfit as it is, for {faults} reason{'s' if faults > 1 else ''} (marked !)"
+    return "\n".join([f"{found.name}: {verdict}", *lines])
+
+
+def check_figure_path(found: "Fitness", asked: str | None, *, beside: str) -> Path | None:
+    """Return where a figure of a check goes, None when none is asked for, before anything is drawn."""
+    if asked is None:
+        return None
+    path = Path(f"{found.name.replace('/', '-')}{beside}") if asked == beside else Path(asked)
+    _check_figure(path)
+    return path
+
+
+def write_fitness_figure(found: "Fitness", path: Path) -> None:
+    """Draw n, k and the absorption of a table with what was found into a new file, whole or not at all."""
+    from optics.output.fitnessfigures import fitness_figure
+
+    _write_figure(fitness_figure(found), path)
+
+
 def write_material_figure(material: Material, path: Path) -> None:
     """Draw n and k into a new file, whole or not at all.
 
@@ -59,13 +100,22 @@ def write_material_figure(material: Material, path: Path) -> None:
     InputError
         When the suffix names no known format, the file exists, or it cannot be written.
     """
+    _check_figure(path)
+    from optics.output.figures import material_figure
+
+    _write_figure(material_figure(material), path)
+
+
+def _check_figure(path: Path) -> None:
     if path.suffix not in FIGURE_KINDS:
         raise InputError(f"{path}: found {path.suffix or 'no suffix'}, expected one of {', '.join(FIGURE_KINDS)}")
     if path.exists():
         raise InputError(f"{path}: exists and is kept; name another file")
-    from optics.output.figures import material_figure, save
 
-    figure = material_figure(material)
+
+def _write_figure(figure: "Figure", path: Path) -> None:
+    from optics.output.figures import save
+
     part = path.with_name(f".{path.stem}.{os.getpid()}.part{path.suffix}")
     try:
         save(figure, part)
