@@ -7,6 +7,7 @@ from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.media.dispersion import Constant, Joined, Tabulated
 from optics.media.tail import Grafted, UrbachTail, repair
 from optics.radiation import FromAbsorption
+from optics.sample import near_field_note, roughness_note, sample_notes
 from optics.spectrum import spectrum_notes
 from optics.stack import ISOTROPIC, PLATE_LIMIT_NM, Layer, Outer, Stack, layer_place
 from optics.tolerances import Alternatives, stated
@@ -20,6 +21,9 @@ def assumptions(stack: Stack) -> tuple[str, ...]:
     said += spectrum_notes(stack.light.spectrum, stack.light.wavelengths_nm)
     said += _indices(stack)
     said += [sentence for layer in stack.layers for sentence in _tail(layer)]
+    said += [roughness_note(layer_place(each.name), each.roughness_nm) for each in stack.layers if each.roughness_nm]
+    said += [] if stack.emission.near_field is None else [near_field_note(stack.emission.near_field)]
+    said += [] if stack.sample is None else sample_notes(stack.sample)
     said += [*_uneven(stack.film), *stated(stack.tolerances), *_alternatives(stack.alternatives)]
     return tuple(said)
 

@@ -171,6 +171,52 @@ def check_reach(faults: Faults, *, sample: Sample, wavelengths_nm: FloatArray) -
             at_wavelengths(key, getattr(sample, key), wavelengths_nm)
 
 
+def sample_notes(sample: Sample, *, asked: bool = True) -> tuple[str, ...]:
+    """Return what a sample takes for granted; ``asked`` tells whether the stack has it or defaults stand in."""
+    given = "" if asked else " (no [sample] given: defaults)"
+    said = [
+        f"sample: edge {sample.to_edge_mm:g} mm from the spot in all directions, light there {sample.edges}{given}",
+        f"{_told(sample.recycling_share)} of the film's absorption makes carriers (recycling_share)",
+    ]
+    if sample.rough:
+        said.append(
+            f"guided light scatters by Payne & Lacey from faces of {sample.rms_nm:g} nm rms and "
+            f"{sample.correlation_nm:g} nm correlation length, an estimate"
+        )
+    elif sample.scatters:
+        said.append(f"guided light scatters, {_told(sample.guided_scatter_per_cm)} per cm")
+    else:
+        said.append("nothing scatters guided light (guided_scatter_per_cm = 0)")
+    if sample.scatters:
+        said.append(
+            f"of scattered light {sample.scatter_up_share:g} leaves upwards, isotropic in the medium that touches the "
+            "film's group, and is followed through the plates"
+        )
+    return tuple(said)
+
+
+def near_field_note(near_field: NearField) -> str:
+    """Say how the near field is cut off."""
+    return (
+        f"near field: up to an in-plane index of {near_field.to_index:g}, births within {near_field.stand_off_nm:g} nm of "
+        "the film's faces left out; per photon born, beside the shares"
+    )
+
+
+def roughness_note(place: str, roughness_nm: float) -> str:
+    """Say how a rough face is treated."""
+    return (
+        f"{place}: upper face rough by {roughness_nm:g} nm rms: a graded Bruggeman mixture over "
+        f"{2.0 * 3.0**0.5 * roughness_nm:.4g} nm, nothing born in it, its absorption booked as other layers'"
+    )
+
+
+def _told(amount: Amount) -> str:
+    if isinstance(amount, PerWavelength):
+        return f"{amount.values.min():g} to {amount.values.max():g} (by table)"
+    return f"{amount:g}"
+
+
 def _amount(
     faults: Faults, key: str, value: object, *, unit: str = "", at_most: float | None = None, example: float
 ) -> Amount:

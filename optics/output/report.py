@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from optics.output.numbers import decimals_for
+from optics.output.readings import readings_text
 from optics.output.result import largest_closure
 
 if TYPE_CHECKING:
@@ -44,15 +45,22 @@ def report(
         What that uncertainty rests on, a line each.
     """
     parts = [
-        "\n".join(_heading(result.stack)),
-        _listed("Assumed", result.assumptions),
-        _listed("Warnings", result.warnings),
+        "\n".join(heading(result.stack)),
+        listed("Assumed", result.assumptions),
+        listed("Warnings", result.warnings),
         "\n".join([*_table(result, uncertainty or {}), *known]),
-        *(("\n".join(lines)) for lines in (tuple(part(result)) for part in (_depth, _outside, _radiation)) if lines),
+        *(("\n".join(lines)) for lines in (tuple(part(result)) for part in (_depth, _outside, _radiation, _sampled)) if lines),
         "\n".join(_trust(result)),
         f"Files: {folder}" if folder else "",
     ]
     return "\n\n".join(part for part in parts if part)
+
+
+def _sampled(result: "Result") -> Iterator[str]:
+    """Yield the ends of held and guided light and all readings, where the stack has a sample."""
+    if result.sample is not None:
+        yield from readings_text(result.sample)
+        yield from (f"Warning: {line}" for line in result.sample.warnings)
 
 
 def stack_line(stack: "Stack") -> str:
@@ -67,7 +75,7 @@ def _layer(layer: "Layer") -> str:
     return f"{layer.name} {size}" + (" (emits)" if layer.emits else "") + (" (plate)" if layer.plate else "")
 
 
-def _heading(stack: "Stack") -> Iterator[str]:
+def heading(stack: "Stack") -> Iterator[str]:
     if stack.title:
         yield stack.title
     yield stack_line(stack)
@@ -76,7 +84,7 @@ def _heading(stack: "Stack") -> Iterator[str]:
     yield f"{count} wavelengths, {first:g} to {last:g} nm" if count > 1 else f"1 wavelength, {first:g} nm"
 
 
-def _listed(name: str, lines: Sequence[str]) -> str:
+def listed(name: str, lines: Sequence[str]) -> str:
     return "\n".join([f"{name}:", *(f"  - {line}" for line in lines)]) if lines else ""
 
 

@@ -9,6 +9,7 @@ import numpy as np
 from optics.output.folder import writing
 from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
 from optics.output.numbers import decimals_for
+from optics.output.readings import ENDS_CSV, READINGS_CSV, readings_table, sample_summary
 from optics.output.record import RECORD, write_record
 from optics.output.tables import write_json, write_table
 
@@ -93,6 +94,7 @@ def summary(result: "Result", inputs: "InputUncertainty | None" = None) -> dict[
         "radiation": None if result.radiation is None else asdict(result.radiation),
         "measured": _measured(result),
         "moved_by_tail": result.moved_by_tail,
+        "sample": None if result.sample is None else sample_summary(result.sample),
         "warnings": result.warnings,
         "assumptions": result.assumptions,
     }
@@ -133,6 +135,8 @@ def _measured(result: "Result") -> dict[str, Any] | None:
 def _tables(result: "Result") -> dict[str, Any]:
     wave = {} if result.table is None else {"outcomes.csv": result.table}
     asked = {"pattern.csv": result.pattern, "depth.csv": result.depth}
+    if result.sample is not None:
+        asked |= {READINGS_CSV: readings_table(result.sample), ENDS_CSV: result.sample.ends}
     given = {name: table for name, table in asked.items() if table is not None}
     return (
         wave
