@@ -172,11 +172,26 @@ def _mean(z: Wave, x: Real, births: Real, powers: Real) -> Wave:
     small = np.abs(z) < SERIES_UP_TO
     safe = np.where(small, 1.0, z)
     corner = np.diff(np.diff(births) / np.diff(x), prepend=0.0, append=0.0)
-    bend = np.tensordot(corner, np.exp(np.multiply.outer(x, safe)), axes=1)
+    bend = _sum_of_exponentials(safe, x, corner)
     out: Wave = (births[-1] * np.exp(safe) - births[0]) / safe + bend / (safe * safe)
     if small.any():
         out[small] = np.polynomial.polynomial.polyval(z[small], powers)
     return out
+
+
+def _sum_of_exponentials(z: Wave, x: Real, amounts: Real) -> Wave:
+    """Return the sum of amounts exp(z x); on even steps as a polynomial in exp(z step), five times as fast.
+
+    The last step may differ: a table is cut where the film ends.
+    """
+    step = np.diff(x)
+    if len(x) < 4 or np.ptp(step[:-1]) > SAME * step[0]:
+        used = amounts != 0.0
+        whole: Wave = np.tensordot(amounts[used], np.exp(np.multiply.outer(x[used], z)), axes=1)
+        return whole
+    even: Wave = np.polynomial.polynomial.polyval(np.exp(z * step[0]), amounts[:-1])
+    even += amounts[-1] * np.exp(z)
+    return even
 
 
 def _power_means(x: Real, births: Real) -> Real:

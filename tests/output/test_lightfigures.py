@@ -36,7 +36,7 @@ def test_every_curve_is_named_once_beside_the_plot(over):
     for name in ("born inside", "out above", "out below", "collected", *(["measured"] if over else [])):
         assert sum(text.startswith(name) for text in found) == 1
     assert overlapping(found) == []
-    assert all(0 <= box.x0 and box.x1 <= figure.bbox.width for box in found.values())
+    assert all(box.x0 >= 0 and box.x1 <= figure.bbox.width for box in found.values())
 
 
 def test_curves_without_light_are_left_out_and_the_others_peak_at_one():
