@@ -35,8 +35,7 @@ def list_materials() -> None:
     Example:
       photonfate material list
     """
-    from optics.media import bundled_names, find
-    from optics.media.cabinet import own_names
+    from optics.media import bundled_names, find, own_names
     from optics.output.materials import material_list
 
     click.echo(material_list([find(name) for name in (*bundled_names(), *sorted(own_names()))]))

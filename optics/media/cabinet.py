@@ -103,7 +103,9 @@ def users_cabinet() -> Path:
 def own_names(folder: str | Path | None = None) -> dict[str, Path]:
     """Return the cards of one's own by name: those beside stack files in a folder before the user's."""
     cabinets = (users_cabinet(), cabinet_beside(folder))
-    return {card.stem: card for each in cabinets if each.is_dir() for card in sorted(each.glob(f"*{_CARD_SUFFIX}"))}
+    cards = [card.absolute() for each in cabinets if each.is_dir() for card in sorted(each.glob(f"*{_CARD_SUFFIX}"))]
+    bundled = set(_cards().values())  # in a checkout of this project they stand in a folder of that very name
+    return {card.stem: card for card in cards if card not in bundled}
 
 
 def is_table(spec: str) -> bool:
@@ -121,7 +123,7 @@ def _named(spec: str, folder: str | Path | None) -> Material:
     name = spec.strip().lower()
     if name not in own:
         return bundled(spec, also=tuple(own))
-    return read_card(own[name].absolute())
+    return read_card(own[name])
 
 
 def bundled(name: str, *, also: tuple[str, ...] = ()) -> Material:

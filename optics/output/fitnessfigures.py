@@ -119,8 +119,8 @@ def _mark(axes: "list[Axes]", found: "Fitness", finding: "Finding") -> None:
         axes[1].axvspan(*at, color=FAULT, alpha=0.12, linewidth=0)
         high = {"noise": 0.9, "sign": 0.8}[finding.kind]
         place = (float(np.mean(at)), high)
-        panel = axes[1].get_xaxis_transform()
-        axes[1].text(*place, finding.short, transform=panel, ha="center", fontsize=SMALL, color=FAULT)
+        scale = axes[1].get_xaxis_transform()
+        axes[1].text(*place, finding.short, transform=scale, ha="center", fontsize=SMALL, color=FAULT)
     elif finding.kind == "outlier":
         panel, values = (axes[0], found.n) if finding.said.startswith("n") else (axes[1], found.k)
         height = np.interp(at, found.wavelength_nm, values)
