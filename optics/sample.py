@@ -198,8 +198,8 @@ def sample_notes(sample: Sample, *, asked: bool = True) -> tuple[str, ...]:
 def near_field_note(near_field: NearField) -> str:
     """Say how the near field is cut off."""
     return (
-        f"near field: up to an in-plane index of {near_field.to_index:g}, births within {near_field.stand_off_nm:g} nm of "
-        "the film's faces left out; per photon born, beside the shares"
+        f"near field: up to an in-plane index of {near_field.to_index:g}, births within {near_field.stand_off_nm:g} nm "
+        "of the film's faces left out; per photon born, beside the shares"
     )
 
 

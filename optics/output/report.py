@@ -49,7 +49,7 @@ def report(
         listed("Assumed", result.assumptions),
         listed("Warnings", result.warnings),
         "\n".join([*_table(result, uncertainty or {}), *known]),
-        *(("\n".join(lines)) for lines in (tuple(part(result)) for part in (_depth, _outside, _radiation, _sampled)) if lines),
+        *("\n".join(part(result)) for part in (_depth, _outside, _radiation, _sampled)),
         "\n".join(_trust(result)),
         f"Files: {folder}" if folder else "",
     ]
@@ -76,6 +76,7 @@ def _layer(layer: "Layer") -> str:
 
 
 def heading(stack: "Stack") -> Iterator[str]:
+    """Yield title, stack and wavelengths, a line each."""
     if stack.title:
         yield stack.title
     yield stack_line(stack)
@@ -85,6 +86,7 @@ def heading(stack: "Stack") -> Iterator[str]:
 
 
 def listed(name: str, lines: Sequence[str]) -> str:
+    """Return a named list, nothing where it has no lines."""
     return "\n".join([f"{name}:", *(f"  - {line}" for line in lines)]) if lines else ""
 
 
