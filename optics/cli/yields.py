@@ -37,8 +37,7 @@ def yields(
     from optics.fate.implied import given, implied
     from optics.fate.sampled import sampled
     from optics.output.folder import check_target
-    from optics.output.report import sample_report
-    from optics.output.samples import write_yields
+    from optics.output.samples import sample_report, write_yields
     from optics.stackfile import read_stack
 
     known = given(internal=internal, external=external, sd=internal_sd or external_sd)
@@ -47,6 +46,5 @@ def yields(
     check_target(folder, replace=replace)
     found = sampled(loaded)
     rows = () if known is None else implied(found, known, reading=reading, temperature_K=kelvin)
-    asked = {"reading": reading, "temperature_K": kelvin}
-    write_yields(found, rows, known, folder, stack_file=stack, replace=replace, **asked)  # type: ignore[arg-type]
+    write_yields(found, rows, known, folder, stack_file=stack, reading=reading, temperature_K=kelvin, replace=replace)
     click.echo(sample_report(found, rows, known, temperature_K=kelvin, folder=folder))

@@ -11,7 +11,6 @@ from matplotlib.figure import Figure
 from optics.fate.yields import external_yield
 from optics.output.figures import DPI, NOTE_CHARACTERS, SIZE_INCH, SMALL, TITLE_CHARACTERS
 from optics.output.labels import spread
-from optics.output.palette import DARK
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -83,9 +82,8 @@ def _follow(axes: "Axes", row: "Implied", known: "Given", *, wide: bool) -> None
     own = (max(known.value - known.sd, 0.0), min(known.value + known.sd, 1.0))
     other = row.between
     (left, right), (bottom, roof) = (other, own) if known.kind == "external" else (own, other)
-    shade = {"color": colour, "alpha": 0.18, "linewidth": 0, "zorder": 0}
-    axes.fill_between([0.0, right], [bottom, bottom], [roof, roof], **shade)
-    axes.fill_betweenx([0.0, bottom], [left, left], [right, right], **shade)
+    axes.fill_between([0.0, right], [bottom, bottom], [roof, roof], color=colour, alpha=0.18, linewidth=0, zorder=0)
+    axes.fill_betweenx([0.0, bottom], [left, left], [right, right], color=colour, alpha=0.18, linewidth=0, zorder=0)
 
 
 def _write_names(axes: "Axes", names: Sequence[tuple[str, float, str]]) -> None:
@@ -105,4 +103,3 @@ def _write_title(figure: Figure, sampled: "Sampled", known: "Given | None", read
     asked = "" if known is None else f"; {known.kind} {known.value:g}{spread_text} followed, strip: {reading}"
     figure.text(FRAME[0], 0.965, shorten(title, TITLE_CHARACTERS), fontsize=11, va="center", parse_math=False)
     figure.text(FRAME[0], 0.93, fill(sample + asked, NOTE_CHARACTERS), fontsize=SMALL, va="top", color="#444444")
-    figure.text(FRAME[0] + FRAME[2] + 0.02, 0.02, "", color=DARK)
