@@ -1,6 +1,6 @@
 """Where in the film photons are born: evenly, by a pump, along a decay, in a sheet or as a table says."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Literal, TypeAlias
 
 import numpy as np
@@ -148,6 +148,23 @@ def check_depth_in_film(faults: Faults, depth: Depth, *, film: str, thickness_nm
             faults.add(PLACE, f"table: {said}; add rows that reach, zeros where nothing is born")
         elif not in_film(depth, thickness_nm)[1].any():
             faults.add(PLACE, f"table: no births between 0 and {thickness_nm:.12g} nm, expected some in {film}")
+
+
+def opposite(side: str) -> Side:
+    """Return the other side."""
+    return "below" if side == "above" else "above"
+
+
+def turned(depth: Depth, thickness_nm: float) -> Depth:
+    """Return a depth as it is in the film upside down."""
+    if isinstance(depth, Pump | Decay):
+        return replace(depth, side=opposite(depth.side))
+    if isinstance(depth, Sheet):
+        return Sheet(at_nm=thickness_nm - depth.at_nm)
+    if isinstance(depth, DepthTable):
+        at, births = in_film(depth, thickness_nm)
+        return DepthTable(depth_nm=thickness_nm - at[::-1], births=births[::-1])
+    return depth
 
 
 def in_film(table: DepthTable, thickness_nm: float) -> tuple[FloatArray, FloatArray]:

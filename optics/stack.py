@@ -9,7 +9,7 @@ import numpy as np
 from optics.agreement import check_apertures, check_pump, check_spectrum
 from optics.byvalue import FloatArray
 from optics.collection import Collection
-from optics.depth import Depth, check_depth, check_depth_in_film
+from optics.depth import Depth, check_depth, check_depth_in_film, opposite, turned
 from optics.errors import InputError
 from optics.faults import Faults, cut
 from optics.layer import LONGEST_NAME as LONGEST_NAME
@@ -134,9 +134,7 @@ class Stack:
         if self.sample is not None:
             check_reach(faults, sample=self.sample, wavelengths_nm=self.light.wavelengths_nm)
         check_doubts(faults, layers=self.layers, tolerances=self.tolerances, alternatives=self.alternatives)
-        check_uneven(
-            faults, film=self.film, light=self.light, depth=self.emission.depth, collection=self.collection
-        )
+        check_uneven(faults, film=self.film, light=self.light, depth=self.emission.depth, collection=self.collection)
         check_roughness(faults, layers=self.layers, shortest_nm=self.light.range_nm[0])
         faults.settle()
 
@@ -172,7 +170,9 @@ class Stack:
         if name not in names:
             raise InputError(f"{layer_place(name)}: not in this stack, which has {', '.join(names)}")
         faults = Faults(layer_place(name))
-        faults.known_keys(changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "varies_nm", "tail"))
+        faults.known_keys(
+            changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "varies_nm", "tail")
+        )
         given = [key for key in THICKNESS_TO_NM if key in changes]
         if len(given) > 1:
             faults.add(given[0], f"found {' and '.join(given)}, expected one of them")
@@ -234,7 +234,18 @@ class Stack:
             if layer.roughness_nm:
                 faults.add(layer_place(layer.name), "roughness_nm: cannot be turned upside down; set it to 0 first")
         faults.settle()
-        return replace(self, above=self.below, below=self.above, layers=self.layers[::-1])
+        spectrum, collection = self.light.spectrum, self.collection
+        if spectrum.seen != "inside":
+            spectrum = replace(spectrum, seen=opposite(spectrum.seen))
+        return replace(
+            self,
+            above=self.below,
+            below=self.above,
+            layers=self.layers[::-1],
+            light=replace(self.light, spectrum=spectrum),
+            emission=replace(self.emission, depth=turned(self.emission.depth, self.film.thickness_nm)),
+            collection=None if collection is None else replace(collection, side=opposite(collection.side)),
+        )
 
 
 def outer(material: MaterialLike | Outer, *, counts_as: CountsAs | None = None, place: str = "outer") -> Outer:

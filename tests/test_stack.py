@@ -7,6 +7,7 @@ import numpy as np
 import pytest
 
 from optics.assumptions import assumptions
+from optics.collection import Collection
 from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.errors import InputError
 from optics.light import Light, even_wavelengths
@@ -248,3 +249,23 @@ def test_where_births_are_is_told(depth, said):
 def test_where_a_spectrum_was_seen_is_told():
     seen = _stack(FILM).with_light(spectrum=Gaussian(peak_nm=768, fwhm_nm=40, seen="above", na=0.5))
     assert any("light within na = 0.5 above the stack; divided by" in line for line in assumptions(seen))
+
+
+@pytest.mark.parametrize(
+    ("depth", "upside_down"),
+    [
+        ("uniform", "uniform"),
+        (Pump(pump_nm=620, side="below", births="square"), Pump(pump_nm=620, side="above", births="square")),
+        (Decay(decay_nm=80, side="above"), Decay(decay_nm=80, side="below")),
+        (Sheet(at_nm=20), Sheet(at_nm=460)),
+        (DepthTable(depth_nm=[0, 100, 480], births=[1, 2, 5]), DepthTable(depth_nm=[0, 380, 480], births=[5, 2, 1])),
+    ],
+)
+def test_a_stack_upside_down_has_its_births_and_apertures_on_the_other_side(depth, upside_down):
+    seen = Gaussian(peak_nm=768, fwhm_nm=40, seen="above", na=0.5)
+    stack = _stack(FILM, GLASS).with_emission(depth=depth).with_light(spectrum=seen)
+    turned = stack.with_collection(Collection(na=0.7, side="below")).flipped()
+    assert turned.emission.depth == upside_down
+    assert turned.collection == Collection(na=0.7, side="above")
+    assert turned.light.spectrum.seen == "below"
+    assert turned.flipped().flipped() == turned

@@ -56,7 +56,8 @@ def born_inside(stack: Stack, drawing: Drawing, ledger: Ledger, *, model: str, s
     Light seen outside is divided, wavelength by wavelength, by the power that this stack sends there (rate factor
     times share). That stays right however much light is taken back and born again: carriers forget the photon that
     made them, so that what they emit next has the same birth spectrum, only less of it. Every generation leaves by
-    the same shares, and the sum over generations is the same spectrum times a number.
+    the same shares, and the sum over generations is the same spectrum times a number. (Light taken back is born again
+    where it was taken; with births that are not even over depth this takes all generations to be born alike.)
     """
     spectrum, wavelength = stack.light.spectrum, drawing.wavelength_nm
     given = given_per_nm(spectrum, wavelength, film_index=drawing.index[drawing.film])
