@@ -16,7 +16,6 @@ from optics.waves import curves
 from optics.waves.coherent import Real
 from optics.waves.curves import Points
 from optics.waves.paths import Index, Integral, Rows, integrate
-from optics.waves.plates import Waves
 from optics.waves.scene import Scene
 
 ORDER = 32
