@@ -140,7 +140,7 @@ def _film_takes(waves: Waves, radius: Real, weight: Real) -> tuple[Real, Real]:
 class Passes:
     """Rays that cross a film again and again.
 
-    ``slant`` is the absorption of one crossing, (row, node); ``up`` and ``down`` are the reflectances met, (polarisation,
+    ``slant`` is the absorption of a crossing, (row, node); ``up`` and ``down`` are the reflectances met, (polarisation,
     row, node).
     """
 
