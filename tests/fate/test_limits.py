@@ -171,3 +171,13 @@ def test_a_thick_film_averaged_over_its_fringes_is_what_rays_say(name, k):
         ("waveguided", SPLIT),
     ):
         assert abs(2.0 * thick[share] - thin[share]) < within
+
+
+def test_an_almost_clear_film_between_absorbing_contacts_guides_light_to_them_as_a_clear_one_does():
+    def guided(k):
+        return amounts(
+            drawn(760, [(1, 0), (2.0 + 0.01j, 60), (2.5 + 1j * k, 500), (1.8 + 0.005j, 120), (1.5, 0)], film=2)
+        )
+
+    assert guided(1e-12) == pytest.approx(guided(0.0), abs=SHARES)
+    assert guided(0.0)["guided_elsewhere"] > 0.5

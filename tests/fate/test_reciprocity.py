@@ -1,12 +1,14 @@
-"""Light that leaves a film and light that it takes: Wuerfel, J. Phys. C 15, 3967 (1982); Rau, Phys. Rev. B 76, 085303 (2007).
+"""Light that leaves a film and light that it takes are one.
+
+Wuerfel, J. Phys. C 15, 3967 (1982); Rau, Phys. Rev. B 76, 085303 (2007).
 
 With uniform isotropic births, free_above x P per in-plane wave number q (in units of k0) is
 
     (A_s + A_p) q / (4 n^2 alpha d),
 
-A the film's absorptance for light from above, n its real index, alpha d = 2 k k0 d; integrated over outside angles it is
-the mean absorptance, weighted with cos(theta) n_above^2. The absorptances are those of the `tmm` library, which knows
-nothing of dipoles.
+A the film's absorptance for light from above, n its real index, alpha d = 2 k k0 d; integrated over outside angles
+it is the mean absorptance, weighted with cos(theta) n_above^2. The absorptances are those of the `tmm` library,
+which knows nothing of dipoles.
 """
 
 import numpy as np
@@ -24,7 +26,7 @@ NODES = 6
 
 
 def random_stack(rng):
-    """Thin film, thin neighbours that may absorb, outer media up to indices above the film's; light leaves both sides."""
+    """A film, thin neighbours that may absorb, outer media up to indices above the film's; light leaves both sides."""
 
     def layer():
         return (

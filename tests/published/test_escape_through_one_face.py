@@ -27,7 +27,7 @@ def test_a_clear_film_in_air_lets_each_escape_cone_out_in_the_end(n):
 
 
 def test_both_cones_of_index_2_point_6_hold_one_photon_in_13():
-    """1 - sqrt(1 - 1/n^2) at n = 2.6; between 7 and 13 % for n of 2.6 to 2.0 (Cho et al., Nat. Commun. 11, 611, 2020)."""
+    """1 - sqrt(1 - 1/n^2) at n = 2.6, within the 7 to 13 % of Cho et al., Nat. Commun. 11, 611 (2020)."""
     ends = amounts(drawn(700, [(1, 0), (2.6, 400), (1, 0)]), model="ray")
     assert ends["free_above"] + ends["free_below"] == pytest.approx(1.0 / 13.0, abs=TEN_DIGITS)
 
