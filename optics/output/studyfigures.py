@@ -264,3 +264,69 @@ def difference_figure(differences: "DataFrame", *, title: str = "") -> Figure:
         handles, labels, loc="upper left", bbox_to_anchor=(0.82, 1 - 0.6 / height), fontsize=SMALL, frameon=False
     )
     return figure
+
+
+BANDED = ("trapped", "substrate", "cover", "free_below", "free_above", "elsewhere")
+COLOUR_OF = {end.column: end.colour for end in ENDS} | {"trapped": "#2b3070"}
+
+
+def bands_figure(by_wavelength: "DataFrame", *, title: str = "") -> Figure:
+    """Draw median and 68 and 95 % bands of shares by wavelength, a panel a share with its own scale.
+
+    Parameters
+    ----------
+    by_wavelength
+        Tidy: wavelength_nm, share, median and bands.
+    title
+        Put above.
+    """
+    rows = {share: by_wavelength[by_wavelength["share"] == share] for share in BANDED}
+    shown = [share for share in BANDED if rows[share]["high_95"].max() >= SHOWN_ABOVE]
+    figure = _figure(title, "median (line), 68 % and 95 % of draws of the inputs; share of photons born at each wavelength", (8.0, 5.4))
+    columns = 2 if len(shown) > 1 else 1
+    lines = max(1, -(-len(shown) // columns))
+    for number, share in enumerate(shown):
+        left, line = 0.09 + 0.48 * (number % columns), number // columns
+        axes = figure.add_axes((left, 0.86 - (line + 1) * 0.80 / lines + 0.075, 0.40, 0.80 / lines - 0.115))
+        table, colour = rows[share], COLOUR_OF[share]
+        x = table["wavelength_nm"].to_numpy(dtype=float)
+        axes.fill_between(x, table["low_95"], table["high_95"], color=colour, alpha=0.25, linewidth=0)
+        axes.fill_between(x, table["low_68"], table["high_68"], color=colour, alpha=0.45, linewidth=0)
+        axes.plot(x, table["median"], color=DARK, linewidth=1.0, marker="o" if len(x) == 1 else None)
+        axes.set_title(share.replace("_", " "), fontsize=SMALL + 1, loc="left", pad=3)
+        axes.spines[["top", "right"]].set_visible(False)
+        axes.tick_params(labelsize=SMALL - 1)
+        axes.margins(x=0)
+        if line == lines - 1 or number + columns >= len(shown):
+            axes.set_xlabel("wavelength (nm)", fontsize=SMALL)
+    return figure
+
+
+def sensitivity_figure(indices: "DataFrame", bands: "DataFrame", *, title: str = "") -> Figure:
+    """Draw what spreads each share: bars of total indices, the part of first order dark.
+
+    Parameters
+    ----------
+    indices
+        Tidy: share, input, first_order, total.
+    bands
+        A row a share with its standard deviation ``sd``.
+    title
+        Put above.
+    """
+    shares = [share for share in BANDED if bands.loc[share, "sd"] > 1e-6]
+    inputs = list(dict.fromkeys(indices["input"]))
+    figure = _figure(title, "part of a share's variance due to each input: dark alone, pale with others", (8.0, 1.6 + 0.42 * len(inputs)))
+    width = 0.76 / max(len(shares), 1)
+    for number, share in enumerate(shares):
+        rows = indices[indices["share"] == share].set_index("input").loc[inputs]
+        axes = figure.add_axes((0.20 + number * width, 0.20, width - 0.025, 0.52))
+        y = np.arange(len(inputs))[::-1]
+        axes.barh(y, rows["total"], color=COLOUR_OF[share], alpha=0.35, height=0.62, edgecolor="#8a8a8a", linewidth=0.4)
+        axes.barh(y, rows["first_order"].clip(lower=0), color=COLOUR_OF[share], height=0.62, edgecolor="#8a8a8a", linewidth=0.4)
+        axes.set_xlim(0, 1.05)
+        axes.set_xticks([0, 0.5, 1], ["0", "0.5", "1"], fontsize=SMALL - 1)
+        axes.set_yticks(y, inputs if number == 0 else [""] * len(inputs), fontsize=SMALL, parse_math=False)
+        axes.set_title(f"{share.replace('_', ' ')}\n±{bands.loc[share, 'sd']:.4f}", fontsize=SMALL, loc="left")
+        axes.spines[["top", "right"]].set_visible(False)
+    return figure

@@ -19,6 +19,7 @@ def basis(stack: Stack, *, stack_file: Path, points: Points | None = None, **set
         tool = ""
     found: dict[str, Any] = {"the version of photonfate": tool, f"the stack file {stack_file}": file_hash(stack_file)}
     materials = [material for _, material, _ in stack.media]
+    materials += [material for each in stack.alternatives for material in each.materials]
     if points is not None:
         materials += [value for axis in points.axes for value in axis.values if isinstance(value, Material)]
     found |= {f"the table of {each.name}": each.sha256 for each in materials if each.sha256}

@@ -18,21 +18,27 @@ from optics.study.keypath import all_changed, without_doubts
 if TYPE_CHECKING:
     import pandas as pd
 
+Packed = tuple[Stack, list[dict[str, Any]], list[bool]]
+"""A stack, values by key path of some points, and whether to keep the wavelengths of each."""
+
 Progress = Callable[[int, int], None]
 """Called with how many points are done and how many there are."""
 
 
 @dataclass(frozen=True)
 class Plan:
-    """A study: a stack, its points, and whether answers are kept per wavelength."""
+    """A study: a stack, its points, and whether answers are kept per wavelength, of all points or of the first ones."""
 
     stack: Stack
     points: Points
     spectra: bool = False
+    spectral: int | None = None
 
-    def pack(self, points: Sequence[int]) -> tuple[Stack, list[dict[str, Any]], bool]:
+    def pack(self, points: Sequence[int]) -> Packed:
         """Return what a worker needs for some points."""
-        return without_doubts(self.stack), [self.points.values(point) for point in points], self.spectra
+        first = len(self.points) if self.spectral is None else self.spectral
+        kept = [self.spectra and point < first for point in points]
+        return without_doubts(self.stack), [self.points.values(point) for point in points], kept
 
 
 @dataclass(frozen=True)
@@ -107,10 +113,10 @@ def sweep(
     return collected(plan, ((point, found[point]) for point in range(len(points))))
 
 
-def work(packed: tuple[Stack, list[dict[str, Any]], bool]) -> list[Answer]:
+def work(packed: Packed) -> list[Answer]:
     """Return the answers of some points; what a worker does."""
     stack, points, spectra = packed
-    return [answer(all_changed(stack, values), spectra=spectra) for values in points]
+    return [answer(all_changed(stack, values), spectra=kept) for values, kept in zip(points, spectra, strict=True)]
 
 
 def row(plan: Plan, point: int, found: Answer) -> dict[str, Any]:
