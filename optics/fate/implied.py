@@ -97,7 +97,9 @@ def implied(sampled: Sampled, known: Given, *, reading: str, temperature_K: floa
     names = [each.name for each in sampled.readings]
     if reading not in names:
         raise InputError(f'reading: found "{reading}", expected one of {", ".join(names)}')
-    Faults().number("temperature_K", temperature_K, unit="K", above=0, example=300)
+    faults = Faults()
+    faults.number("temperature_K", temperature_K, unit="K", above=0, example=300)
+    faults.settle()
     if known.kind == "external":
         chosen = sampled.reading(reading)
         try:
