@@ -36,7 +36,7 @@ class Settings:
     keep closure within 1e-7 and shares within 1e-6. ``threads`` share the wavelengths.
     """
 
-    tolerance: float = 1e-8
+    tolerance: float = 3e-8
     finer: int = 1
     threads: int = 2
 
@@ -234,14 +234,14 @@ def riser(scene: Scene, end: Real, settings: Settings, *, flights: bool = False)
         return Integral(np.zeros((2 if flights else 1, scene.wavelengths)), np.zeros(scene.wavelengths))
     return integrate(
         density,
-        _riser_rows(scene, owner, end),
+        riser_rows(scene, owner, end),
         wavelengths=scene.wavelengths,
         order=32 * settings.finer,
         tolerance=settings.tolerance,
     )
 
 
-def _riser_rows(scene: Scene, owner: Index, end: Real) -> Rows:
+def riser_rows(scene: Scene, owner: Index, end: Real) -> Rows:
     """Return risers cut at the height of the branch points of absorbing media that touch the group."""
     height = end[owner] * scene.film_index.imag[owner] / scene.film_index.real[owner]
     cuts = [np.clip(scene.index[side.touching, owner].imag / height, 0.0, 1.0) for side in scene.sides]
