@@ -272,10 +272,10 @@ def _other_lines(
         if _comment(line):
             comments += first < place < last
             continue
-        inside = first < place < last
+        if place < first:  # a header or metadata; whoever reads the header looks for rows lost between it and the rest
+            continue
         broken = number_in(each[0], dialect.decimal) is not None or (len(each) == width and _some(each, dialect))
-        near = place > last or (place < first and len(each) == width)
-        if inside or (broken and near):
+        if place < last or broken:
             faults.append(f"line {number}: {_broken(each, names, dialect)}")
     return faults, [f"{comments} comment lines between the rows passed over"] if comments else []
 

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optics.errors import InputError
-from optics.media.dialects import DECIMALS, SEPARATORS, Grid, grid_of_cells, grid_of_text, text_of
+from optics.media.dialects import COMMENT, DECIMALS, SEPARATORS, Grid, grid_of_cells, grid_of_text, text_of
 from optics.media.dispersion import Tabulated
 from optics.media.headings import AXIS, AXIS_UNITS, Heading, heading, unit_named
 from optics.media.labvalues import Values, index_from, ordered, value_faults
@@ -27,7 +27,7 @@ __all__ = ["Hints", "LabTable", "is_workbook", "parse_lab", "read_hashed", "read
 
 Real = NDArray[np.float64]
 
-_BEGINS = re.compile(r"[\s\"']*[+-]?[.,]?\d")  # as a row of numbers does
+_NUMBER_WITHIN = re.compile(r"(^|[\s;,\"'])[+-]?[.,]?\d")  # a cell that begins as a number does
 WORKBOOKS = (".xlsx", ".xlsm")
 NEEDED = {"nk": "n and k (or eps1 and eps2, or n and alpha)", "k": "k or alpha"}
 
@@ -244,11 +244,13 @@ def _with_nothing_lost(
     read: tuple[Heading, ...], number: int, grid: Grid, place: str
 ) -> tuple[tuple[Heading, ...], int]:
     """Return the header, unless a line between it and the numbers begins like a row that is broken."""
-    lost = [(line, text) for line, text in grid.above if line > number and _BEGINS.match(text)]
+    lost = [
+        (line, text.strip())
+        for line, text in grid.above
+        if line > number and not text.lstrip().startswith(COMMENT) and _NUMBER_WITHIN.search(text)
+    ]
     if lost:
-        raise InputError(
-            f"{place}: line {line}: found {shown(text.strip())}, expected a row of numbers" for line, text in lost
-        )
+        raise InputError(f"{place}: line {line}: found {shown(text)}, expected a row of numbers" for line, text in lost)
     return read, number
 
 

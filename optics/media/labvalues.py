@@ -184,6 +184,9 @@ def index_from(
         _refuse_disagreement(k, other, how, name, place)
     if how not in ("n and k", "k"):
         converted.append(f"{'n and k' if 'eps1' in how else 'k'} from {how}")
+    if n is not None and not (n > 0.0).all():
+        row = values.lines[order][int(np.argmin(n > 0.0))]
+        raise InputError(f"{place}: line {row}: n from {how} is {n.min():g}, expected a number above 0")
     if n is None and wanted == "nk":
         n, said = _n_elsewhere(hints, wavelength)
         converted.append(said)
