@@ -14,8 +14,8 @@ THINNEST_ZONE = 1e-12
 """A bound zone narrower than this, in units of k0, is none."""
 
 
-CLOSURE_MISSED = 3e-8
-SHARE_MISSED = 3e-7
+CLOSURE_MISSED = 4e-8
+SHARE_MISSED = 6e-7
 """Beyond these a wavelength is done again, finer: a sharp line slipped between the nodes."""
 
 ROUNDS = 3
@@ -25,7 +25,8 @@ def account(scene: Scene, settings: Settings) -> Account:
     """Integrate everything, and again, finer, at the wavelengths where independent paths disagree."""
     whole = _once(scene, settings)
     for _ in range(ROUNDS):
-        missed = np.flatnonzero((np.abs(whole.miss) > CLOSURE_MISSED) | (_error(whole) > SHARE_MISSED))
+        power = np.abs(whole.power)
+        missed = np.flatnonzero((np.abs(whole.miss) > CLOSURE_MISSED * power) | (_error(whole) > SHARE_MISSED * power))
         if not len(missed):
             break
         settings = settings.strict

@@ -21,6 +21,9 @@ FEWEST_NODES = 16.0
 NODES_PER_PHASE = 1.3
 """Grid nodes, and more per radian of phase through a resonator; a line takes pi: none hides between two nodes."""
 
+NARROWEST = 1e-12
+"""Half width below which the flux of a line drowns in rounding; what such a line holds shows as error."""
+
 SAME_LINE = 1e-3
 """Poles closer than this, in units of their half width, are one line."""
 
@@ -198,7 +201,7 @@ def _lines_of(scene: Scene, panels: Rows, resonator: Resonator) -> tuple[Index, 
     logs = (log[which, panel, node], log[which, panel, node + 1])
     pole, mismatch = _secants(view, resonator, which, ends, logs)
     inside = (pole.real > panels.shape[0][panel]) & (pole.real < panels.shape[1][panel])
-    found = inside & (pole.imag > 0.0) & (np.abs(mismatch) < 1e-3)
+    found = inside & (pole.imag > NARROWEST) & (np.abs(mismatch) < 1e-3)
     return panel[found], pole[found]
 
 

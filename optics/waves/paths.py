@@ -110,8 +110,9 @@ def integrate(
     """Integrate ``density`` along every row; where nested rules disagree, double the order, then halve the row.
 
     With e1 the difference between the half and the quarter rule and e2 that between the full and the half rule, the
-    error of a row is taken as e2 min(1, e2/e1): right for a rule that converges by a factor with every doubling, and
-    too large for one that gains digits in proportion to its order. Rows that still disagree after ``halvings`` are
+    error of a row is taken as e2 min(1, e2/e1)^(1/2). A rule that converges by a factor with every doubling errs by
+    e2 times that factor, one that gains digits in proportion to its order by far less; the root leaves room for e2
+    being small by chance. Rows that still disagree after ``halvings`` are
     counted with what they have.
     """
     _keep_heap()
@@ -162,4 +163,4 @@ def _weighed(rows: Rows, known: Real, order: int) -> tuple[Real, Real]:
     total = known @ fejer(order)[1] * (rows.stop - rows.start)[:, None]
     last, before = np.abs(np.diff(total, axis=2)).transpose(2, 0, 1)
     ratio = np.minimum(last / np.maximum(before, 1e-300), 1.0)
-    return total[..., 0], (last * ratio).max(axis=0)
+    return total[..., 0], (last * np.sqrt(ratio)).max(axis=0)
