@@ -1,0 +1,259 @@
+"""Wave optics over the depth of the film: from which slice to which slice, and from each slice to every other end.
+
+Below a dipole at depth a the field is u(a) v(a')/D at depth a', u the wave that is right above and v the one that is right
+below; above it the same with a and a' exchanged. Source and landing slices therefore part, and a matrix is a product over
+the nodes of the in-plane wave number (fluxes and power as in Chance, Prock & Silbey 1978 and Neyts 1998). Light that
+lands in the slice it was born in is what is left of the power, which is integrated on the path of `optics.fate.wave`.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from optics.fate import wave
+from optics.fate.exits import light_lines, split_panels
+from optics.fate.wave import Settings
+from optics.transport.landing import ENDS, SEEN_FROM, Landing, end_amounts
+from optics.transport.slices import Standing, from_above, from_below, path_means, standing
+from optics.waves import curves
+from optics.waves.coherent import Complex, Real, admittances, reflection, squared
+from optics.waves.curves import Points
+from optics.waves.modes import faces, find
+from optics.waves.paths import Index, Rows, fejer
+from optics.waves.plates import Waves
+from optics.waves.scene import Scene, View
+from optics.waves.source import Film
+
+HALF_CELL = 24
+"""Order of the rule on each side of a guided line."""
+
+BLOCK = 1500
+"""Nodes done at a time: with fifty slices the arrays stay in cache."""
+
+
+def land(scene: Scene, edges: Real, settings: Settings) -> Landing:
+    """Return where light from every slice lands, in units of the bulk power.
+
+    Parameters
+    ----------
+    scene
+        The stack.
+    edges
+        Edges of the slices in units of 1/k0, (wavelength, edge), from zero to the film's thickness.
+    settings
+        How finely to integrate.
+    """
+    out = Landing.empty(edges.shape[1] - 1, scene.wavelengths)
+    out.power[:] = _power(scene, edges, settings)
+    for zone in (_open_nodes(scene, settings), _bound_nodes(scene)):
+        for nodes in zone:
+            _add(out, scene, edges, nodes)
+    return out
+
+
+@dataclass(frozen=True)
+class Nodes:
+    """Nodes of one block: owners (row,), points and weights (row, node), the polarisations to count (pol, row, 1)."""
+
+    owner: Index
+    points: Points
+    weight: Real
+    counts: Real
+    bound: bool
+
+
+def _open_nodes(scene: Scene, settings: Settings) -> list[Nodes]:
+    owner, low, high = split_panels(np.zeros(scene.wavelengths), scene.open_end, light_lines(scene))
+    nodes, weights = fejer(wave.panel_order(scene, settings))
+    rows = curves.panels(owner, low, high)
+    step = max(1, BLOCK // len(nodes))
+    out = []
+    for first in range(0, len(rows), step):
+        part = rows.take(slice(first, first + step))
+        u = np.broadcast_to(nodes, (len(part), len(nodes)))
+        points = curves.on_panel(part, u, scene.film_index[part.owner, None])
+        counts = np.ones((2, len(part), 1))
+        out.append(Nodes(part.owner, points, points.slope * weights[:, 0], counts, bound=False))
+    return out
+
+
+def _bound_nodes(scene: Scene) -> list[Nodes]:
+    """Return nodes of the bound zone, crowded about every guided line with a sinh map, a set a polarisation."""
+    owner, polarisation, anchor, length, width = _half_cells(scene)
+    nodes, weights = fejer(HALF_CELL)
+    step = max(1, BLOCK // len(nodes))
+    out = []
+    for first in range(0, len(owner), step):
+        part = slice(first, first + step)
+        at, reach, wide = anchor[part, None], length[part, None], width[part, None]
+        sharp = wide > 0.0
+        top = np.arcsinh(np.abs(reach) / np.where(sharp, wide, 1.0))
+        away = np.where(sharp, wide * np.sinh(top * nodes), np.abs(reach) * nodes * nodes)
+        slope = np.where(sharp, wide * top * np.cosh(top * nodes), 2.0 * np.abs(reach) * nodes)
+        q = at + np.sign(reach) * away
+        points = Points(q, slope, scene.film_index[owner[part], None] - q)
+        counts = np.stack([polarisation[part] == 0, polarisation[part] == 1])[..., None].astype(float)
+        out.append(Nodes(owner[part], points, slope * weights[:, 0], counts, bound=True))
+    return out
+
+
+def _half_cells(scene: Scene) -> tuple[Index, Index, Real, Real, Real]:
+    """Return owner, polarisation, anchor, signed length and line width of half the distance between marks."""
+    found = find(scene)
+    lines = np.vstack([light_lines(scene), scene.film_index.real[None]])
+    low, high = scene.open_end, scene.far_end
+    there = high - low > 1e-9
+    owners = [found.wavelength]
+    pols = [found.polarisation]
+    marks, widths = [found.index.real], [np.maximum(found.index.imag, 1e-14)]
+    for row in (low, high, *lines):
+        inside = np.flatnonzero(there & (row >= low) & (row <= high))
+        for polarisation in (0, 1):
+            owners.append(inside)
+            pols.append(np.full(len(inside), polarisation))
+            marks.append(row[inside])
+            widths.append(np.zeros(len(inside)))
+    owner, pol, mark, width = (np.concatenate(each) for each in (owners, pols, marks, widths))
+    order = np.lexsort((mark, pol, owner))
+    owner, pol, mark, width = owner[order], pol[order], mark[order], width[order]
+    gap = np.where((np.diff(owner) == 0) & (np.diff(pol) == 0), np.diff(mark), 0.0)
+    cell = np.flatnonzero(gap > 1e-13)
+    half = 0.5 * gap[cell]
+    left, right = cell, cell + 1
+    return (
+        np.concatenate([owner[left], owner[right]]),
+        np.concatenate([pol[left], pol[right]]),
+        np.concatenate([mark[left], mark[right]]),
+        np.concatenate([half, -half]),
+        np.concatenate([width[left], width[right]]),
+    )
+
+
+def _power(scene: Scene, edges: Real, settings: Settings) -> Real:
+    """Return the power radiated by births in each slice, (slice, wavelength)."""
+    out = np.zeros((edges.shape[1] - 1, scene.wavelengths)) - wave.exchange_with_itself(scene)
+    every = np.arange(scene.wavelengths)
+    dips = Rows(every, np.zeros(len(every)), np.ones(len(every)), scene.far_end[None])
+    dark = np.flatnonzero(scene.film_index.imag > 0.0)
+    risers = wave.riser_rows(scene, dark, scene.far_end) if len(dark) else dips.take(dark)
+    for rows, curve, order in (
+        (dips, curves.on_dip, wave.path_order(scene, settings)),
+        (risers, curves.on_riser, 32 * settings.finer),
+    ):
+        nodes, weights = fejer(order)
+        step = max(1, BLOCK // len(nodes))
+        for first in range(0, len(rows), step):
+            part = rows.take(slice(first, first + step))
+            width = (part.stop - part.start)[:, None]
+            view = scene.view(part.owner)
+            points = curve(part, part.start[:, None] + width * nodes, view.film.index)
+            value = _power_on_path(view, edges[part.owner], points, width * weights[:, 0])
+            np.add.at(out.T, part.owner, value)
+    return out
+
+
+def _power_on_path(view: View, edges: Real, points: Points, weight: Real) -> Real:
+    """Return the power of every slice from the nodes of some rows, (row, slice); see `optics.waves.source.density`."""
+    film = view.film
+    kz = 1j * np.sqrt(-points.short_of_film * (film.index + points.q))
+    own = admittances(kz, film.eps)
+    up, down = (reflection(own, face) for face in faces(view, points.q))
+    loop = up * down * np.exp(2j * film.phase * kz)
+    scale = points.q / film.real_index * points.slope * weight / (1.0 - loop)
+    h = film.in_plane
+    s = 0.75 * h / kz * scale[0]
+    along = 0.75 * h / film.eps * kz * scale[1]
+    upright = 1.5 * (1.0 - h) / film.eps * points.q**2 / kz * scale[1]
+    same = (s * (1.0 + loop[0]) + (along + upright) * (1.0 + loop[1])).sum(axis=1)
+    up_weight = s * up[0] + (upright - along) * up[1]
+    down_weight = s * down[0] + (upright - along) * down[1]
+    mean_up, mean_down = path_means(edges, kz)
+    moved = np.matmul(mean_up, up_weight[:, :, None]) + np.matmul(mean_down, down_weight[:, :, None])
+    out: Real = (same[:, None] + moved[:, :, 0]).real
+    return out
+
+
+def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
+    """Add what the nodes of one block say about every pair of slices and every end."""
+    waves = Waves(scene.view(nodes.owner), nodes.points.q, nodes.points.short_of_film)
+    film = waves.view.film
+    kz, own = waves.kz(scene.film), waves.own(scene.film)
+    looks = (
+        waves.look(scene.layers_up, scene.above.touching),
+        waves.look(scene.layers_down, scene.below.touching),
+    )
+    mirrors = (reflection(own, looks[0].face), reflection(own, looks[1].face))
+    over = standing(edges[nodes.owner], kz)
+    responses = [wave.response(waves, k) if s.plates and not nodes.bound else None for k, s in enumerate(scene.sides)]
+    ends = end_amounts(waves, responses, looks, mirrors, over.whole[:, 0], bound=nodes.bound)
+    strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * np.exp(2j * film.phase * kz))
+    for polarisation in (0, 1):
+        rows = np.flatnonzero(nodes.counts[polarisation])
+        if len(rows):
+            weights = (part[rows] for part in _weights(film, nodes.points.q, kz, polarisation))
+            block = _Block(over.at(rows), np.exp(2j * film.phase[rows] * kz.real[rows]), *weights)
+            pair = (mirrors[0][polarisation][rows], mirrors[1][polarisation][rows])
+            mine = (ends[0][:, polarisation, rows], ends[1][:, polarisation, rows])
+            width = np.diff(edges[nodes.owner[rows]], axis=1)
+            _add_block(out, nodes.owner[rows], block, pair, mine, strength[polarisation][rows], width)
+
+
+@dataclass(frozen=True)
+class _Block:
+    """Weights of |F|^2 and |F'/kz|^2 in what a slice sends and in what it takes, (row, node), and the slices' integrals."""
+
+    over: Standing
+    twice: Complex
+    plain: Real
+    slope: Real
+    send: Real  # what is sent, over plain |F|^2 + slope |F'/kz|^2
+    take: Real
+    upright: Real  # what is sent beyond that, over |F|^2
+
+    def of(self, up: Complex | None, down: Complex | None, plain: Real, slope: Real) -> Real:
+        """Integrate over slices the wave that is right above (``up``) or below (``down``)."""
+        if up is not None:
+            return from_above(self.over, up, plain, slope)
+        if down is None:
+            raise ValueError("one of the mirrors is needed")
+        return from_below(self.over, down, self.twice, plain, slope)
+
+
+def _weights(film: Film, q: Real, kz: Complex, polarisation: int) -> tuple[Real, Real, Real, Real, Real]:
+    """Return plain, slope, send, take and upright of `_Block`, (row, node).
+
+    s: in-plane dipoles and absorption both go with |F|^2. p: a dipole in the plane goes with |F'|^2, an upright one with
+    q^2 |F|^2, absorption with their sum; when all directions are alike what is sent and what is taken are the same.
+    """
+    h, size = film.in_plane, squared(kz)
+    one, scale = np.ones_like(q), 0.375 * q / film.real_index
+    loss = film.eps.imag * one
+    if polarisation == 0:
+        return one, 0.0 * one, h * scale / size, loss, 0.0 * one
+    send = h * scale / size
+    return q * q, size, send, loss / squared(film.eps), (2.0 * (1.0 - h) - h) * scale * q * q / size
+
+
+def _add_block(
+    out: Landing, owner: Index, block: _Block, mirrors: tuple[Complex, Complex], ends: tuple[Real, Real], strength: Real,
+    width: Real,
+) -> None:
+    """Add one polarisation's rows: products over the nodes of what slices send and what slices and ends take."""
+    zero = np.zeros_like(block.plain)
+    right = [block.of(mirrors[0], None, block.plain, block.slope), block.of(None, mirrors[1], block.plain, block.slope)]
+    sent = [each * (block.send * strength)[:, None] for each in right]
+    if block.upright.any():
+        sent[0] += block.of(mirrors[0], None, block.upright * strength, zero)
+        sent[1] += block.of(None, mirrors[1], block.upright * strength, zero)
+    sent = [each / width[:, :, None] for each in sent]
+    taken = [np.swapaxes(each * block.take[:, None], 1, 2) for each in right]
+    inside = np.tril(np.matmul(sent[1], taken[0]), -1) + np.triu(np.matmul(sent[0], taken[1]), 1)
+    gone = sum(np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)], 0, 2)) for k in (0, 1))
+    for k in (0, 1):
+        back = [ends[way][SEEN_FROM[k]] for way in (0, 1)]
+        if back[0].any() or back[1].any():
+            coming = sent[1] * back[0][:, None] + sent[0] * back[1][:, None]
+            lands = taken[1 - k]  # light from above is the wave that is right below
+            inside += np.matmul(coming, lands / lands.sum(axis=2, keepdims=True))
+    np.add.at(out.matrix, owner, inside)
+    np.add.at(out.ends, owner, gone)

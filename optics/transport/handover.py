@@ -1,0 +1,173 @@
+"""What a recycling, diffusion or device model takes over from a stack: tables and averaged numbers in one place."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from optics.fate.account import ledger_of
+from optics.fate.drawing import drawing_of
+from optics.fate.ends import SampleEnds, follow
+from optics.fate.ledger import SHARES
+from optics.fate.readings import LOST_EDGES, READINGS, Reading, per_wavelength, readings
+from optics.fate.solve import Result, solve
+from optics.fate.wave import Settings
+from optics.sample import Sample, at_wavelengths
+from optics.stack import Stack
+from optics.units import absorption_per_cm
+from optics.waves.coherent import Real
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+LEADING_READING = "wide"
+"""The reading whose p_r is set beside the averages: it needs no size of the sample."""
+
+
+@dataclass(frozen=True)
+class Handover:
+    """Everything of one stack that another model may read.
+
+    Attributes
+    ----------
+    result
+        What `optics.solve` returned.
+    tables
+        By name, the most wanted first; columns carry their unit in their name.
+    numbers
+        Averages over all photons born, by name.
+    warnings, assumptions
+        Sentences, those of ``result`` included.
+    """
+
+    result: Result
+    tables: dict[str, pd.DataFrame]
+    numbers: dict[str, float]
+    warnings: tuple[str, ...]
+    assumptions: tuple[str, ...]
+
+
+def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
+    """Work out everything that a model may take over from a stack.
+
+    Parameters
+    ----------
+    stack
+        The stack.
+    settings
+        How finely to integrate.
+
+    Raises
+    ------
+    InputError
+        As `optics.solve`.
+    """
+    settings = settings or Settings()
+    result = solve(stack, settings=settings)
+    read, by_wavelength = _readings(result, settings)
+    tables = {} if result.table is None else {"outcomes": result.table}
+    tables |= {
+        "outcomes_ray": result.ray_table,
+        "readings": readings_table(read),
+        "radiative": radiative_table(result, read),
+        "index": index_table(result),
+        "where": result.where,
+        "spectra": result.spectra,
+        "reading_spectra": by_wavelength,
+    }
+    return Handover(result, tables, numbers_of(result, read), result.warnings, result.assumptions)
+
+
+def _readings(result: Result, settings: Settings) -> tuple[tuple[Reading, ...], pd.DataFrame]:
+    """Return the readings averaged over the births, and a row a wavelength and reading."""
+    import pandas as pd
+
+    stack, model = result.stack, "ray" if result.table is None else "wave"
+    table = result.ray_table if result.table is None else result.table
+    sample = stack.sample or Sample()
+    drawing = drawing_of(stack)
+    ledger = ledger_of(drawing, settings, model=model)
+    ends: SampleEnds = follow(drawing, ledger, sample, settings, model=model)
+    makes = at_wavelengths("recycling_share", sample.recycling_share, drawing.wavelength_nm)
+    born = table["birth_weight"].to_numpy()
+    factor, lost = result.averages["rate_factor"], sample.edges == "lost"
+    read = readings(ends, births=born, rate_factor=factor, recycling_share=makes, edges_lost=lost)
+    parts = []
+    for name in (*READINGS, LOST_EDGES) if lost else READINGS:
+        p_r, p_e, p_a = per_wavelength(ends, name, makes)
+        head = {"wavelength_nm": drawing.wavelength_nm, "reading": name}
+        parts.append(pd.DataFrame(head | {"p_r": p_r, "p_e": p_e, "p_a": p_a}))
+    whole = pd.concat(parts, ignore_index=True).sort_values("wavelength_nm", kind="stable", ignore_index=True)
+    return read, whole
+
+
+def readings_table(read: tuple[Reading, ...]) -> pd.DataFrame:
+    """Return a row a reading: its shares, and the set that refers to emission in the bulk."""
+    import pandas as pd
+
+    rows = []
+    for each in read:
+        shares = {"p_r": each.p_r, "p_e": each.p_e, "p_a": each.p_a, "rate_factor": each.rate_factor}
+        bulk = dict(zip(("p_r_bulk", "p_e_bulk", "p_a_bulk"), each.bulk, strict=True))
+        rows.append({"reading": each.name} | shares | bulk)
+    return pd.DataFrame(rows)
+
+
+def radiative_table(result: Result, read: tuple[Reading, ...]) -> pd.DataFrame:
+    """Return radiative coefficients: the bulk's, times P, and times P (1 - p_r) of each reading.
+
+    ``factor`` is what multiplies the bulk's rate, always known. Rate and coefficient are not a number unless births
+    follow from absorption (and, for the coefficient, the intrinsic carrier density is given).
+    """
+    import pandas as pd
+
+    factor = result.averages["rate_factor"]
+    rows: list[tuple[str, str, float]] = [("bulk", "", 1.0), ("times P", "", factor)]
+    rows += [("times P (1 - p_r)", each.name, factor * (1.0 - each.p_r)) for each in read]
+    known = result.radiation
+    rate = np.nan if known is None else known.equilibrium_rate
+    coefficient = np.nan if known is None or known.coefficient is None else known.coefficient
+    table = pd.DataFrame(rows, columns=["quantity", "reading", "factor"])
+    return table.assign(rate_per_cm3_s=table["factor"] * rate, coefficient_cm3_per_s=table["factor"] * coefficient)
+
+
+def index_table(result: Result) -> pd.DataFrame:
+    """Return the index values used, tidy: a row a wavelength and medium, from above to below."""
+    import pandas as pd
+
+    wide = result.index
+    wavelength: Real = wide["wavelength_nm"].to_numpy()
+    names = [name.removesuffix(" n") for name in wide.columns if name.endswith(" n")]
+    parts = [
+        pd.DataFrame(
+            {
+                "wavelength_nm": wavelength,
+                "layer": name,
+                "n": wide[f"{name} n"],
+                "k": wide[f"{name} k"],
+                "absorption_per_cm": absorption_per_cm(wide[f"{name} k"].to_numpy(), wavelength),
+            }
+        )
+        for name in names
+    ]
+    return pd.concat(parts, ignore_index=True).sort_values("wavelength_nm", kind="stable", ignore_index=True)
+
+
+def numbers_of(result: Result, read: tuple[Reading, ...]) -> dict[str, float]:
+    """Return the averages by name."""
+    averages = result.averages
+    numbers = {name: averages[name] for name in (*SHARES, "rate_factor")}
+    numbers["taken_back"] = averages["reabsorbed"] + averages["guided_reabsorbed"]
+    numbers["held"] = averages["substrate"] + averages["cover"]
+    numbers |= {name: averages[name] for name in ("collected",) if name in averages}
+    for each in read:
+        label = each.name.replace(" ", "_")
+        numbers |= {f"p_r_{label}": each.p_r, f"p_e_{label}": each.p_e, f"p_a_{label}": each.p_a}
+        numbers[f"radiative_factor_{label}"] = each.rate_factor * (1.0 - each.p_r)
+    numbers |= {f"ray_{name}": value for name, value in result.ray_averages.items() if name in SHARES}
+    if result.radiation is not None:
+        numbers["temperature_K"] = result.radiation.temperature_K
+    numbers["numerical_error"] = result.numerical_error
+    return numbers

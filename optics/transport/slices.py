@@ -1,0 +1,96 @@
+"""Waves and rays over the slices of a film: closed forms of everything that is averaged or summed over a slice.
+
+Depths are counted from the film's upper face in units of 1/k0. A standing wave that decays upwards, e^(-i kz a) + r e^(i
+kz a), or downwards, e^(i kz a) + r e^(i kz (2d - a)), has |F|^2 and |F'|^2 made of e^(2 Im kz a), e^(-2 Im kz a), and the
+real and imaginary part of e^(2 i Re kz a): their integrals over the slices are all that is needed.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from optics.waves.coherent import Complex, Real, squared
+from optics.waves.paths import Index
+
+MOST_FADING = 690.0
+"""Exponents beyond which exp overflows; films this dark pass nothing from slice to slice."""
+
+
+@dataclass(frozen=True)
+class Standing:
+    """Integrals over slices, (row, slice, node): of both exponentials and of the beat, of which ``beat`` is complex."""
+
+    growing: Real
+    fading: Real
+    cosine: Real
+    sine: Real
+    whole: Real  # exp(-2 Im kz d), (row, 1, node)
+
+    def at(self, rows: Index) -> "Standing":
+        """Return some of the rows."""
+        if len(rows) == len(self.growing):
+            return self
+        return Standing(self.growing[rows], self.fading[rows], self.cosine[rows], self.sine[rows], self.whole[rows])
+
+
+def standing(edges: Real, kz: Complex) -> Standing:
+    """Integrate over the slices between ``edges`` (row, edge), from zero to the thickness; ``kz`` is (row, node)."""
+    depth = edges[:, -1, None]
+    fade = np.minimum(2.0 * kz.imag, MOST_FADING / depth)[:, None, :]
+    turn = 2.0 * kz.real[:, None, :]
+    at = edges[:, :, None]
+    middle, half = 0.5 * (at[:, 1:] + at[:, :-1]), 0.5 * (at[:, 1:] - at[:, :-1])
+    width = 2.0 * half * _sinhc(fade * half)
+    grown = np.exp(fade * middle)
+    beat = 2.0 * half * np.sinc(turn * half / np.pi)
+    angle = turn * middle
+    return Standing(
+        width * grown,
+        width / grown,
+        beat * np.cos(angle),
+        beat * np.sin(angle),
+        np.exp(-fade * depth[:, :, None]),
+    )
+
+
+def _sinhc(x: Real) -> Real:
+    small = x < 1e-2
+    if small.all():
+        out: Real = 1.0 + x * x / 6.0 * (1.0 + x * x / 20.0)
+        return out
+    safe = np.where(small, 1.0, x)
+    return np.where(small, 1.0 + x * x / 6.0 * (1.0 + x * x / 20.0), np.sinh(safe) / safe)
+
+
+def from_above(over: Standing, mirror: Complex, plain: Real, slope: Real) -> Real:
+    """Return plain |F|^2 + slope |F'/kz|^2 over the slices for the wave that is right above, (row, slice, node).
+
+    ``mirror`` is the reflection of the upper half, (row, node); so are the weights ``plain`` and ``slope``.
+    """
+    direct, mixed = (plain + slope)[:, None], 2.0 * (plain - slope)
+    out: Real = direct * over.growing
+    out += (direct * squared(mirror)[:, None]) * over.fading
+    out += (mixed * mirror.real)[:, None] * over.cosine
+    out -= (mixed * mirror.imag)[:, None] * over.sine
+    return out
+
+
+def from_below(over: Standing, mirror: Complex, twice: Complex, plain: Real, slope: Real) -> Real:
+    """Return the same for the wave that is right below; ``twice`` is exp(2 i Re kz d), (row, node)."""
+    direct, mixed = (plain + slope)[:, None], 2.0 * (plain - slope)
+    beat = mirror * twice * over.whole[:, 0]
+    out: Real = direct * over.fading
+    out += (direct * (squared(mirror) * over.whole[:, 0] ** 2)[:, None]) * over.growing
+    out += (mixed * beat.real)[:, None] * over.cosine
+    out += (mixed * beat.imag)[:, None] * over.sine
+    return out
+
+
+def path_means(edges: Real, kz: Complex) -> tuple[Complex, Complex]:
+    """Return the means over each slice of exp(2 i kz a) and exp(2 i kz (d - a)), (row, slice, node); Im kz >= 0."""
+    at = edges[:, :, None]
+    depth = at[:, -1:, :]
+    step = 2j * kz[:, None, :] * np.diff(at, axis=1)
+    step = np.where(step == 0.0, 1e-300, step)
+    mean = np.expm1(step) / step
+    return np.exp(2j * kz[:, None, :] * at[:, :-1]) * mean, np.exp(2j * kz[:, None, :] * (depth - at[:, 1:])) * mean
