@@ -20,6 +20,8 @@ import click
 def solve(stack: Path, output: Path | None, measured: Path | None, laid_over: str | None, replace: bool) -> None:
     """Compute where the photons of a stack file end, and write a result folder.
 
+    STACK is a stack file, or a result folder or bundle whose stack is computed again.
+
     \b
     Example:
       photonfate start my-film
@@ -33,10 +35,12 @@ def solve(stack: Path, output: Path | None, measured: Path | None, laid_over: st
     from optics.output.result import result_folder, write_result
     from optics.stackfile import read_stack
     from optics.stackfile.births import read_births
+    from optics.stackfile.reading import stack_file_in
     from optics.study.inputs import input_uncertainty
 
-    loaded = read_stack(stack)
     folder = output or result_folder(stack)
+    stack = stack_file_in(stack)
+    loaded = read_stack(stack)
     check_target(folder, replace=replace)
     seen = None if measured is None else read_births(measured, place=str(measured))
     result = solve_stack(loaded)

@@ -75,6 +75,11 @@ def _seal(record: Mapping[str, Any]) -> str:
     return hashlib.sha256(json.dumps(record, sort_keys=True).encode()).hexdigest()
 
 
+def tool_version() -> str:
+    """Return the version of this tool; empty where it runs without being installed."""
+    return _version(TOOL)
+
+
 def _version(distribution: str) -> str:
     try:
         return version(distribution)

@@ -11,6 +11,7 @@ from optics.faults import Faults
 from optics.stack import Stack
 from optics.stackfile.tables import build_stack
 
+COPY = "stack.toml"  # what folders of results call their copy of the stack file
 LIMIT_BYTES = 5_000_000  # a list of 100 000 wavelengths has 1 MB
 
 
@@ -33,6 +34,12 @@ def read_stack(path: str | Path) -> Stack:
         content = _content(file)
     faults.settle()
     return parse_stack(content, folder=file.parent, filename=str(path))
+
+
+def stack_file_in(path: Path) -> Path:
+    """Return the stack file meant: a folder of results stands for the copy that lies in it."""
+    inside = path / COPY
+    return inside if inside.is_file() else path
 
 
 def parse_stack(text: str, *, folder: str | Path, filename: str = "stack.toml") -> Stack:

@@ -14,16 +14,18 @@ from optics.fate.ledger import SHARES
 from optics.fate.readings import LOST_EDGES, READINGS, Reading, per_wavelength, readings
 from optics.fate.solve import Result, solve
 from optics.fate.wave import Settings
+from optics.roughness import graded
 from optics.sample import Sample, at_wavelengths
 from optics.stack import Stack
+from optics.transport.inplane import InPlane, inplane
 from optics.units import absorption_per_cm
 from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd
 
-LEADING_READING = "wide"
-"""The reading whose p_r is set beside the averages: it needs no size of the sample."""
+TAKEN = "taken:"
+"""How the columns of modes begin that say what a layer absorbs."""
 
 
 @dataclass(frozen=True)
@@ -55,7 +57,7 @@ def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
     Parameters
     ----------
     stack
-        The stack.
+        The stack; without a sample of its own its readings are those of a sample of defaults.
     settings
         How finely to integrate.
 
@@ -66,18 +68,60 @@ def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
     """
     settings = settings or Settings()
     result = solve(stack, settings=settings)
+    plane = inplane(stack, settings=settings)
     read, by_wavelength = _readings(result, settings)
     tables = {} if result.table is None else {"outcomes": result.table}
     tables |= {
         "outcomes_ray": result.ray_table,
         "readings": readings_table(read),
         "radiative": radiative_table(result, read),
+        "kernel": plane.kernel,
+        "exponentials": plane.exponentials,
+        "compact": plane.compact,
         "index": index_table(result),
         "where": result.where,
         "spectra": result.spectra,
         "reading_spectra": by_wavelength,
+        "guided_spectrum": plane.guided_spectrum,
     }
-    return Handover(result, tables, numbers_of(result, read), result.warnings, result.assumptions)
+    if len(plane.modes):
+        fixed, absorbers = mode_tables(plane.modes)
+        tables |= {"modes": fixed, "mode_absorbers": absorbers}
+    tables["kernel_spectra"] = plane.by_wavelength
+    said = (result.assumptions, plane.assumptions, (_sample_said(stack),))
+    return Handover(
+        result,
+        tables,
+        numbers_of(result, read) | plane_numbers(plane),
+        _once(result.warnings, plane.warnings),
+        _once(*said),
+    )
+
+
+def _once(*sentences: tuple[str, ...]) -> tuple[str, ...]:
+    return tuple(dict.fromkeys(each for part in sentences for each in part))
+
+
+def _sample_said(stack: Stack) -> str:
+    sample = stack.sample or Sample()
+    given = "" if stack.sample else " (no sample given)"
+    return f'readings: the edge lies at {sample.to_edge_mm:g} mm, edges = "{sample.edges}"{given}'
+
+
+def plane_numbers(plane: InPlane) -> dict[str, float]:
+    """Return the averages of transport in the plane by names that end in their unit."""
+    renamed = {"within_90_um": "90_percent_within_um", "within_99_um": "99_percent_within_um"}
+    return {f"inplane_{renamed.get(name, name)}": value for name, value in plane.averages.items()}
+
+
+def mode_tables(modes: pd.DataFrame) -> tuple[pd.DataFrame, pd.DataFrame]:
+    """Return the modes without their absorbers, and the absorbers of each, tidy."""
+    keys = ["wavelength_nm", "polarisation", "order"]
+    columns = [name for name in modes.columns if name.startswith(TAKEN)]
+    tidy = modes.melt(id_vars=keys, value_vars=columns, var_name="layer", value_name="absorbed_share")
+    tidy = tidy[tidy["absorbed_share"] > 0.0]
+    tidy = tidy.assign(layer=tidy["layer"].str.removeprefix(TAKEN)).sort_values(keys, kind="stable", ignore_index=True)
+    return modes.drop(columns=columns), tidy
 
 
 def _readings(result: Result, settings: Settings) -> tuple[tuple[Reading, ...], pd.DataFrame]:
@@ -87,7 +131,7 @@ def _readings(result: Result, settings: Settings) -> tuple[tuple[Reading, ...], 
     stack, model = result.stack, "ray" if result.table is None else "wave"
     table = result.ray_table if result.table is None else result.table
     sample = stack.sample or Sample()
-    drawing = drawing_of(stack)
+    drawing = drawing_of(graded(stack))
     ledger = ledger_of(drawing, settings, model=model)
     ends: SampleEnds = follow(drawing, ledger, sample, settings, model=model)
     makes = at_wavelengths("recycling_share", sample.recycling_share, drawing.wavelength_nm)

@@ -1,0 +1,137 @@
+"""A bundle for other models: data in one format, a page to begin with, methods, and the stack to compute it again."""
+
+import csv
+import io
+import re
+from collections.abc import Mapping, Sequence
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from optics.output.folder import writing
+from optics.output.handoff_columns import Sheet, numbers, sheet
+from optics.output.handoff_formats import DATA, FORMATS, Contents, write_data
+from optics.output.handoff_methods import methods_text, references_text
+from optics.output.handoff_text import page, ten
+from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
+from optics.output.record import RECORD, tool_version, write_record
+from optics.output.report import stack_line
+
+if TYPE_CHECKING:
+    from optics.transport.handover import Handover
+
+README = "README.txt"
+METHODS = "methods.md"
+REFERENCES = "references.bib"
+
+LIMIT_BYTES = 5_000_000
+"""Largest bundle unless all is asked for; the user's own tables come on top."""
+
+ROOM_BYTES = 4_600_000
+"""What tables may take of it, counted as text."""
+
+
+def bundle_folder(stack_file: Path) -> Path:
+    """Return where a bundle goes when nothing else is said: ``<stack>-handoff`` beside the stack file."""
+    return stack_file.with_name(f"{stack_file.stem}-handoff")
+
+
+def write_handoff(
+    handed: "Handover",
+    folder: str | Path,
+    *,
+    kind: str = "csv",
+    stack_file: str | Path | None = None,
+    full: bool = False,
+    replace: bool = False,
+) -> Path:
+    """Write a bundle, whole or not at all.
+
+    Parameters
+    ----------
+    handed
+        What `optics.transport.handover.hand_over` returned.
+    folder
+        The folder to write. One that this tool wrote and nobody touched since is replaced.
+    kind
+        ``"csv"``, ``"xlsx"``, ``"mat"``, ``"json"`` or ``"hdf5"``.
+    stack_file
+        Where the stack was read from, to be copied; None writes the stack anew.
+    full
+        Whether tables are kept that make the bundle larger than ``LIMIT_BYTES``.
+    replace
+        Whether to replace any other folder too.
+
+    Raises
+    ------
+    InputError
+        When the folder is to be kept, or cannot be written.
+    """
+    result, stack = handed.result, handed.result.stack
+    source = None if stack_file is None else Path(stack_file)
+    sheets = [sheet(name, table) for name, table in handed.tables.items()]
+    kept, left_out = (sheets, {}) if full else fitting(sheets, room=ROOM_BYTES)
+    count, version = numbers(handed.numbers), tool_version()
+    with writing(Path(folder), replace=replace) as part:
+        title = stack.title or stack_line(stack)
+        contents = Contents(_slug(Path(folder).name), title, count, tuple(kept), datetime.now(UTC))
+        write_data(contents, part, kind=kind)
+        text = page(
+            stack,
+            count,
+            kept,
+            kind=kind,
+            advised=result.advised_model,
+            numerical_error=result.numerical_error,
+            warnings=handed.warnings,
+            left_out=left_out,
+            version=version,
+        )
+        for name, content in (
+            (README, text),
+            (METHODS, methods_text(result, version=version)),
+            (REFERENCES, references_text(result)),
+        ):
+            (part / name).write_text(content, encoding="utf-8", newline="\n")
+        taken = (*FORMATS[kind].files, DATA, README, METHODS, REFERENCES, RECORD, STACK_FILE)
+        copy_inputs(stack, part, stack_file=source, taken=taken)
+        settings = settings_of(stack) | {"format": kind, "left_out": list(left_out)}
+        write_record(part, command="handoff", inputs=inputs_of(stack, source), settings=settings)
+    return Path(folder)
+
+
+def report(handed: "Handover", folder: Path) -> str:
+    """Return what to show of a bundle: the numbers of its page, warnings, and where it is."""
+    result = handed.result
+    lines = [result.stack.title] if result.stack.title else []
+    lines += [stack_line(result.stack), ""]
+    advised, error = result.advised_model, result.numerical_error
+    lines += ten(numbers(handed.numbers), advised=advised, numerical_error=error)
+    lines += ["", "Warnings:", *(f"  - {line}" for line in handed.warnings)] if handed.warnings else []
+    size = sum(path.stat().st_size for path in folder.rglob("*") if path.is_file())
+    return "\n".join([*lines, "", f"Bundle: {folder} ({size / 1e6:.2f} MB); begin with {README} in it"])
+
+
+def fitting(sheets: Sequence[Sheet], *, room: int) -> tuple[list[Sheet], Mapping[str, int]]:
+    """Return the sheets that fit, the most wanted first, and the sizes in bytes of those that do not."""
+    kept, left_out = [], {}
+    for each in sheets:
+        size = text_bytes(each)
+        if size <= room:
+            kept.append(each)
+            room -= size
+        else:
+            left_out[each.name] = size
+    return kept, left_out
+
+
+def text_bytes(sheet: Sheet) -> int:
+    """Return the size of a sheet written as CSV [bytes]."""
+    text = io.StringIO()
+    csv.writer(text, lineterminator="\n").writerows(zip(*(value.tolist() for value in sheet.values), strict=True))
+    return len(text.getvalue().encode())
+
+
+def _slug(name: str) -> str:
+    """Return a name as Data Packages want it: small letters, digits, dots, dashes and underscores."""
+    return re.sub(r"[^a-z0-9._-]+", "-", name.lower()).strip("-.") or "bundle"
