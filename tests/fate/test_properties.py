@@ -21,7 +21,6 @@ BELOW_ZERO = -1e-9
 CLOSURE = 1e-7
 SHARES = 1e-6
 AS_GOOD_AS_CLEAR = 1e-12
-GRAZING = 5e-6  # rays that graze a face meet the least of absorbers first: a share of about the root of its k
 METALS = (0.15 + 3.5j, 0.05 + 4.2j, 1.2 + 7.0j)
 
 
@@ -184,12 +183,13 @@ def test_a_film_that_absorbs_next_to_nothing_is_a_clear_film(case, model):
     almost = ledger(case.with_film_k(AS_GOOD_AS_CLEAR), model=model)
     # how guided light ends is decided by the least absorber there is; that it is guided is not. Layers are too thin
     # here for light to tunnel more slowly than the film absorbs
-    assert_alike(
-        clear,
-        almost,
-        within=GRAZING if model == "ray" else SHARES,
-        but=("guided_unfinished", "guided_reabsorbed", "guided_elsewhere"),
-    )
+    # light that grazes the film's faces meets the least of absorbers, a share of about the root of alpha d, or of k;
+    # several times that on a good mirror, which takes little of it
+    k = AS_GOOD_AS_CLEAR
+    phase = 2.0 * np.pi * case.media[case.film][1] / case.wavelength_nm
+    grazing = 8.0 * (np.sqrt(2.0 * k * phase) + np.sqrt(2.0 * k))
+    parts = ("guided_unfinished", "guided_reabsorbed", "guided_elsewhere")
+    assert_alike(clear, almost, within=SHARES + grazing, but=parts)
 
 
 @EXAMPLES
