@@ -115,7 +115,7 @@ def _found(result: "Result") -> Iterator[str]:
     if result.table is not None:
         factor = averages["rate_factor"]
         yield f"The mean emission rate over that in the bulk of the film's material is {factor:.4f}."
-    yield f"The estimated numerical error of these shares is {result.numerical_error:.0e}; it does not count the inputs."
+    yield f"The estimated numerical error of these shares is {result.numerical_error:.0e}, inputs not counted."
 
 
 def layer_table(result: "Result") -> Iterator[str]:
@@ -128,8 +128,8 @@ def layer_table(result: "Result") -> Iterator[str]:
     yield f"| from above | thickness | material | n at {at:g} nm | k at {at:g} nm | source |"
     yield "|---|---|---|---|---|---|"
     rows = [("above", "", stack.above.material)]
-    for layer in stack.layers:
-        rows.append((layer.name + (" (births)" if layer.emits else ""), length(layer), layer.material))
+    births = {True: " (births)", False: ""}
+    rows += [(layer.name + births[layer.emits], length(layer), layer.material) for layer in stack.layers]
     rows.append(("below", "", stack.below.material))
     columns = [name for name in result.index.columns if name != "wavelength_nm"]
     for place, (name, thickness, material) in enumerate(rows):

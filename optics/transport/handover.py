@@ -153,10 +153,10 @@ def readings_table(read: tuple[Reading, ...]) -> pd.DataFrame:
 
     rows = []
     for each in read:
-        shares = {"p_r": each.p_r, "p_e": each.p_e, "p_a": each.p_a, "rate_factor": each.rate_factor}
-        bulk = dict(zip(("p_r_bulk", "p_e_bulk", "p_a_bulk"), each.bulk, strict=True))
-        rows.append({"reading": each.name} | shares | bulk)
-    return pd.DataFrame(rows)
+        p_r, p_e, p_a = each.bulk
+        rows.append((each.name, each.p_r, each.p_e, each.p_a, each.rate_factor, p_r, p_e, p_a))
+    columns = ("reading", "p_r", "p_e", "p_a", "rate_factor", "p_r_bulk", "p_e_bulk", "p_a_bulk")
+    return pd.DataFrame(rows, columns=list(columns))
 
 
 def radiative_table(result: Result, read: tuple[Reading, ...]) -> pd.DataFrame:
