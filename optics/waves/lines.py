@@ -41,6 +41,9 @@ CUT_APART = 1.0
 CELL_ORDER = 24
 """Order of the rule between two lines."""
 
+MOST_PAIRS = 50_000
+"""Pairs of lines of one panel held in memory at a time."""
+
 FITS = 2
 """Rounds of fitting, each with the other lines of the panel taken off as they were fitted before."""
 
@@ -67,6 +70,10 @@ class Lines:
     width: Real
     room: Real
     before: Real
+
+    def take(self, which: slice) -> "Lines":
+        """Return the lines of some panels."""
+        return Lines(self.centre[which], self.width[which], self.room[which], self.before[which])
 
     @property
     def fitted(self) -> NDArray[np.bool_]:
@@ -115,9 +122,24 @@ def integrate_with_lines(
 
 def _amplitudes(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, Real]:
     """Return bell and odd amplitudes, (quantity, panel, line), collocated at five points about each line."""
+    # every line is fitted with every other of its panel taken off: few panels at a time keep memory flat
+    step = max(1, MOST_PAIRS // max(1, lines.centre.shape[1] ** 2))
+    parts = [
+        _fit(value, panels.take(slice(at, at + step)), lines.take(slice(at, at + step)), scene)
+        for at in range(0, len(panels), step)
+    ]
+    size = max(len(bell) for bell, _ in parts)
+    whole = np.zeros((2, size, *lines.centre.shape))
+    for number, part in enumerate(parts):
+        whole[:, :, number * step : (number + 1) * step] = part
+    return whole[0], whole[1]
+
+
+def _fit(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, Real]:
+    """Fit the lines of some panels; one quantity of zeros where there is nothing to fit."""
     panel, line = np.nonzero(lines.fitted)
     if not len(panel):
-        return np.zeros((1, len(panels), 0)), np.zeros((1, len(panels), 0))
+        return np.zeros((1, *lines.centre.shape)), np.zeros((1, *lines.centre.shape))
     q = lines.centre[panel, line, None] + lines.width[panel, line, None] * _OFFSETS
     owner = panels.owner[panel]
     near = value(owner, Points(q, np.ones_like(q), scene.film_index[owner, None] - q))
