@@ -57,9 +57,7 @@ def film_of(media):
 def test_all_ends_add_to_one(name, scatter, model):
     media = STACKS[name]
     free = (True, name != "on a half-space")
-    ends = ends_of(
-        media, model=model, film=film_of(media), free=free, to_edge_mm=7.0, guided_scatter_per_cm=scatter
-    )
+    ends = ends_of(media, model=model, film=film_of(media), free=free, to_edge_mm=7.0, guided_scatter_per_cm=scatter)
     assert largest_gap(ends) < ADDING_UP
 
 
