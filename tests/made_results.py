@@ -48,6 +48,7 @@ class MadeResult:
     pump: None = None
     radiation: None = None
     measured: None = None
+    sample: None = None
     moved_by_tail: dict[str, float] = field(default_factory=dict)
     warnings: tuple[str, ...] = ("k stops falling at 720 nm",)
     assumptions: tuple[str, ...] = ("births are uniform over depth",)
