@@ -3,6 +3,7 @@
 import os
 import re
 import tomllib
+from contextlib import suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -153,4 +154,5 @@ def _write(card: Path, text: str) -> None:
     except OSError as error:
         raise InputError(f"{card}: cannot be written ({error.strerror or error}), expected a writable place") from None
     finally:
-        part.unlink(missing_ok=True)
+        with suppress(OSError):  # the cabinet itself may be missing
+            part.unlink(missing_ok=True)
