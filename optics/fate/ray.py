@@ -22,7 +22,7 @@ from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.source import first_flight
 
-ORDER = 32
+ORDER = 24
 """Order of the rule: without phases in the film there is little for it to follow."""
 
 
@@ -52,7 +52,7 @@ def trace(waves: Waves) -> Traced:
     near_up, near_down = scene.moments(-slant)
     launched = launch(view, q, cosine)
     up, down = 0.5 * launched * near_up, 0.5 * launched * near_down
-    loop = _unclosed(slant, crossing, above, below)
+    loop = unclosed(slant, crossing, above, below)
     return Traced(
         launched,
         launched - up - down,
@@ -65,7 +65,7 @@ def trace(waves: Waves) -> Traced:
     )
 
 
-def _unclosed(slant: Real, crossing: Real, above: Meeting, below: Meeting) -> Real:
+def unclosed(slant: Real, crossing: Real, above: Meeting, below: Meeting) -> Real:
     """Return 1 - a^2 R_u R_d from what is lost, so that nearly lossless loops keep their digits; never zero."""
     lost_above = above.on + sum(above.taken.values())
     lost_below = below.on + sum(below.taken.values())
@@ -133,7 +133,7 @@ def response(waves: Waves, rays: Traced, k: int) -> Response:
     layers = scene.layers_up if k == 0 else scene.layers_down
     outside = meet(waves, scene.sides[k].touching, layers[::-1], scene.film)
     a = rays.crossing
-    loop = _unclosed(rays.slant, a, near, far)
+    loop = unclosed(rays.slant, a, near, far)
     at_far = outside.on * a / loop
     at_near = at_far * far.back * a
     lost = -np.expm1(-rays.slant)
@@ -239,7 +239,7 @@ def _integrated(value: Value, scene: Scene, low: Real, high: Real, size: int, se
         find(scene, panels, guides_of(scene)),
         scene=scene,
         order=ORDER * settings.finer,
-        tolerance=settings.loose,
+        tolerance=settings.tolerance,
         panel=curves.on_crowded_panel,
     )
 
