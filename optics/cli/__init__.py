@@ -9,7 +9,7 @@ import click
 
 from optics.errors import InputError
 
-COMMANDS = ("start", "solve", "yields", "sweep", "compare", "tolerance", "handoff", "material")  # in the order in which people meet them
+COMMANDS = ("start", "solve", "yields", "sweep", "compare", "tolerance", "audit", "handoff", "material")  # in the order in which people meet them
 BAD_INPUT = 2
 STOPPED = 130
 

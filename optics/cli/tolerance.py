@@ -7,7 +7,9 @@ import click
 
 @click.command(short_help="Say how far shares spread within what is known of the inputs.")
 @click.argument("stack", type=click.Path(path_type=Path))
-@click.option("--samples", type=int, default=512, show_default=True, help="A power of two; times (inputs + 2) are solved.")
+@click.option(
+    "--samples", type=int, default=512, show_default=True, help="A power of two; times (inputs + 2) are solved."
+)
 @click.option("--seed", type=click.IntRange(0), default=0, show_default=True, help="Of the scrambled draws.")
 @click.option("--workers", type=click.IntRange(1), default=1, show_default=True, help="Processes on this machine.")
 @click.option("--cluster", default="", metavar="ADDRESS", help="A Dask scheduler that runs already.")

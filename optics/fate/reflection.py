@@ -18,12 +18,27 @@ class Reflection:
     taken: Real
 
 
+@dataclass(frozen=True)
+class PlaneWaves:
+    """What becomes of plane waves of either polarisation from one side, (polarisation, wavelength, node)."""
+
+    reflectance: Real
+    transmittance: Real
+    taken: Real  # (medium, polarisation, wavelength, node)
+
+
 def at_normal(scene: Scene, side: int, *, film_is_plate: bool) -> Reflection:
-    """Send light from the outer medium above (``side`` 0) or below (1) through everything.
+    """Send light at normal incidence from the outer medium above (``side`` 0) or below (1) through everything.
 
     Thin layers with phases, plates without; the outer medium counts as lossless on the way in. Light that an outer
     medium swallows is taken by that medium, not transmitted.
     """
+    met = plane_waves(scene, side, np.zeros((scene.wavelengths, 1)), film_is_plate=film_is_plate)
+    return Reflection(met.reflectance[0, :, 0], met.transmittance[0, :, 0], met.taken[:, 0, :, 0])
+
+
+def plane_waves(scene: Scene, side: int, q: Real, *, film_is_plate: bool) -> PlaneWaves:
+    """Send plane waves of in-plane wave number ``q``, (wavelength, node), through everything; see `at_normal`."""
     near, far = scene.sides if side == 0 else scene.sides[::-1]
     before, behind = (scene.layers_up, scene.layers_down) if side == 0 else (scene.layers_down, scene.layers_up)
     plates = (near.outer, *near.plates[::-1], *far.plates)
@@ -37,14 +52,13 @@ def at_normal(scene: Scene, side: int, *, film_is_plate: bool) -> Reflection:
         index[plate] = index[plate].real
     loss[near.outer] = 0.0
     lit = replace(scene, index=index, loss=loss)
-    every = np.arange(scene.wavelengths)
-    waves = Waves(lit.view(every), np.zeros((scene.wavelengths, 1)))
+    waves = Waves(lit.view(np.arange(scene.wavelengths)), q)
     whole = shell(waves, Side(plates, coatings, far.outer, far.absorbs, far.free))
-    taken = np.zeros((scene.media, scene.wavelengths))
+    taken = np.zeros((scene.media, *whole.reflects.shape))
     for medium, share in whole.taken(np.ones_like(whole.reflects)).items():
-        taken[medium] = share[0, :, 0]
-    passed = whole.passes[0, :, 0]
+        taken[medium] = share
+    passed = whole.passes
     if far.absorbs:
         taken[far.outer] += passed
         passed = np.zeros_like(passed)
-    return Reflection(whole.reflects[0, :, 0], passed, taken)
+    return PlaneWaves(whole.reflects, passed, taken)

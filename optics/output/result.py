@@ -1,6 +1,7 @@
 """The files of one solved stack."""
 
 from dataclasses import asdict
+import json
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -25,6 +26,15 @@ INPUTS = "inputs.csv"
 def result_folder(stack_file: Path) -> Path:
     """Return where the result of a stack file goes when nothing else is said: ``<stack>-result`` beside it."""
     return stack_file.with_name(f"{stack_file.stem}-result")
+
+
+def averages_on_file(folder: Path) -> dict[str, float] | None:
+    """Return the averages that a result folder holds, None when there is none that can be read."""
+    try:
+        found = json.loads((folder / SUMMARY).read_text(encoding="utf-8"))["averages"]
+        return {str(name): float(value) for name, value in found.items() if value is not None}
+    except (OSError, ValueError, KeyError, TypeError, AttributeError):
+        return None
 
 
 def write_result(

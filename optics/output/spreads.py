@@ -42,12 +42,19 @@ def summary(found: "Spread", stack: "Stack") -> dict[str, Any]:
     return {
         "title": stack.title,
         "samples": found.samples,
-        "inputs": [{"key": i.key, "value": i.value, "sd": i.sd, "shape": i.shape, "stated": i.stated} for i in found.inputs],
+        "inputs": [
+            {"key": i.key, "value": i.value, "sd": i.sd, "shape": i.shape, "stated": i.stated} for i in found.inputs
+        ],
         "bands": found.bands.to_dict("index"),
-        "total_indices": {share: dict(zip(rows["input"], rows["total"], strict=True)) for share, rows in found.indices.groupby("share")},
+        "total_indices": {
+            share: dict(zip(rows["input"], rows["total"], strict=True))
+            for share, rows in found.indices.groupby("share")
+        },
         "span_over_alternative_tables": {share: list(span) for share, span in spans.items()},
         "convergence": found.convergence,
-        "wave_minus_ray": {share: own[share] - own[f"ray_{share}"] for share, _ in ROWS} if own["model"] == "wave" else {},
+        "wave_minus_ray": {share: own[share] - own[f"ray_{share}"] for share, _ in ROWS}
+        if own["model"] == "wave"
+        else {},
         "numerical_error": own["numerical_error"],
     }
 
@@ -56,12 +63,20 @@ def report(found: "Spread", stack: "Stack", *, folder: Path | None = None) -> st
     """Return what to show of a tolerance study."""
     solved = found.samples * (len(found.inputs) + 2)
     lines = [stack.title] if stack.title else []
-    lines += [stack_line(stack), f"{found.samples} samples of {len(found.inputs)} inputs, {solved} stacks solved", "", "Inputs:"]
+    lines += [
+        stack_line(stack),
+        f"{found.samples} samples of {len(found.inputs)} inputs, {solved} stacks solved",
+        "",
+        "Inputs:",
+    ]
     lines += [f"  - {each} ({each.shape})" for each in found.inputs]
     spans = _spans(found)
     own = found.own
     head = f"{'Share of photons born':<21}{'as given':>10}{'median':>10}{'68 %':>20}{'95 %':>20}"
-    lines += ["", head + (f"{'wave - ray':>12}" if own["model"] == "wave" else "") + (f"{'other tables':>20}" if spans else "")]
+    lines += [
+        "",
+        head + (f"{'wave - ray':>12}" if own["model"] == "wave" else "") + (f"{'other tables':>20}" if spans else ""),
+    ]
     lines += [_row(found, share, name, spans) for share, name in ROWS]
     lines += ["", *_indices(found)]
     error = own["numerical_error"]
@@ -87,7 +102,9 @@ def _spans(found: "Spread") -> dict[str, tuple[float, float]]:
     """Return the smallest and largest share over the stack's own and the alternative tables; empty without any."""
     if len(found.alternatives) < 2:
         return {}
-    return {share: (float(found.alternatives[share].min()), float(found.alternatives[share].max())) for share, _ in ROWS}
+    return {
+        share: (float(found.alternatives[share].min()), float(found.alternatives[share].max())) for share, _ in ROWS
+    }
 
 
 def _indices(found: "Spread") -> Iterator[str]:

@@ -282,7 +282,11 @@ def bands_figure(by_wavelength: "DataFrame", *, title: str = "") -> Figure:
     """
     rows = {share: by_wavelength[by_wavelength["share"] == share] for share in BANDED}
     shown = [share for share in BANDED if rows[share]["high_95"].max() >= SHOWN_ABOVE]
-    figure = _figure(title, "median (line), 68 % and 95 % of draws of the inputs; share of photons born at each wavelength", (8.0, 5.4))
+    figure = _figure(
+        title,
+        "median (line), 68 % and 95 % of draws of the inputs; share of photons born at each wavelength",
+        (8.0, 5.4),
+    )
     columns = 2 if len(shown) > 1 else 1
     lines = max(1, -(-len(shown) // columns))
     for number, share in enumerate(shown):
@@ -316,14 +320,25 @@ def sensitivity_figure(indices: "DataFrame", bands: "DataFrame", *, title: str =
     """
     shares = [share for share in BANDED if bands.loc[share, "sd"] > 1e-6]
     inputs = list(dict.fromkeys(indices["input"]))
-    figure = _figure(title, "part of a share's variance due to each input: dark alone, pale with others", (8.0, 1.6 + 0.42 * len(inputs)))
+    figure = _figure(
+        title,
+        "part of a share's variance due to each input: dark alone, pale with others",
+        (8.0, 1.6 + 0.42 * len(inputs)),
+    )
     width = 0.76 / max(len(shares), 1)
     for number, share in enumerate(shares):
         rows = indices[indices["share"] == share].set_index("input").loc[inputs]
         axes = figure.add_axes((0.20 + number * width, 0.20, width - 0.025, 0.52))
         y = np.arange(len(inputs))[::-1]
         axes.barh(y, rows["total"], color=COLOUR_OF[share], alpha=0.35, height=0.62, edgecolor="#8a8a8a", linewidth=0.4)
-        axes.barh(y, rows["first_order"].clip(lower=0), color=COLOUR_OF[share], height=0.62, edgecolor="#8a8a8a", linewidth=0.4)
+        axes.barh(
+            y,
+            rows["first_order"].clip(lower=0),
+            color=COLOUR_OF[share],
+            height=0.62,
+            edgecolor="#8a8a8a",
+            linewidth=0.4,
+        )
         axes.set_xlim(0, 1.05)
         axes.set_xticks([0, 0.5, 1], ["0", "0.5", "1"], fontsize=SMALL - 1)
         axes.set_yticks(y, inputs if number == 0 else [""] * len(inputs), fontsize=SMALL, parse_math=False)

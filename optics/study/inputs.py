@@ -124,7 +124,9 @@ def input_uncertainty(result: Result) -> InputUncertainty:
     return _summed(inputs, np.array(moved).reshape(len(inputs), len(FIGURES)))
 
 
-def _moved(stack: Stack, each: Input, base: np.ndarray[Any, np.dtype[np.float64]]) -> np.ndarray[Any, np.dtype[np.float64]]:
+def _moved(
+    stack: Stack, each: Input, base: np.ndarray[Any, np.dtype[np.float64]]
+) -> np.ndarray[Any, np.dtype[np.float64]]:
     moves = []
     for step in (each.sd, -each.sd):
         found = answer(changed(stack, each.key, each.value + step))

@@ -161,7 +161,10 @@ def values_drawn(inputs: Sequence[Input], *, samples: int, seed: int) -> Real:
 
     count = len(inputs)
     points = qmc.Sobol(2 * count, scramble=True, seed=seed).random(samples)
-    a, b = (np.stack([_quantile(i, p) for i, p in zip(inputs, part.T, strict=True)], axis=1) for part in (points[:, :count], points[:, count:]))
+    a, b = (
+        np.stack([_quantile(i, p) for i, p in zip(inputs, part.T, strict=True)], axis=1)
+        for part in (points[:, :count], points[:, count:])
+    )
     mixed = []
     for place in range(count):
         one = a.copy()
@@ -230,7 +233,11 @@ def _bands(values: Real, own: Answer) -> pd.DataFrame:
     import pandas as pd
 
     levels = np.quantile(values, list(QUANTILES.values()), axis=0)
-    columns = {"own": [own[name] for name in SPREAD], **dict(zip(QUANTILES, levels, strict=True)), "sd": values.std(axis=0)}
+    columns = {
+        "own": [own[name] for name in SPREAD],
+        **dict(zip(QUANTILES, levels, strict=True)),
+        "sd": values.std(axis=0),
+    }
     return pd.DataFrame(columns, index=pd.Index(SPREAD, name="share"))
 
 
