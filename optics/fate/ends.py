@@ -4,8 +4,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.fate import guided, held
-from optics.fate.guided import Guided, Scatter
+from optics.fate import held
+from optics.fate.guided import VARIANTS, Along, Scatter, follow_modes, follow_rays
 from optics.fate.held import Held
 from optics.fate.ledger import Ledger
 from optics.fate.scenes import Drawing, scenes
@@ -15,6 +15,7 @@ from optics.fate.wave import Settings
 from optics.sample import Sample, at_wavelengths
 from optics.waves.coherent import Real
 from optics.waves.paths import Index
+from optics.waves.scene import Scene
 
 PLACES = ("to_film", "to_layers", "to_free", "to_outer", "at_edge", "unfinished")
 """Where followed light ends: taken by the film, by other layers or plates, out through a face, in an outer medium that
@@ -100,16 +101,22 @@ def follow(drawing: Drawing, ledger: Ledger, sample: Sample, settings: Settings,
     reach = k0 * sample.to_edge_mm * 1e6
     scatter = _scatter(sample, drawing.wavelength_nm, k0)
     parts: list[tuple[Index, Held]] = []
-    along: list[tuple[Index, tuple[Guided, Guided]]] = []
+    along: list[tuple[Index, Along]] = []
     for weight, even in evened(drawing, drawing.uneven[0]) if drawing.uneven else [(1.0, drawing)]:
         for chosen, scene in scenes(even):
             ends = held.follow(scene, settings, reach[chosen], model=model, scattered=sample.scatters)
             parts.append((chosen, held.scaled(ends, weight)))
-            along.append(
-                (chosen, guided.scaled(guided.follow_rays(scene, settings, reach[chosen], scatter.at(chosen)), weight))
-            )
+            along.append((chosen, _along(scene, settings, reach[chosen], scatter.at(chosen), model, weight)))
     whole = held.added(parts, len(k0))
     return _joined(drawing, ledger, whole, _guided_ends(ledger, drawing.film, along, len(k0)), sample, model)
+
+
+def _along(scene: Scene, settings: Settings, reach: Real, scatter: Scatter, model: str, weight: float) -> Along:
+    if model == "ray":
+        ways = follow_rays(scene, settings, reach, scatter)
+    else:
+        ways = follow_modes(scene, reach, scatter)
+    return {name: each.times(weight) for name, each in ways.items()}
 
 
 def _scatter(sample: Sample, wavelength_nm: Real, k0: Real) -> Scatter:
@@ -123,40 +130,48 @@ def _scatter(sample: Sample, wavelength_nm: Real, k0: Real) -> Scatter:
 
 
 def _guided_ends(
-    ledger: Ledger, film: int, parts: list[tuple[Index, tuple[Guided, Guided]]], count: int
+    ledger: Ledger, film: int, parts: list[tuple[Index, Along]], count: int
 ) -> dict[str, tuple[Real, Real]]:
     """Return guided light's ends by sample, (place, wavelength), and what is scattered, shares of births.
 
-    What absorbers keep is parted between film and other layers as the ledger parts it. The film's part is what it takes
-    of all bound light, less the first flights that the ledger counts as reabsorbed already: below zero where an edge
-    or scattering cuts those short.
+    The ledger says what film and other layers take of bound light that nothing disturbs; the ways say what part of
+    either is left when an edge or scattering comes first. The film's part is less the first flights that the ledger
+    counts as reabsorbed already: below zero where those are cut short.
     """
     elsewhere = ledger.shares["guided_elsewhere"]
     flown = ledger.shares["reabsorbed"] - ledger.taken[0, film]
     bound = ledger.shares["waveguided"] + flown
+    ways = {name: np.zeros((5, count)) for name in VARIANTS}
+    for chosen, along in parts:
+        for name, each in along.items():
+            ways[name][:, chosen] += each.stacked()
+    clear = ledger.shares["guided_unfinished"] != 0.0
     out = {}
-    for sample, variant in zip(SAMPLES, (0, 0, 1), strict=True):
-        shares = np.zeros((4, count))
-        for chosen, both in parts:
-            ends = both[variant]
-            shares[:, chosen] += [ends.kept, ends.edge, ends.scattered, ends.unfinished]
-        shares = _without_rays(shares, ledger, with_edge=variant == 1)
+    for sample, name in (("faces", "wide"), ("wide", "wide"), ("edged", "edged")):
+        to_film = np.where(clear, 0.0, bound - elsewhere) * _left(ways, name, 0)
+        to_others = elsewhere * _left(ways, name, 1)
+        rest = bound - to_film - to_others
+        other = _without_ways(ways[name][2:], edged=name == "edged")
+        edge, scattered, endless = rest * other / other.sum(axis=0)
         places = np.zeros((len(PLACES), count))
-        places[PLACES.index("to_film")] = shares[0] * (bound - elsewhere) - flown
-        places[PLACES.index("to_layers")] = shares[0] * elsewhere
-        places[PLACES.index("at_edge")] = shares[1] * bound
-        places[PLACES.index("unfinished")] = shares[3] * bound
-        out[sample] = places, shares[2] * bound
+        places[PLACES.index("to_film")] = to_film - flown
+        places[PLACES.index("to_layers")] = to_others
+        places[PLACES.index("at_edge")] = edge
+        places[PLACES.index("unfinished")] = endless
+        out[sample] = places, scattered
     return out
 
 
-def _without_rays(shares: Real, ledger: Ledger, *, with_edge: bool) -> Real:
-    """Return the shares with those of guided light that no ray carries: the ledger says whether anything keeps it."""
-    alone = shares.sum(axis=0) < 0.5
-    clear = alone & (ledger.shares["guided_unfinished"] != 0.0)
+def _left(ways: dict[str, Real], name: str, which: int) -> Real:
+    """Return what is left to a taker when edges or scattering come first; all where no way is known."""
+    still = ways["still"][which]
+    return np.where(still > 0.0, ways[name][which] / np.where(still > 0.0, still, 1.0), 1.0)
+
+
+def _without_ways(shares: Real, *, edged: bool) -> Real:
+    """Return the shares of edge, scattering and no end, with those of light that no way is known for or left to."""
     out = shares.copy()
-    out[0, alone & ~clear] = 1.0
-    out[1 if with_edge else 3, clear] = 1.0
+    out[0 if edged else 2, shares.sum(axis=0) <= 0.0] = 1.0
     return out
 
 

@@ -1,11 +1,11 @@
 """Guided light until the sample's edge: it decays by its own absorption and scattering along its way.
 
-Along the film by the rays of the bound zone: each direction loses per round trip what the film and both halves take,
-over the distance that the round trip carries. Light counts from its birth: first flights along the film are cut short
-by an edge, and scattered, like all other ways.
+In wave optics mode by mode. In ray optics direction by direction: each loses per round trip what the film and both
+halves take, over the distance that the round trip carries. Light counts from its birth: first flights along the film
+are cut short by an edge, and scattered, like all other ways.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 
@@ -14,6 +14,7 @@ from optics.fate.exits import light_lines, split_panels
 from optics.fate.wave import Settings
 from optics.waves import curves
 from optics.waves.coherent import Real
+from optics.waves.modes import bound_modes
 from optics.waves.paths import Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scattering import guided_loss
@@ -57,37 +58,81 @@ class Scatter:
 
 @dataclass(frozen=True)
 class Guided:
-    """Shares of guided light, (wavelength,): kept by absorbers, at the edge, scattered, never ended."""
+    """Shares of guided light, (wavelength,) or of any other shape."""
 
-    kept: Real
+    film: Real
+    others: Real
     edge: Real
     scattered: Real
     unfinished: Real
 
+    def times(self, weight: Real | float) -> "Guided":
+        """Return the shares times a weight."""
+        return Guided(**{part.name: weight * getattr(self, part.name) for part in fields(self)})
 
-def decays(absorbed: Real, scattered: Real, reach: Real | float) -> Guided:
-    """Return the ends of light that loses ``absorbed`` and ``scattered`` per length on its way of length ``reach``."""
-    total = absorbed + scattered
+    def stacked(self) -> Real:
+        """Return the shares on a leading axis, in the order of the fields."""
+        return np.array([getattr(self, part.name) for part in fields(self)])
+
+
+VARIANTS = ("still", "wide", "edged")
+"""Without scattering and edges, with scattering, with both."""
+
+Along = dict[str, Guided]
+
+
+def decays(film: Real, others: Real, scattered: Real, reach: Real | float) -> Guided:
+    """Return the ends of light that loses these shares per length on its way of length ``reach``."""
+    total = film + others + scattered
     dies = total > 0.0
     safe = np.where(dies, total, 1.0)
-    if np.isinf(reach).all():
-        gone, left = np.where(dies, 1.0, 0.0), np.zeros_like(total)
-        return Guided(absorbed / safe * gone, left, scattered / safe * gone, np.where(dies, 0.0, 1.0))
-    gone = -np.expm1(-total * reach)
     nothing = np.zeros_like(total)
-    return Guided(absorbed / safe * gone, np.exp(-total * reach) + nothing, scattered / safe * gone, nothing)
+    if np.isinf(reach).all():
+        gone, left, endless = np.where(dies, 1.0, 0.0), nothing, np.where(dies, 0.0, 1.0)
+    else:
+        gone, left, endless = -np.expm1(-total * reach), np.exp(-total * reach) + nothing, nothing
+    part = gone / safe
+    return Guided(film * part, others * part, left, scattered * part, endless)
 
 
-def follow_rays(scene: Scene, settings: Settings, reach: Real, scatter: Scatter) -> tuple[Guided, Guided]:
-    """Return the ends of guided light, averaged over the bound directions, in a sample without edges and with.
+def variants(film: Real, others: Real, scattered: Real, reach: Real) -> Along:
+    """Return the ends in every one of ``VARIANTS``."""
+    return {
+        "still": decays(film, others, np.zeros_like(film), np.inf),
+        "wide": decays(film, others, scattered, np.inf),
+        "edged": decays(film, others, scattered, reach),
+    }
+
+
+def follow_modes(scene: Scene, reach: Real, scatter: Scatter) -> Along:
+    """Return the ends of guided light mode by mode: each decays by its own loss, births shared out by its power."""
+    modes = bound_modes(scene)
+    power = np.maximum(modes.power, 0.0)
+    if not len(modes):
+        return dict.fromkeys(VARIANTS, Guided(*np.zeros((5, scene.wavelengths))))
+    waves = Waves(scene.view(modes.wavelength), modes.index.real[:, None])
+    scattered = scatter.at(modes.wavelength).rate(waves)[:, 0]
+    loss = 2.0 * modes.index.imag
+    taken = modes.taken.sum(axis=0)
+    film = loss * np.where(taken > 0.0, modes.taken[scene.film] / np.where(taken > 0.0, taken, 1.0), 0.0)
+    ends = variants(film, np.maximum(loss - film, 0.0), scattered, reach[modes.wavelength])
+    total = modes.summed(power, scene.wavelengths)
+    safe = np.where(total > 0.0, total, 1.0)
+    return {
+        name: Guided(*(modes.summed(power * part, scene.wavelengths) / safe for part in each.stacked()))
+        for name, each in ends.items()
+    }
+
+
+def follow_rays(scene: Scene, settings: Settings, reach: Real, scatter: Scatter) -> Along:
+    """Return the ends of guided light, averaged over the bound directions of rays.
 
     Where rays have no bound zone nothing is guided; every share is zero.
     """
     seen = ray.real_film(scene)
     owner, low, high = split_panels(ray.edge_of_open(seen), seen.film_index.real, light_lines(seen))
     if not len(owner):
-        none = Guided(*np.zeros((4, scene.wavelengths)))
-        return none, none
+        return dict.fromkeys(VARIANTS, Guided(*np.zeros((5, scene.wavelengths))))
 
     def density(rows: Rows, u: Real) -> Real:
         points = curves.on_panel(rows, u, seen.film_index[rows.owner, None])
@@ -102,17 +147,10 @@ def follow_rays(scene: Scene, settings: Settings, reach: Real, scatter: Scatter)
         order=ORDER * settings.finer,
         tolerance=TOLERANCE,
     )
-    total = whole.values[:8].reshape(2, 4, -1).sum(axis=1)
-    shares = whole.values.reshape(2, 4, -1) / np.where(total > 0.0, total, 1.0)[:, None]
-    return Guided(*shares[0]), Guided(*shares[1])
-
-
-def scaled(both: tuple[Guided, Guided], weight: float) -> tuple[Guided, Guided]:
-    """Return the ends times a weight."""
-    first, second = (
-        Guided(weight * g.kept, weight * g.edge, weight * g.scattered, weight * g.unfinished) for g in both
-    )
-    return first, second
+    amounts = whole.values.reshape(len(VARIANTS), 5, -1)
+    total = amounts[0].sum(axis=0)
+    shares = amounts / np.where(total > 0.0, total, 1.0)
+    return {name: Guided(*each) for name, each in zip(VARIANTS, shares, strict=True)}
 
 
 def _values(waves: Waves, reach: Real, scatter: Scatter) -> Real:
@@ -126,13 +164,11 @@ def _values(waves: Waves, reach: Real, scatter: Scatter) -> Real:
         _loss(meet(waves, scene.film, layers, side.touching))
         for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True)
     ]
-    absorbed = (2.0 * slant + halves[0] + halves[1]) / along
-    scattered = scatter.rate(waves) + np.zeros_like(absorbed)
-    out = []
-    for ways in (np.array(np.inf), reach):
-        ends = decays(absorbed, scattered, ways)
-        out += [(launched * part).sum(axis=0) for part in (ends.kept, ends.edge, ends.scattered, ends.unfinished)]
-    return np.array(out)
+    film = np.broadcast_to(2.0 * slant / along, launched.shape)
+    others = (halves[0] + halves[1]) / along
+    scattered = np.broadcast_to(scatter.rate(waves), launched.shape)
+    ends = variants(film, others, scattered, reach)
+    return np.concatenate([(launched * each.stacked()).sum(axis=1) for each in ends.values()])
 
 
 def _loss(half: Meeting) -> Real:

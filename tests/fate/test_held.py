@@ -4,6 +4,7 @@ import numpy as np
 import pytest
 from chance import followed
 from piles import drawn, ledger
+from scipy.optimize import newton
 
 from optics.fate.ends import PLACES, follow
 from optics.fate.sampled import largest_gap
@@ -128,6 +129,35 @@ def test_scattered_light_follows_the_share_that_is_sent_up():
     )
     assert up[PLACES.index("to_free")] == pytest.approx(up.sum(), rel=1e-9)
     assert down[PLACES.index("to_film")] + down[PLACES.index("to_layers")] == pytest.approx(down.sum(), rel=1e-9)
+
+
+def test_the_one_mode_of_a_thin_guide_decays_by_its_own_loss():
+    """The dispersion relation of a three-layer guide (s-polarised), solved for the complex index by scipy."""
+    film, below, k0d = 2.0 + 1e-3j, 1.5, 2.0 * np.pi * 100 / NM  # TE0 alone: TM0 is cut off below 118 nm
+
+    def closes(index):
+        across = np.sqrt(film**2 - index**2)
+        tails = np.sqrt(index**2 - below**2), np.sqrt(index**2 - 1.0)
+        return across * k0d - sum(np.arctan(tail / across) for tail in tails)
+
+    loss = 2.0 * newton(closes, 1.6 + 5e-4j, tol=1e-13).imag * 2.0 * np.pi / (NM * 1e-6)  # per mm
+    media = [(1, 0), (film, 100), (below, 0)]
+    for edge_mm in (1e-3, 5e-3, 2e-2):
+        ends = ends_of(media, to_edge_mm=edge_mm)
+        bound = ends.guided[0] - place(ends_of(media, to_edge_mm=0), "along", "edged", "to_film")
+        share = place(ends, "along", "edged", "at_edge") / bound
+        assert share == pytest.approx(np.exp(-loss * edge_mm), rel=1e-6)
+
+
+def test_scattering_competes_with_the_modes_own_loss():
+    media = [(1, 0), (2.0 + 1e-3j, 100), (1.5, 0)]
+    bound = -place(ends_of(media, to_edge_mm=0), "along", "edged", "to_film")
+    ends = ends_of(media, guided_scatter_per_cm=100.0)
+    bound += ends.guided[0]
+    far, near = (place(ends_of(media, to_edge_mm=mm), "along", "edged", "at_edge") for mm in (2e-2, 1e-2))
+    loss_per_cm = np.log(near / far) / 1e-3
+    scattered = ends.scattered["wide"].sum(axis=0)[0]
+    assert scattered / bound == pytest.approx(100.0 / (100.0 + loss_per_cm), rel=1e-6)
 
 
 def slabs(*layers):

@@ -4,8 +4,8 @@ import numpy as np
 import pytest
 from piles import drawn
 
-from optics.fate.scrambled import _isotropic, scrambled, textbook
 from optics.fate.scenes import scenes
+from optics.fate.scrambled import _isotropic, scrambled, textbook
 
 NM = 760.0
 MIRROR = 1e-9 + 1e4j

@@ -23,8 +23,8 @@ from optics.fate.yields import (
 INVERSE = 1e-12
 SEVEN_DIGITS = 3e-7  # half a unit of the last digit of p_e, times the steepest slope of the three
 
-# Richter et al., Nat. Commun. 7, 13941 (2016), planar and textured; Fassl et al., Matter 4, 1391 (2021): pairs of internal
-# and external yields. With p_r = 1 - p_e each gives the p_e beside it. They test the formula, not the optics.
+# Richter et al., Nat. Commun. 7, 13941 (2016), planar and textured; Fassl et al., Matter 4, 1391 (2021): internal and
+# external yields. With p_r = 1 - p_e each pair gives the p_e beside it. They test the formula, not the optics.
 PUBLISHED = [(0.70, 0.15, 0.0756303), (0.70, 0.57, 0.5681063), (0.780, 0.474, 0.2541679)]
 
 

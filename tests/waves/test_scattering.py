@@ -5,7 +5,7 @@ import pytest
 from scipy.integrate import quad
 from scipy.optimize import brentq
 
-from optics.waves.scattering import guided_loss, specular_loss, spectrum_over_angles
+from optics.waves.scattering import guided_loss, spectrum_over_angles, specular_loss
 
 
 def test_specular_loss_of_a_face_of_10_nm_at_550_nm():
