@@ -29,26 +29,29 @@ class Textbook:
             return np.exp(0.25j * np.pi) * np.sqrt(-1j * (n - q)) * np.sqrt(n + q)
         return 1j * np.sqrt(q * q - n * n)
 
-    def amplitude(self, pile, q, magnetic):
-        """Airy's formula from the outermost interface of a pile inwards."""
-        slant = [self.normal(at, q) / (self.index[at] ** 2 if magnetic else 1.0) for at in pile]
+    def amplitude(self, pile, q, kz, magnetic):
+        """Airy's formula from the outermost interface of a pile inwards; the film is its first medium."""
+        normal = [kz, *(self.normal(at, q) for at in pile[1:])]
+        slant = [one / (self.index[at] ** 2 if magnetic else 1.0) for at, one in zip(pile, normal, strict=True)]
         r = (slant[-2] - slant[-1]) / (slant[-2] + slant[-1])
         for step in range(len(pile) - 3, -1, -1):
             face = (slant[step] - slant[step + 1]) / (slant[step] + slant[step + 1])
             layer = pile[step + 1]
-            r = r * np.exp(2j * self.normal(layer, q) * self.phase[layer])
+            r = r * np.exp(2j * normal[step + 1] * self.phase[layer])
             r = (face + r) / (1.0 + face * r)
         return r
 
-    def density(self, q):
-        kt, kz = self.index[self.film], self.normal(self.film, q) or 1e-150  # the end of the path, of no weight
+    def density(self, q, short):
+        """Return the density at q; ``short`` is the film's index less q, which loses its digits where a path ends."""
+        kt = self.index[self.film]
+        kz = 1j * np.sqrt(-short * (kt + q))
         kr, h = kt.real, self.h
         up, down = list(range(self.film, -1, -1)), list(range(self.film, len(self.index)))
-        turn = np.exp(2j * kz * self.phase[self.film])
-        mean = (turn - 1.0) / (2j * kz * self.phase[self.film])
+        step = 2j * kz * self.phase[self.film]
+        turn, mean = np.exp(step), np.expm1(step) / step
         plus, minus = [], []
         for magnetic in (False, True):
-            r_up, r_down = self.amplitude(up, q, magnetic), self.amplitude(down, q, magnetic)
+            r_up, r_down = self.amplitude(up, q, kz, magnetic), self.amplitude(down, q, kz, magnetic)
             damp = 1.0 - r_up * r_down * turn
             plus.append((1.0 + (r_up + r_down) * mean + r_up * r_down * turn) / damp)
             minus.append((1.0 - (r_up + r_down) * mean + r_up * r_down * turn) / damp)
@@ -61,14 +64,16 @@ class Textbook:
         kr, k = kt.real, kt.imag
 
         def dipped(u):
-            t = 1.0 - (1.0 - u) ** 2
-            phi = 0.5 * np.pi * t - 1j * DIP * np.sin(np.pi * t)
-            slope = (0.5 * np.pi - 1j * DIP * np.pi * np.cos(np.pi * t)) * 2.0 * (1.0 - u)
-            return (self.density(s * kr * np.sin(phi)) * s * kr * np.cos(phi) * slope).real
+            rest = (1.0 - u) ** 2
+            left = 0.5 * np.pi * rest + 1j * DIP * np.sin(np.pi * rest)  # pi/2 - phi
+            slope = (0.5 * np.pi + 1j * DIP * np.pi * np.cos(np.pi * rest)) * 2.0 * (1.0 - u)
+            short = kt - s * kr + 2.0 * s * kr * np.sin(0.5 * left) ** 2
+            return (self.density(s * kr * np.cos(left), short) * s * kr * np.sin(left) * slope).real
 
         def rising(u):
             t = 1.0 - (1.0 - u) ** 2
-            return (self.density(s * kr + 1j * s * k * t) * 2j * s * k * (1.0 - u)).real
+            short = kr - s * kr + 1j * k * (1.0 - s) + 1j * s * k * (1.0 - u) ** 2
+            return (self.density(s * kr + 1j * s * k * t, short) * 2j * s * k * (1.0 - u)).real
 
         total = quad_vec(dipped, 0.0, 1.0, epsabs=1e-11, epsrel=0, limit=5000)[0]
         if k:
