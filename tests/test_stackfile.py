@@ -19,6 +19,7 @@ from optics.depth import Decay, DepthTable, Pump, Sheet
 from optics.errors import InputError
 from optics.light import Light
 from optics.media import find
+from optics.media.tail import Tail
 from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, SpectrumTable
 from optics.stack import Emission, Layer, Outer, Stack
@@ -247,14 +248,23 @@ GRIDS = st.one_of(
 )
 
 
+TAILS = st.one_of(
+    st.just(None),
+    st.just(Tail(fit=True)),
+    st.builds(Tail, urbach_meV=_positive(1, 30), red_of_nm=st.one_of(st.just(None), _positive(700, 900))),
+)
+
+
 @st.composite
 def stacks(draw: st.DrawFn) -> Stack:
     names = draw(st.lists(NAMES, min_size=1, max_size=4, unique=True))
     film = draw(st.integers(0, len(names) - 1))
+    materials = [draw(MATERIALS) for _ in names]
     layers = [
         Layer(
             name=name,
-            material=draw(MATERIALS),
+            material=materials[place],
+            tail=draw(TAILS) if materials[place].name == "ch3nh3pbi3" else None,
             thickness_nm=draw(st.one_of(_positive(1, 3000), _positive(2e4, 5e6), st.sampled_from([1.1e6, 2e5 / 3]))),
             emits=place == film,
             phases=draw(st.sampled_from([None, "keep", "ignore"])),

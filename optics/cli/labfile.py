@@ -86,7 +86,7 @@ def import_material(
     Example:
       photonfate start my-film
       photonfate material import my-film/tables/invented-red-film.csv --name red-film --folder my-film
-      photonfate material check my-film/materials/red-film.toml
+      photonfate material show my-film/materials/red-film.toml
     """
     from optics.media.cabinet import cabinet_beside, users_cabinet
     from optics.media.importing import About, import_table
@@ -128,7 +128,7 @@ def check(
     \b
     Example:
       photonfate material check silicon --from-nm 400 --to-nm 1200
-      photonfate material check ch3nh3pbi3 --figure ch3nh3pbi3-check.png
+      photonfate material check cspbbr3 --figure cspbbr3-check.png
     """
     from optics.media.fitness import fitness_of
     from optics.output.materials import check_figure_path, fitness_report, write_fitness_figure

@@ -19,7 +19,7 @@ def material() -> None:
     Example:
       photonfate material list
       photonfate material show float-glass --at 770
-      photonfate material check ch3nh3pbi3
+      photonfate material check silicon
     """
 
 

@@ -23,6 +23,8 @@ COMMANDS = {
     "solve": ["solve"],
     "material list": ["material", "list"],
     "material show": ["material", "show"],
+    "material import": ["material", "import"],
+    "material check": ["material", "check"],
 }
 CALL = [sys.executable, "-c", "from optics.cli import main; main(prog_name='photonfate')"]
 
