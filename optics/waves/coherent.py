@@ -25,7 +25,10 @@ def normal_on_axis(eps: Complex, q: Real) -> Complex:
 
     The principal root is the right one because Im eps >= 0; its cut is never crossed on the real axis.
     """
-    root: Complex = np.sqrt(eps - q * q)
+    gap = eps - q * q
+    # a node may round to a layer's own light line, where the layer's admittance would be an exact zero over zero
+    gap += 1e-300
+    root: Complex = np.sqrt(gap)
     return root
 
 
