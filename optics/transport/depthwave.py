@@ -1,11 +1,13 @@
 """Wave optics over the depth of the film: from which slice to which slice, and from each slice to every other end.
 
-Below a dipole at depth a the field is u(a) v(a')/D at depth a', u the wave that is right above and v the one that is right
-below; above it the same with a and a' exchanged. Source and landing slices therefore part, and a matrix is a product over
-the nodes of the in-plane wave number (fluxes and power as in Chance, Prock & Silbey 1978 and Neyts 1998). Light that
-lands in the slice it was born in is what is left of the power, which is integrated on the path of `optics.fate.wave`.
+Below a dipole at depth a the field is u(a) v(a')/D at depth a', u the wave that is right above and v the one that is
+right below; above it the same with a and a' exchanged. Source and landing slices therefore part, and a matrix is a
+product over the nodes of the in-plane wave number (fluxes and power as in Chance, Prock & Silbey 1978 and Neyts 1998).
+Light that lands in the slice it was born in is what is left of the power, which is integrated on the path of
+`optics.fate.wave`.
 """
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -13,7 +15,7 @@ import numpy as np
 from optics.fate import wave
 from optics.fate.exits import light_lines, split_panels
 from optics.fate.wave import Settings
-from optics.transport.landing import ENDS, SEEN_FROM, Landing, end_amounts
+from optics.transport.landing import ENDS, SEEN_FROM, Landing, end_amounts, gather
 from optics.transport.slices import Standing, from_above, from_below, path_means, standing
 from optics.waves import curves
 from optics.waves.coherent import Complex, Real, admittances, reflection, squared
@@ -24,7 +26,7 @@ from optics.waves.plates import Waves
 from optics.waves.scene import Scene, View
 from optics.waves.source import Film
 
-HALF_CELL = 24
+HALF_CELL = 16
 """Order of the rule on each side of a guided line."""
 
 BLOCK = 1500
@@ -53,48 +55,58 @@ def land(scene: Scene, edges: Real, settings: Settings) -> Landing:
 
 @dataclass(frozen=True)
 class Nodes:
-    """Nodes of one block: owners (row,), points and weights (row, node), the polarisations to count (pol, row, 1)."""
+    """Nodes of one block: owners (row,), points and weights (row, node), and the polarisations that they serve."""
 
     owner: Index
     points: Points
     weight: Real
-    counts: Real
+    polarisations: tuple[int, ...]
     bound: bool
 
 
-def _open_nodes(scene: Scene, settings: Settings) -> list[Nodes]:
+def _open_nodes(scene: Scene, settings: Settings) -> Iterator[Nodes]:
     owner, low, high = split_panels(np.zeros(scene.wavelengths), scene.open_end, light_lines(scene))
     nodes, weights = fejer(wave.panel_order(scene, settings))
     rows = curves.panels(owner, low, high)
     step = max(1, BLOCK // len(nodes))
-    out = []
     for first in range(0, len(rows), step):
         part = rows.take(slice(first, first + step))
         u = np.broadcast_to(nodes, (len(part), len(nodes)))
         points = curves.on_panel(part, u, scene.film_index[part.owner, None])
-        counts = np.ones((2, len(part), 1))
-        out.append(Nodes(part.owner, points, points.slope * weights[:, 0], counts, bound=False))
-    return out
+        yield Nodes(part.owner, points, points.slope * weights[:, 0], (0, 1), bound=False)
 
 
-def _bound_nodes(scene: Scene) -> list[Nodes]:
-    """Return nodes of the bound zone, crowded about every guided line with a sinh map, a set a polarisation."""
+def _bound_nodes(scene: Scene) -> Iterator[Nodes]:
+    """Yield nodes of the bound zone, crowded about every guided line with a sinh map, a row a wavelength."""
     owner, polarisation, anchor, length, width = _half_cells(scene)
+    if not len(owner):
+        return
     nodes, weights = fejer(HALF_CELL)
-    step = max(1, BLOCK // len(nodes))
-    out = []
-    for first in range(0, len(owner), step):
-        part = slice(first, first + step)
-        at, reach, wide = anchor[part, None], length[part, None], width[part, None]
-        sharp = wide > 0.0
-        top = np.arcsinh(np.abs(reach) / np.where(sharp, wide, 1.0))
-        away = np.where(sharp, wide * np.sinh(top * nodes), np.abs(reach) * nodes * nodes)
-        slope = np.where(sharp, wide * top * np.cosh(top * nodes), 2.0 * np.abs(reach) * nodes)
-        q = at + np.sign(reach) * away
-        points = Points(q, slope, scene.film_index[owner[part], None] - q)
-        counts = np.stack([polarisation[part] == 0, polarisation[part] == 1])[..., None].astype(float)
-        out.append(Nodes(owner[part], points, slope * weights[:, 0], counts, bound=True))
-    return out
+    reach, wide = np.abs(length)[:, None], width[:, None]
+    sharp = wide > 0.0
+    top = np.arcsinh(reach / np.where(sharp, wide, 1.0))
+    away = np.where(sharp, wide * np.sinh(top * nodes), reach * nodes * nodes)
+    weight = np.where(sharp, wide * top * np.cosh(top * nodes), 2.0 * reach * nodes) * weights[:, 0]
+    q = anchor[:, None] + np.sign(length)[:, None] * away
+    # half cells of a wavelength and polarisation side by side; rows with fewer than others are filled with no weight
+    key, starts, counts = np.unique(2 * owner + polarisation, return_index=True, return_counts=True)
+    most = int(counts.max())
+    own = np.repeat(np.arange(len(key)), counts)
+    place = np.arange(len(owner)) - np.repeat(starts, counts)
+    spread = np.repeat(q[starts, :1], most * len(nodes), axis=1)
+    loads = np.zeros_like(spread)
+    spread.reshape(len(key), most, -1)[own, place] = q
+    loads.reshape(len(key), most, -1)[own, place] = weight
+    columns = min(BLOCK, spread.shape[1])
+    for mode in (0, 1):
+        chosen = np.flatnonzero(key % 2 == mode)
+        for first in range(0, len(chosen), max(1, BLOCK // columns)):
+            part = chosen[first : first + max(1, BLOCK // columns)]
+            mine = key[part] // 2
+            for left in range(0, spread.shape[1], columns):
+                at, load = spread[part, left : left + columns], loads[part, left : left + columns]
+                points = Points(at, np.ones_like(at), scene.film_index[mine, None] - at)
+                yield Nodes(mine, points, load, (mode,), bound=True)
 
 
 def _half_cells(scene: Scene) -> tuple[Index, Index, Real, Real, Real]:
@@ -119,14 +131,15 @@ def _half_cells(scene: Scene) -> tuple[Index, Index, Real, Real, Real]:
     gap = np.where((np.diff(owner) == 0) & (np.diff(pol) == 0), np.diff(mark), 0.0)
     cell = np.flatnonzero(gap > 1e-13)
     half = 0.5 * gap[cell]
-    left, right = cell, cell + 1
-    return (
-        np.concatenate([owner[left], owner[right]]),
-        np.concatenate([pol[left], pol[right]]),
-        np.concatenate([mark[left], mark[right]]),
+    parts = (
+        np.concatenate([owner[cell], owner[cell + 1]]),
+        np.concatenate([pol[cell], pol[cell + 1]]),
+        np.concatenate([mark[cell], mark[cell + 1]]),
         np.concatenate([half, -half]),
-        np.concatenate([width[left], width[right]]),
+        np.concatenate([width[cell], width[cell + 1]]),
     )
+    order = np.lexsort((parts[1], parts[0]))
+    return parts[0][order], parts[1][order], parts[2][order], parts[3][order], parts[4][order]
 
 
 def _power(scene: Scene, edges: Real, settings: Settings) -> Real:
@@ -187,20 +200,17 @@ def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
     responses = [wave.response(waves, k) if s.plates and not nodes.bound else None for k, s in enumerate(scene.sides)]
     ends = end_amounts(waves, responses, looks, mirrors, over.whole[:, 0], bound=nodes.bound)
     strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * np.exp(2j * film.phase * kz))
-    for polarisation in (0, 1):
-        rows = np.flatnonzero(nodes.counts[polarisation])
-        if len(rows):
-            weights = (part[rows] for part in _weights(film, nodes.points.q, kz, polarisation))
-            block = _Block(over.at(rows), np.exp(2j * film.phase[rows] * kz.real[rows]), *weights)
-            pair = (mirrors[0][polarisation][rows], mirrors[1][polarisation][rows])
-            mine = (ends[0][:, polarisation, rows], ends[1][:, polarisation, rows])
-            width = np.diff(edges[nodes.owner[rows]], axis=1)
-            _add_block(out, nodes.owner[rows], block, pair, mine, strength[polarisation][rows], width)
+    twice, width = np.exp(2j * film.phase * kz.real), np.diff(edges[nodes.owner], axis=1)
+    for polarisation in nodes.polarisations:
+        block = _Block(over, twice, *_weights(film, nodes.points.q, kz, polarisation))
+        pair = (mirrors[0][polarisation], mirrors[1][polarisation])
+        mine = (ends[0][:, polarisation], ends[1][:, polarisation])
+        _add_block(out, nodes.owner, block, pair, mine, strength[polarisation], width)
 
 
 @dataclass(frozen=True)
 class _Block:
-    """Weights of |F|^2 and |F'/kz|^2 in what a slice sends and in what it takes, (row, node), and the slices' integrals."""
+    """Integrals over the slices, and the weights of |F|^2 and |F'/kz|^2 in what they send and take, (row, node)."""
 
     over: Standing
     twice: Complex
@@ -222,8 +232,8 @@ class _Block:
 def _weights(film: Film, q: Real, kz: Complex, polarisation: int) -> tuple[Real, Real, Real, Real, Real]:
     """Return plain, slope, send, take and upright of `_Block`, (row, node).
 
-    s: in-plane dipoles and absorption both go with |F|^2. p: a dipole in the plane goes with |F'|^2, an upright one with
-    q^2 |F|^2, absorption with their sum; when all directions are alike what is sent and what is taken are the same.
+    s: in-plane dipoles and absorption both go with |F|^2. p: a dipole in the plane goes with |F'|^2, an upright one
+    with q^2 |F|^2, absorption with their sum; when all directions are alike, sending and taking are the same.
     """
     h, size = film.in_plane, squared(kz)
     one, scale = np.ones_like(q), 0.375 * q / film.real_index
@@ -235,7 +245,12 @@ def _weights(film: Film, q: Real, kz: Complex, polarisation: int) -> tuple[Real,
 
 
 def _add_block(
-    out: Landing, owner: Index, block: _Block, mirrors: tuple[Complex, Complex], ends: tuple[Real, Real], strength: Real,
+    out: Landing,
+    owner: Index,
+    block: _Block,
+    mirrors: tuple[Complex, Complex],
+    ends: tuple[Real, Real],
+    strength: Real,
     width: Real,
 ) -> None:
     """Add one polarisation's rows: products over the nodes of what slices send and what slices and ends take."""
@@ -247,13 +262,13 @@ def _add_block(
         sent[1] += block.of(None, mirrors[1], block.upright * strength, zero)
     sent = [each / width[:, :, None] for each in sent]
     taken = [np.swapaxes(each * block.take[:, None], 1, 2) for each in right]
-    inside = np.tril(np.matmul(sent[1], taken[0]), -1) + np.triu(np.matmul(sent[0], taken[1]), 1)
+    gather(out.upper, owner, np.matmul(sent[1], taken[0]))
+    gather(out.lower, owner, np.matmul(sent[0], taken[1]))
     gone = sum(np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)], 0, 2)) for k in (0, 1))
     for k in (0, 1):
         back = [ends[way][SEEN_FROM[k]] for way in (0, 1)]
         if back[0].any() or back[1].any():
             coming = sent[1] * back[0][:, None] + sent[0] * back[1][:, None]
             lands = taken[1 - k]  # light from above is the wave that is right below
-            inside += np.matmul(coming, lands / lands.sum(axis=2, keepdims=True))
-    np.add.at(out.matrix, owner, inside)
-    np.add.at(out.ends, owner, gone)
+            gather(out.returned, owner, np.matmul(coming, lands / lands.sum(axis=2, keepdims=True)))
+    gather(out.ends, owner, gone)

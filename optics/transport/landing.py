@@ -8,6 +8,7 @@ import numpy as np
 from optics.fate.exits import Response
 from optics.fate.trips import Network
 from optics.waves.coherent import Complex, Outlook, Real, squared
+from optics.waves.paths import Index
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene
 
@@ -23,22 +24,41 @@ SEEN_FROM = (len(ENDS), len(ENDS) + 1)
 class Landing:
     """Amounts in units of the bulk power; births spread evenly over each slice.
 
-    ``power`` is (slice, wavelength), ``matrix`` (wavelength, birth slice, landing slice) and ``ends`` (wavelength, birth
-    slice, end). Until it is closed the diagonal of ``matrix`` holds only what plates send back.
+    Attributes
+    ----------
+    power
+        What births in each slice radiate, (slice, wavelength).
+    lower, upper, returned
+        What the film takes below and above the slice of birth, and of light that plates send back, (wavelength, birth
+        slice, landing slice); only their triangles mean anything in the first two.
+    ends
+        What every other end takes, (wavelength, birth slice, end).
     """
 
     power: Real
-    matrix: Real
+    lower: Real
+    upper: Real
+    returned: Real
     ends: Real
 
     @classmethod
     def empty(cls, slices: int, wavelengths: int) -> "Landing":
         """Return that nothing is known yet."""
-        return cls(
-            np.zeros((slices, wavelengths)),
-            np.zeros((wavelengths, slices, slices)),
-            np.zeros((wavelengths, slices, len(ENDS))),
-        )
+        square = (wavelengths, slices, slices)
+        ends = np.zeros((wavelengths, slices, len(ENDS)))
+        return cls(np.zeros((slices, wavelengths)), np.zeros(square), np.zeros(square), np.zeros(square), ends)
+
+    def put(self, at: Index, part: "Landing") -> None:
+        """Take over some wavelengths."""
+        self.power[:, at] = part.power
+        self.lower[at], self.upper[at], self.returned[at] = part.lower, part.upper, part.returned
+        self.ends[at] = part.ends
+
+    @property
+    def matrix(self) -> Real:
+        """What the film takes, (wavelength, birth slice, landing slice), but for light landing where it was born."""
+        whole: Real = np.tril(self.upper, -1) + np.triu(self.lower, 1) + self.returned
+        return whole
 
 
 def end_amounts(
@@ -52,8 +72,8 @@ def end_amounts(
 ) -> tuple[Real, Real]:
     """Return what a unit wave that meets the upper, the lower face brings to each end, (end, polarisation, row, node).
 
-    ``whole`` is exp(-2 Im kz d): the lower one is the wave that starts at the film's upper face. Two rows follow the ends,
-    ``SEEN_FROM``.
+    ``whole`` is exp(-2 Im kz d): the lower one is the wave that starts at the film's upper face. Two rows follow the
+    ends, ``SEEN_FROM``.
     """
     scene = waves.view.scene
     up = looks[0].fluxes(squared(1.0 + mirrors[0]))
@@ -81,7 +101,7 @@ def leave_group(amounts: Real, net: Network, leaving: tuple[Real, Real]) -> None
     """Follow what leaves the group to its ends, as the ledger does, polarisations apart."""
     scene = net.scene
     total = net.entering(leaving)
-    for k, (side, folded, sink) in enumerate(zip(scene.sides, net.shells, net.sinks, strict=True)):
+    for k, (folded, sink) in enumerate(zip(net.shells, net.sinks, strict=True)):
         out = _end_of(scene, k)
         if folded is None:
             amounts[out] += total[k]
@@ -101,3 +121,13 @@ def _end_of(scene: Scene, k: int) -> int:
     if side.absorbs:
         return AT["elsewhere"]
     return AT[("free_above", "free_below")[k]] if side.free else AT[("cover", "substrate")[k]]
+
+
+def gather(whole: Real, owner: Index, part: Real) -> None:
+    """Add the rows of ``part`` to their wavelengths."""
+    order = np.argsort(owner, kind="stable")
+    starts = np.flatnonzero(np.diff(owner[order], prepend=-1))
+    if len(starts) == len(owner):
+        whole[owner] += part
+    else:
+        whole[owner[order][starts]] += np.add.reduceat(part[order], starts, axis=0)

@@ -1,0 +1,262 @@
+"""Transport over the depth: where in the film a photon born in one slice is taken back, and where else it ends."""
+
+from __future__ import annotations
+
+from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from optics.assumptions import assumptions
+from optics.errors import InputError
+from optics.fate import births
+from optics.fate.account import ledger_of
+from optics.fate.drawing import drawing_of
+from optics.fate.ledger import Ledger
+from optics.fate.scenes import Drawing, scenes
+from optics.fate.wave import Settings
+from optics.spectrum import weights
+from optics.stack import Stack
+from optics.transport import depthray, depthwave
+from optics.transport.landing import AT, ENDS, Landing
+from optics.waves.coherent import Real
+from optics.waves.paths import Index
+from optics.waves.source import uniform
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+SLICES = 50
+MOST_SLICES = 400
+
+CONVENTIONS = (
+    "over the depth: births spread evenly in each slice; averages weigh wavelengths with the births in it, not slices",
+    "over the depth: each end's profile is scaled to the ledger of even births; scaled_by says how far it was off",
+    "over the depth, waves: what is left of a slice's power once all other slices and ends have their part lands in "
+    "the slice itself; where that is negative (weak absorption, a convention's rest) it is set to its neighbours' mean",
+)
+
+
+@dataclass(frozen=True)
+class DepthMatrix:
+    """One model's answer over the depth.
+
+    Attributes
+    ----------
+    matrix
+        Share of the photons born in a slice (row) that the film takes back in a slice (column), averaged over the births.
+    ends
+        Share of the same that ends elsewhere, (slice, end), ends as `optics.transport.landing.ENDS`; with the row of
+        ``matrix`` they add to one.
+    rate_factor
+        Mean rate factor of births in each slice.
+    by_wavelength
+        The matrix wavelength by wavelength, (wavelength, birth slice, landing slice).
+    ends_by_wavelength
+        (wavelength, birth slice, end).
+    rate_by_wavelength
+        (slice, wavelength).
+    scaled_by
+        Largest difference between shares of even births summed here and by the ledger, before they were scaled to it.
+    mended
+        Largest share by which a negative diagonal was mended.
+    """
+
+    matrix: Real
+    ends: Real
+    rate_factor: Real
+    by_wavelength: Real
+    ends_by_wavelength: Real
+    rate_by_wavelength: Real
+    scaled_by: float
+    mended: float
+
+
+@dataclass(frozen=True)
+class InDepth:
+    """Where in the film's depth photons are taken back.
+
+    Attributes
+    ----------
+    stack
+        The stack.
+    edges_nm
+        Edges of the slices [nm], 0 at the film's upper face.
+    wave, ray
+        By model; ``wave`` is None for a film that is a plate.
+    """
+
+    stack: Stack
+    edges_nm: Real
+    wavelength_nm: Real
+    wave: DepthMatrix | None
+    ray: DepthMatrix
+    warnings: tuple[str, ...] = field(default=())
+    assumptions: tuple[str, ...] = field(default=())
+
+    @property
+    def lead(self) -> DepthMatrix:
+        """Waves, or rays where they are alone."""
+        return self.ray if self.wave is None else self.wave
+
+
+def even_edges_nm(thickness_nm: float, slices: int = SLICES) -> Real:
+    """Return the edges [nm] of even slices of a film."""
+    return np.linspace(0.0, thickness_nm, slices + 1)
+
+
+def indepth(
+    stack: Stack, *, edges_nm: Real | None = None, slices: int = SLICES, settings: Settings | None = None
+) -> InDepth:
+    """Work out where over the depth of the film photons are taken back.
+
+    Parameters
+    ----------
+    stack
+        The stack.
+    edges_nm
+        Ascending edges of the slices [nm], from 0 at the film's upper face to its thickness; None: even slices.
+    slices
+        Number of even slices.
+    settings
+        How finely to integrate.
+
+    Raises
+    ------
+    InputError
+        Where edges are not ascending or do not span the film; as `optics.solve`.
+    """
+    settings = settings or Settings()
+    if edges_nm is None:
+        edges = even_edges_nm(stack.film.thickness_nm, slices)
+    else:
+        edges = checked_edges(np.asarray(edges_nm, dtype=float), stack)
+    drawing = replace(drawing_of(stack), moments=uniform)
+    models = ("ray",) if stack.film.plate else ("wave", "ray")
+    ledgers = {model: ledger_of(drawing, settings, model=model) for model in models}
+    born = births.born_inside(stack, drawing, ledgers[models[0]], model=models[0], settings=settings).per_nm
+    share = born * weights(drawing.wavelength_nm)
+    found = {model: _matrix(drawing, edges, ledgers[model], share, settings, model) for model in models}
+    return InDepth(
+        stack, edges, drawing.wavelength_nm, found.get("wave"), found["ray"], (), (*assumptions(stack), *CONVENTIONS)
+    )
+
+
+def checked_edges(edges: Real, stack: Stack, *, place: str = "mesh") -> Real:
+    """Return edges that span the film, or refuse them."""
+    thickness = stack.film.thickness_nm
+    faults = []
+    if edges.ndim != 1 or not 3 <= edges.size <= MOST_SLICES + 1 or not np.isfinite(edges).all():
+        raise InputError(f"{place}: found {edges.size} edges, expected 3 to {MOST_SLICES + 1} numbers in nm")
+    if (np.diff(edges) <= 0.0).any():
+        at = int(np.argmax(np.diff(edges) <= 0.0)) + 1
+        faults.append(
+            f"{place}: edge {at + 1}: found {edges[at]:.12g} after {edges[at - 1]:.12g}, expected ascending edges"
+        )
+    if abs(edges[0]) > 1e-9 * thickness or abs(edges[-1] - thickness) > 1e-6 * thickness:
+        faults.append(
+            f"{place}: found edges from {edges[0]:.12g} to {edges[-1]:.12g} nm, expected 0 to {thickness:.12g} nm, the "
+            f'thickness of layer "{stack.film.name}"'
+        )
+    if faults:
+        raise InputError(faults)
+    whole = edges.copy()
+    whole[0], whole[-1] = 0.0, thickness
+    return whole
+
+
+def _matrix(
+    drawing: Drawing, edges_nm: Real, ledger: Ledger, share: Real, settings: Settings, model: str
+) -> DepthMatrix:
+    landing = _landed(drawing, edges_nm, settings, model)
+    width = np.diff(edges_nm) / edges_nm[-1]
+    power, ends, scaled = _scaled(landing, width, ledger)
+    clear = drawing.index[drawing.film].imag == 0.0
+    matrix = np.where(clear[:, None, None], 0.0, landing.matrix)
+    own = power.T - ends.sum(axis=2) - matrix.sum(axis=2)
+    ends, own = _unabsorbed(ends, own, clear, ledger)
+    mended = _mended(matrix, own, power)
+    spectrum = share @ power.T
+    births_in = share[:, None] * power.T / spectrum
+    shares, ends = matrix / power.T[:, :, None], ends / power.T[:, :, None]
+    return DepthMatrix(
+        matrix=np.einsum("wi,wij->ij", births_in, shares),
+        ends=np.einsum("wi,wie->ie", births_in, ends),
+        rate_factor=spectrum / share.sum(),
+        by_wavelength=shares,
+        ends_by_wavelength=ends,
+        rate_by_wavelength=power,
+        scaled_by=scaled,
+        mended=mended,
+    )
+
+
+def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) -> Landing:
+    """Return what each wavelength's scene gives, wavelengths shared out among threads."""
+    count, slices = len(drawing.wavelength_nm), len(edges_nm) - 1
+    whole = Landing.empty(slices, count)
+    threads = max(1, min(settings.threads, count // 8))
+
+    def run(first: int) -> list[tuple[Index, Landing]]:
+        chosen = np.arange(first, count, threads)
+        part = replace(drawing, wavelength_nm=drawing.wavelength_nm[chosen], index=drawing.index[:, chosen])
+        out = []
+        for at, scene in scenes(part):
+            edges = edges_nm * (2.0 * np.pi / part.wavelength_nm[at])[:, None]
+            got = depthwave.land(scene, edges, settings) if model == "wave" else depthray.land(scene, edges)
+            out.append((chosen[at], got))
+        return out
+
+    with ThreadPoolExecutor(threads) as pool:
+        for part in pool.map(run, range(threads)):
+            for at, got in part:
+                whole.put(at, got)
+    return whole
+
+
+def _scaled(landing: Landing, width: Real, ledger: Ledger) -> tuple[Real, Real, float]:
+    """Return power and ends scaled so that even births give the ledger's rate factor and shares, and the largest miss."""
+    rate = ledger.rate_factor
+    power = landing.power * (rate / (width @ landing.power))
+    wanted = np.array([ledger.shares[name] for name in ENDS[:-1]]) * rate
+    got = np.einsum("i,wie->ew", width, landing.ends)[:-1]
+    miss = float(np.abs((got - wanted) / rate).max())
+    factor = np.ones((len(ENDS), len(rate)))
+    factor[:-1] = np.where(got > 0.0, wanted / np.where(got > 0.0, got, 1.0), 1.0)
+    return power, landing.ends * factor.T[:, None, :], miss
+
+
+def _unabsorbed(ends: Real, own: Real, clear: Real, ledger: Ledger) -> tuple[Real, Real]:
+    """Where the film is clear, hand what is left of the power to the guided light's own end."""
+    if not clear.any():
+        return ends, own
+    rest = np.where(clear[:, None], own, 0.0)
+    never = ledger.shares["guided_unfinished"] > 0.0
+    place = np.where(never, AT["guided_unfinished"], AT["guided_elsewhere"])
+    ends = ends.copy()
+    rows = np.arange(len(ends))
+    ends[rows, :, place] += rest
+    return ends, own - rest
+
+
+def _mended(matrix: Real, own: Real, power: Real) -> float:
+    """Put what lands in its own slice on the diagonal, in place; return the largest share that had to be mended."""
+    slices = np.arange(own.shape[1])
+    diagonal = matrix[:, slices, slices] + own
+    low = diagonal < 0.0
+    worst = float((np.where(low, -diagonal, 0.0) / power.T).max())
+    if low.any():
+        upper = np.pad(matrix[:, slices[:-1], slices[1:]], ((0, 0), (0, 1)))
+        lower = np.pad(matrix[:, slices[1:], slices[:-1]], ((0, 0), (1, 0)))
+        sides = np.where((upper > 0.0) & (lower > 0.0), 0.5, 1.0) * (upper + lower)
+        total = matrix.sum(axis=2) + own
+        new = np.where(low, sides, diagonal)
+        others = matrix.sum(axis=2) - matrix[:, slices, slices]
+        sum_now = others + new
+        factor = np.where(low & (sum_now > 0.0), np.maximum(total, 0.0) / np.where(sum_now > 0.0, sum_now, 1.0), 1.0)
+        matrix[:, slices, slices] = new
+        matrix *= factor[:, :, None]
+    else:
+        matrix[:, slices, slices] = diagonal
+    return worst

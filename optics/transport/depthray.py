@@ -1,0 +1,125 @@
+"""Ray optics over the depth of the film: Beer-Lambert flights between slices, all orders of reflection summed."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from optics.fate import ray
+from optics.fate.exits import Response, light_lines, split_panels
+from optics.fate.trips import Network
+from optics.transport.landing import AT, ENDS, SEEN_FROM, Landing, gather, leave_group
+from optics.transport.slices import MOST_FADING
+from optics.waves import curves
+from optics.waves.coherent import Real
+from optics.waves.paths import Index, fejer
+from optics.waves.plates import Waves
+from optics.waves.scene import Scene
+
+ORDER = 32
+BLOCK = 1500
+
+
+def land(scene: Scene, edges: Real) -> Landing:
+    """Return where light from every slice lands, in units of the power radiated; ``edges`` as for waves."""
+    seen = ray.real_film(scene)
+    out = Landing.empty(edges.shape[1] - 1, scene.wavelengths)
+    out.power[:] = 1.0
+    edge, end = ray.edge_of_open(seen), seen.film_index.real
+    nodes, weights = fejer(ORDER)
+    step = max(1, BLOCK // len(nodes))
+    for low, high, bound in ((np.zeros_like(edge), edge, False), (edge, end, True)):
+        rows = curves.panels(*split_panels(low, high, light_lines(seen)))
+        for first in range(0, len(rows), step):
+            part = rows.take(slice(first, first + step))
+            u = np.broadcast_to(nodes, (len(part), len(nodes)))
+            points = curves.on_crowded_panel(part, u, seen.film_index[part.owner, None])
+            waves = Waves(seen.view(part.owner), points.q, points.short_of_film)
+            _add(out, waves, edges[part.owner], part.owner, points.slope * weights[:, 0], bound=bound)
+    return out
+
+
+@dataclass(frozen=True)
+class _Flights:
+    """Means and absorptances of the slices for one block, (row, slice, node); depths from the upper face."""
+
+    reach_up: Real  # mean of exp(-t x) over a slice: what gets to the upper face
+    reach_down: Real
+    lands_down: Real  # of light that starts down from the upper face
+    lands_up: Real
+    leaves_down: Real  # what leaves a slice downwards; with what lands below it, a product
+    below: Real
+    leaves_up: Real
+    above: Real
+
+
+def _flights(edges: Real, slant: Real) -> _Flights:
+    """Return flights for ``slant``, the absorption of one crossing, (row, node)."""
+    x = (edges / edges[:, -1:])[:, :, None]
+    t = slant[:, None, :]
+    taken = -np.expm1(-t * np.diff(x, axis=1))
+    thick = t * np.diff(x, axis=1)
+    mean = np.where(thick > 0.0, taken / np.where(thick > 0.0, thick, 1.0), 1.0)
+    above, below = np.exp(-t * x[:, :-1]), np.exp(-t * (1.0 - x[:, 1:]))
+    # between slices exponents count from the middle; neighbours stay exact where they are cut, others get nothing
+    steep = np.minimum(t, 2.0 * MOST_FADING)
+    upper, lower = np.exp(steep * (0.5 - x[:, :-1])), np.exp(steep * (0.5 - x[:, 1:]))
+    return _Flights(
+        mean * above,
+        mean * below,
+        taken * above,
+        taken * below,
+        mean / lower,
+        taken * upper,
+        mean * upper,
+        taken / lower,
+    )
+
+
+def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *, bound: bool) -> None:
+    scene = waves.view.scene
+    rays = ray.trace(waves)
+    flights = _flights(edges, rays.slant)
+    responses = [ray.response(waves, rays, k) if s.plates and not bound else None for k, s in enumerate(scene.sides)]
+    ends = _ends(waves, rays, responses, bound=bound)
+    loop = ray.unclosed(rays.slant, rays.crossing, rays.above, rays.below)
+    dark = bool(rays.slant.any())
+    for polarisation in (0, 1):
+        back = (rays.above.back[polarisation], rays.below.back[polarisation])
+        half = 0.5 * rays.launched[polarisation] * weight
+        each = half / loop[polarisation]
+        up = each[:, None] * (flights.reach_up + (rays.crossing * back[1])[:, None] * flights.reach_down)
+        down = each[:, None] * (flights.reach_down + (rays.crossing * back[0])[:, None] * flights.reach_up)
+        for arriving, amounts in zip((up, down), ends, strict=True):
+            gather(out.ends, owner, np.matmul(arriving, np.moveaxis(amounts[: len(ENDS), polarisation], 0, 2)))
+        if dark:
+            lands = [np.swapaxes(each, 1, 2) for each in (flights.lands_down, flights.lands_up)]
+            gather(out.lower, owner, np.matmul(half[:, None] * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
+            gather(out.upper, owner, np.matmul(half[:, None] * flights.leaves_up, np.swapaxes(flights.above, 1, 2)))
+            mirrored = np.matmul(up * back[0][:, None], lands[0]) + np.matmul(down * back[1][:, None], lands[1])
+            gather(out.returned, owner, mirrored)
+            for k in (0, 1):
+                coming = up * ends[0][SEEN_FROM[k], polarisation][:, None]
+                coming = coming + down * ends[1][SEEN_FROM[k], polarisation][:, None]
+                if coming.any():
+                    onward = (rays.crossing * back[1 - k])[:, :, None]
+                    where = lands[k] + onward * lands[1 - k]
+                    gather(out.returned, owner, np.matmul(coming, where / where.sum(axis=2, keepdims=True)))
+
+
+def _ends(waves: Waves, rays: ray.Traced, responses: Sequence[Response | None], *, bound: bool) -> tuple[Real, Real]:
+    """Return what a unit of power that arrives at the upper, the lower face brings to each end."""
+    scene = waves.view.scene
+    out = []
+    net = None if bound else Network(waves, responses)
+    for k, half in enumerate((rays.above, rays.below)):
+        amounts = np.zeros((len(ENDS) + 2, *half.back.shape))
+        for share in half.taken.values():
+            amounts[AT["guided_elsewhere" if bound else "elsewhere"]] += share
+        if net is not None:
+            nothing = np.zeros_like(half.on)
+            leave_group(amounts, net, (half.on, nothing) if k == 0 else (nothing, half.on))
+        elif scene.sides[k].absorbs and not scene.sides[k].plates:
+            amounts[AT["elsewhere"]] += half.on
+        out.append(amounts)
+    return out[0], out[1]
