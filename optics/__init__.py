@@ -14,8 +14,11 @@ if TYPE_CHECKING:
     from optics.light import Light
     from optics.media.cabinet import bundled_names
     from optics.media.cabinet import find as find_material
+    from optics.media.fitness import fitness_of as check_material
+    from optics.media.importing import import_table
     from optics.media.labfile import read_table
     from optics.media.material import Material
+    from optics.media.tail import Tail
     from optics.output.result import write_result
     from optics.radiation import FromAbsorption, equilibrium_rate
     from optics.spectrum import Gaussian, SpectrumTable
@@ -42,9 +45,12 @@ __all__ = [
     "Sheet",
     "SpectrumTable",
     "Stack",
+    "Tail",
     "bundled_names",
+    "check_material",
     "equilibrium_rate",
     "find_material",
+    "import_table",
     "lay_over",
     "parse_stack",
     "read_stack",
@@ -71,9 +77,12 @@ _HOMES = {
     "Sheet": "optics.depth:Sheet",
     "SpectrumTable": "optics.spectrum:SpectrumTable",
     "Stack": "optics.stack:Stack",
+    "Tail": "optics.media.tail:Tail",
     "bundled_names": "optics.media.cabinet:bundled_names",
+    "check_material": "optics.media.fitness:fitness_of",
     "equilibrium_rate": "optics.radiation:equilibrium_rate",
     "find_material": "optics.media.cabinet:find",
+    "import_table": "optics.media.importing:import_table",
     "lay_over": "optics.fate.overlay:lay_over",
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
