@@ -80,7 +80,8 @@ def transfer(optics: Optics, edges: np.ndarray) -> np.ndarray:
     last = optics.within_um[-1]
 
     def twice_integrated(x: np.ndarray) -> np.ndarray:
-        return integral(np.minimum(np.abs(x), last))
+        away = np.abs(x)
+        return integral(np.minimum(away, last)) + 0.5 * optics.taken_back * np.maximum(away - last, 0.0)
 
     apart = twice_integrated(edges[:, None] - edges[None, :])  # (edge of i, edge of j)
     share = apart[1:, :-1] - apart[1:, 1:] - apart[:-1, :-1] + apart[:-1, 1:]
