@@ -20,7 +20,7 @@ from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
 from optics.media.checks import floor_warning
 from optics.roughness import graded
-from optics.spectrum import weights
+from optics.spectrum import SpectrumTable, weights
 from optics.stack import Stack
 from optics.units import energy_eV
 from optics.waves.coherent import Real
@@ -154,7 +154,9 @@ def solve(stack: Stack, *, settings: Settings | None = None) -> Result:
     drawing = drawing_of(smooth)
     models = ("ray",) if stack.film.plate else ("wave", "ray")
     ledgers = {model: ledger_of(drawing, settings, model=model) for model in models}
-    return replace(_result(smooth, drawing, ledgers, settings), stack=stack, assumptions=assumptions(stack))
+    result = _result(smooth, drawing, ledgers, settings)
+    moved = _moved_by_tail(stack, drawing, ledgers, result.averages, settings)
+    return replace(result, stack=stack, assumptions=assumptions(stack), moved_by_tail=moved)
 
 
 def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings: Settings) -> Result:
@@ -187,7 +189,6 @@ def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings
         depth_averages=_bracketed(stack, drawing, born, pump, lead, settings),
         pump=pump,
         radiation=births.radiation_of(stack, drawing, averages["rate_factor"]),
-        moved_by_tail=_moved_by_tail(stack, drawing, born, averages, lead, settings),
         warnings=_warnings(stack, drawing, names, born, ledger, advised=model, lead=lead),
         sample=sample_of(stack, drawing, ledgers, settings) if stack.sample else None,
     )
@@ -206,15 +207,19 @@ def _bracketed(
 
 
 def _moved_by_tail(
-    stack: Stack, drawing: Drawing, born: births.Born, averages: dict[str, float], model: str, settings: Settings
+    stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], averages: dict[str, float], settings: Settings
 ) -> dict[str, float]:
     """Return the averages less those of the same births with every table as it was; empty where no layer has a tail."""
     if all(layer.tail is None for layer in stack.layers):
         return {}
-    materials = [stack.above.material, *(layer.material for layer in stack.layers), stack.below.material]
-    index = np.array([material.index(drawing.wavelength_nm) for material in materials])
-    bare = replace(drawing, index=index)
-    booked = _booked(stack, bare, born.per_nm, ledger_of(bare, settings, model=model), model, settings)
+    model, ledger = next(iter(ledgers.items()))
+    born = births.born_inside(stack, drawing, ledger, model=model, settings=settings).per_nm
+    light, wavelength = stack.light, drawing.wavelength_nm
+    if wavelength.size > 1:  # births that followed from the repaired absorption stay as they are
+        light = replace(light, spectrum=SpectrumTable(wavelength_nm=wavelength, per_nm=born))
+    bare = replace(stack, light=light, layers=tuple(replace(layer, tail=None) for layer in stack.layers))
+    drawn = replace(drawing_of(graded(bare)), moments=drawing.moments)
+    booked = _booked(bare, drawn, born, ledger_of(drawn, settings, model=model), model, settings)
     return {name: averages[name] - value for name, value in booked.averages.items()}
 
 

@@ -24,6 +24,7 @@ __all__ = ["Grafted", "MeasuredTail", "Repair", "Tail", "UrbachTail", "repair"]
 Real = NDArray[np.float64]
 
 JOIN_WINDOW_EV = 0.004  # slopes are compared over a few rows, well below the energy of a tail
+ROOM_MEV = 25.85  # kT at 300 K: births that follow from a slower tail's absorption rise without end to the red
 SLOPES_MEET = 0.05  # slopes that differ by less are said to meet: rows 1 nm apart know them no better
 
 
@@ -209,6 +210,7 @@ def _urbach(medium: Medium, rows: tuple[Real, Real], tail: Tail) -> tuple[Medium
             raise InputError("tail: no floor was found")
         join, meV, met = floor.steepest_nm, floor.steepest_meV, True
         how = "the energy at which the table itself falls fastest, an upper limit as the floor adds to it there"
+        how += "; above kT at 300 K, so births cannot follow from it" if meV > ROOM_MEV else ""
     else:
         start = tail.red_of_nm or (floor.steepest_nm if floor else rows[0][0])
         join, slope, met = _meeting(rows, start, 1e3 / tail.urbach_meV)

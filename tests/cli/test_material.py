@@ -230,3 +230,39 @@ def test_a_tail_can_be_given_in_python_as_in_a_file(tmp_path):
     assert stack.with_layer("film", tail={"urbach_meV": 15}).film.tail == Tail(urbach_meV=15)
     with pytest.raises(optics.InputError, match='layer "film": tail: found 3, expected'):
         stack.with_layer("film", tail=3)
+
+
+@pytest.mark.parametrize(
+    "change",
+    [
+        ("thickness_nm = 300\n", "thickness_nm = 300\nroughness_nm = 10\n"),
+        ('seen = "inside"\nkind = "gaussian"\npeak_nm = 770\nfwhm_nm = 40', 'kind = "from-absorption"'),
+        ('seen = "inside"', 'seen = "above"'),
+        ("from_nm = 720\nto_nm = 840\nstep_nm = 10", "wavelengths_nm = [780]"),
+    ],
+    ids=["a rough face", "births from the repaired absorption", "births seen above", "one wavelength"],
+)
+def test_what_the_repair_moved_is_said_whatever_else_is_asked_for(tmp_path, change):
+    path = floored(tmp_path, "tail = { urbach_meV = 15, red_of_nm = 775 }")
+    path.write_text(path.read_text(encoding="utf-8").replace(*change), encoding="utf-8")
+    result = optics.solve(optics.read_stack(path))
+    assert result.moved_by_tail["reabsorbed"] < -1e-3
+    assert abs(sum(result.moved_by_tail[share] for share in ENDS)) < CONSERVED
+
+
+def test_births_from_absorption_that_end_on_a_floor_are_refused_until_it_is_repaired(tmp_path):
+    path = floored(tmp_path, "")
+    births = 'seen = "inside"\nkind = "gaussian"\npeak_nm = 770\nfwhm_nm = 40'
+    path.write_text(path.read_text(encoding="utf-8").replace(births, 'kind = "from-absorption"'), encoding="utf-8")
+    with pytest.raises(optics.InputError, match="tail"):
+        optics.read_stack(path)
+    for tail, refused in (('"fit"', True), ("{ urbach_meV = 15 }", False)):
+        text = path.read_text(encoding="utf-8")
+        (tmp_path / "tail.toml").write_text(
+            text.replace("emits = true", f"emits = true\ntail = {tail}"), encoding="utf-8"
+        )
+        if refused:  # the table's own edge falls by a factor e in 38 meV, more slowly than kT allows
+            with pytest.raises(optics.InputError, match="still rise at the red end"):
+                optics.read_stack(tmp_path / "tail.toml")
+        else:
+            assert optics.solve(optics.read_stack(tmp_path / "tail.toml")).averages["trapped"] > 0.5
