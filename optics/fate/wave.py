@@ -51,14 +51,17 @@ class Settings:
         return replace(self, tolerance=0.1 * self.tolerance, finer=2 * self.finer)
 
 
-def power_on_path(view: View, points: Points, *, flights: bool) -> Complex:
-    """Return the complex power density on a path and, with ``flights``, it times the first-flight absorption."""
+def power_on_path(view: View, points: Points, *, flights: bool, dips: bool = False) -> Complex:
+    """Return the complex power density on a path and, with ``flights``, it times the first-flight absorption.
+
+    A path that ``dips`` below the real axis meets no cut of the half-spaces: the decaying root is the right one there.
+    """
     scene, film = view.scene, view.film
     q = points.q
     kz = 1j * np.sqrt(-points.short_of_film * (film.index + q))
     own = admittances(kz, film.eps)
     faces = [
-        _face_on_path(view, q, layers, side.touching)
+        _face_on_path(view, q, layers, side.touching, dips=dips)
         for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True)
     ]
     up, down = (reflection(own, face) for face in faces)
@@ -69,13 +72,13 @@ def power_on_path(view: View, points: Points, *, flights: bool) -> Complex:
     return np.stack([density, density * source.first_flight(film.slant(kz), film.moments)])
 
 
-def _face_on_path(view: View, q: Complex, layers: tuple[int, ...], touching: int) -> Complex:
+def _face_on_path(view: View, q: Complex, layers: tuple[int, ...], touching: int, *, dips: bool) -> Complex:
     pile = []
     for j in layers:
         kz = normal_inside(view.eps[j], q)
         pile.append((admittances(kz, view.eps[j]), np.exp(2j * view.phase[j] * kz)))
-    behind = admittances(normal_outside(view.index[touching], q), view.eps[touching])
-    return fold(pile, behind)
+    kz = normal_inside(view.eps[touching], q) if dips else normal_outside(view.index[touching], q)
+    return fold(pile, admittances(kz, view.eps[touching]))
 
 
 @dataclass(frozen=True)
@@ -208,7 +211,7 @@ def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = Non
     def density(rows: Rows, u: Real) -> Real:
         view = scene.view(rows.owner)
         first = None if start is None else start[rows.owner, None]
-        return power_on_path(view, curves.on_dip(rows, u, view.film.index, first), flights=flights).real
+        return power_on_path(view, curves.on_dip(rows, u, view.film.index, first), flights=flights, dips=True).real
 
     owner = np.arange(scene.wavelengths) if start is None else np.flatnonzero(end - start > 1e-12)
     if not len(owner):

@@ -47,9 +47,10 @@ def on_panel(rows: Rows, u: Real, film: Complex, left: Real | None = None) -> Po
     sine = np.sin(0.5 * np.pi * u)
     cosine = np.sin(0.5 * np.pi * (1.0 - u if left is None else left))
     width = high - low
-    return Points(
-        low + width * (sine * sine), np.pi * width * (sine * cosine), (film - high) + width * (cosine * cosine)
-    )
+    short = np.empty(u.shape, dtype=complex)
+    short.real = (film.real - high) + width * (cosine * cosine)
+    short.imag = film.imag
+    return Points(low + width * (sine * sine), (np.pi * width) * (sine * cosine), short)
 
 
 def on_crowded_panel(rows: Rows, u: Real, film: Complex) -> Points:

@@ -143,15 +143,15 @@ def _evaluate(density: Density, rows: Rows, order: int, tolerance: float) -> tup
 
 
 def _block(density: Density, rows: Rows, order: int, tolerance: float) -> tuple[Real, Real]:
-    known = density(rows, _at(rows, fejer(order)[0]))
-    sums, guess = _weighed(rows, known, order)
+    nodes, weights = fejer(order)
+    known = density(rows, _at(rows, nodes))
+    sums, guess = _judged(rows, known @ weights)
     rough = np.flatnonzero(guess > tolerance)
     if len(rough):
         again = rows.take(rough)
-        both = np.empty((len(known), len(rough), 2 * order - 1))
-        both[..., 1::2] = known[:, rough]
-        both[..., ::2] = density(again, _at(again, fejer(2 * order)[0][::2]))
-        sums[:, rough], guess[rough] = _weighed(again, both, 2 * order)
+        nodes, weights = fejer(2 * order)
+        fresh = density(again, _at(again, nodes[::2]))
+        sums[:, rough], guess[rough] = _judged(again, known[:, rough] @ weights[1::2] + fresh @ weights[::2])
     return sums, guess
 
 
@@ -159,8 +159,10 @@ def _at(rows: Rows, nodes: Real) -> Real:
     return rows.start[:, None] + (rows.stop - rows.start)[:, None] * nodes
 
 
-def _weighed(rows: Rows, known: Real, order: int) -> tuple[Real, Real]:
-    total = known @ fejer(order)[1] * (rows.stop - rows.start)[:, None]
-    last, before = np.abs(np.diff(total, axis=2)).transpose(2, 0, 1)
-    ratio = np.minimum(last / np.maximum(before, 1e-300), 1.0)
-    return total[..., 0], (last * np.sqrt(ratio)).max(axis=0)
+def _judged(rows: Rows, total: Real) -> tuple[Real, Real]:
+    """Return integrals and errors from the sums of the full, the half and the quarter rule, (quantity, row, rule)."""
+    total *= (rows.stop - rows.start)[:, None]
+    last = np.abs(total[..., 0] - total[..., 1])
+    before = np.abs(total[..., 1] - total[..., 2])
+    last *= np.sqrt(np.minimum(last / np.maximum(before, 1e-300), 1.0))
+    return total[..., 0], last.max(axis=0)
