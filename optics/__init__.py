@@ -20,11 +20,15 @@ if TYPE_CHECKING:
     from optics.media.material import Material
     from optics.media.tail import Tail
     from optics.output.result import write_result
+    from optics.output.transport import write_indepth, write_inplane
     from optics.radiation import FromAbsorption, equilibrium_rate
     from optics.spectrum import Gaussian, SpectrumTable
     from optics.stack import Emission, Layer, Outer, Stack
     from optics.stackfile.reading import parse_stack, read_stack
     from optics.stackfile.writing import write_stack
+    from optics.transport.depth import InDepth, indepth
+    from optics.transport.guided import guided_modes
+    from optics.transport.inplane import InPlane, inplane
 
     __version__: str
 
@@ -35,6 +39,8 @@ __all__ = [
     "Emission",
     "FromAbsorption",
     "Gaussian",
+    "InDepth",
+    "InPlane",
     "InputError",
     "Layer",
     "Light",
@@ -50,12 +56,17 @@ __all__ = [
     "check_material",
     "equilibrium_rate",
     "find_material",
+    "guided_modes",
     "import_table",
+    "indepth",
+    "inplane",
     "lay_over",
     "parse_stack",
     "read_stack",
     "read_table",
     "solve",
+    "write_indepth",
+    "write_inplane",
     "write_result",
     "write_stack",
 ]
@@ -67,6 +78,8 @@ _HOMES = {
     "Emission": "optics.stack:Emission",
     "FromAbsorption": "optics.radiation:FromAbsorption",
     "Gaussian": "optics.spectrum:Gaussian",
+    "InDepth": "optics.transport.depth:InDepth",
+    "InPlane": "optics.transport.inplane:InPlane",
     "InputError": "optics.errors:InputError",
     "Layer": "optics.stack:Layer",
     "Light": "optics.light:Light",
@@ -82,12 +95,17 @@ _HOMES = {
     "check_material": "optics.media.fitness:fitness_of",
     "equilibrium_rate": "optics.radiation:equilibrium_rate",
     "find_material": "optics.media.cabinet:find",
+    "guided_modes": "optics.transport.guided:guided_modes",
     "import_table": "optics.media.importing:import_table",
+    "indepth": "optics.transport.depth:indepth",
+    "inplane": "optics.transport.inplane:inplane",
     "lay_over": "optics.fate.overlay:lay_over",
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
     "read_table": "optics.media.labfile:read_table",
     "solve": "optics.fate.solve:solve",
+    "write_indepth": "optics.output.transport:write_indepth",
+    "write_inplane": "optics.output.transport:write_inplane",
     "write_result": "optics.output.result:write_result",
     "write_stack": "optics.stackfile.writing:write_stack",
 }

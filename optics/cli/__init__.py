@@ -9,7 +9,19 @@ import click
 
 from optics.errors import InputError
 
-COMMANDS = ("start", "solve", "yields", "sweep", "compare", "tolerance", "audit", "handoff", "material")  # in the order in which people meet them
+COMMANDS = (  # in the order in which people meet them
+    "start",
+    "solve",
+    "yields",
+    "sweep",
+    "compare",
+    "tolerance",
+    "audit",
+    "inplane",
+    "indepth",
+    "handoff",
+    "material",
+)
 BAD_INPUT = 2
 STOPPED = 130
 

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
-from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -24,9 +23,6 @@ from optics.waves.coherent import Real
 from optics.waves.paths import Index
 from optics.waves.source import uniform
 
-if TYPE_CHECKING:
-    import pandas as pd
-
 SLICES = 50
 MOST_SLICES = 400
 
@@ -45,7 +41,7 @@ class DepthMatrix:
     Attributes
     ----------
     matrix
-        Share of the photons born in a slice (row) that the film takes back in a slice (column), averaged over the births.
+        Share of the photons born in a slice (row) that the film takes back in a slice (column), over all births.
     ends
         Share of the same that ends elsewhere, (slice, end), ends as `optics.transport.landing.ENDS`; with the row of
         ``matrix`` they add to one.
@@ -216,7 +212,7 @@ def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) ->
 
 
 def _scaled(landing: Landing, width: Real, ledger: Ledger) -> tuple[Real, Real, float]:
-    """Return power and ends scaled so that even births give the ledger's rate factor and shares, and the largest miss."""
+    """Return power and ends scaled so that even births give the ledger's, and the largest miss of a share."""
     rate = ledger.rate_factor
     power = landing.power * (rate / (width @ landing.power))
     wanted = np.array([ledger.shares[name] for name in ENDS[:-1]]) * rate

@@ -94,8 +94,10 @@ def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *,
             gather(out.ends, owner, np.matmul(arriving, np.moveaxis(amounts[: len(ENDS), polarisation], 0, 2)))
         if dark:
             lands = [np.swapaxes(each, 1, 2) for each in (flights.lands_down, flights.lands_up)]
-            gather(out.lower, owner, np.matmul(half[:, None] * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
-            gather(out.upper, owner, np.matmul(half[:, None] * flights.leaves_up, np.swapaxes(flights.above, 1, 2)))
+            below, above = (np.swapaxes(each, 1, 2) for each in (flights.below, flights.above))
+            with np.errstate(over="ignore"):  # in the triangles that mean nothing
+                gather(out.lower, owner, np.matmul(half[:, None] * flights.leaves_down, below))
+                gather(out.upper, owner, np.matmul(half[:, None] * flights.leaves_up, above))
             mirrored = np.matmul(up * back[0][:, None], lands[0]) + np.matmul(down * back[1][:, None], lands[1])
             gather(out.returned, owner, mirrored)
             for k in (0, 1):

@@ -109,11 +109,45 @@ def _bound_nodes(scene: Scene) -> Iterator[Nodes]:
                 yield Nodes(mine, points, load, (mode,), bound=True)
 
 
+def landing_end(scene: Scene) -> Real:
+    """Return the q up to which light landing in the film is followed on the real axis, (wavelength,).
+
+    Grazing light is spread to q beyond the film's own light line, by about the square root of k, and lands far from its
+    birth like any other. In the bulk the flux that leaves a thin sheet of births, integrated to this q, is all they
+    radiate; near field beyond it is left in the slice it comes from. Metals guide plasmons out there: with one in or at
+    the group, light is followed to `Scene.far_end` alone.
+    """
+    media = [*scene.group, scene.above.touching, scene.below.touching]
+    metal = (scene.eps[media].real < 0.0).any(axis=0)
+    low, high = scene.film_index.real.copy(), 3.0 * scene.film_index.real
+    for _ in range(45):
+        middle = 0.5 * (low + high)
+        beyond = bulk_flux(scene, middle) > 1.0
+        low, high = np.where(beyond, low, middle), np.where(beyond, middle, high)
+    followed = (scene.film_index.imag > 0.0) & ~metal
+    return np.where(followed, np.maximum(scene.far_end, low), scene.far_end)
+
+
+def bulk_flux(scene: Scene, q: Real) -> Real:
+    """Return the flux that leaves a sheet of births in the bulk of the film's material on both sides, up to ``q``.
+
+    The integral of 2 Re(Z) |F|^2 over q in closed form, with Z and F of `optics.waves.coherent` next to the sheet.
+    """
+    n, eps, h = scene.film_index, scene.eps[scene.film], scene.in_plane
+    ends = []
+    for kz in (n, 1j * np.sqrt(q * q - eps)):
+        back = kz.conj()
+        upright = (back**3 / 3.0 - eps.conj() * back) / eps
+        ends.append(-0.75 * h * (kz + kz**3 / (3.0 * eps)) + 1.5 * (1.0 - h) * upright)
+    flux: Real = (ends[1] - ends[0]).real / n.real
+    return flux
+
+
 def _half_cells(scene: Scene) -> tuple[Index, Index, Real, Real, Real]:
     """Return owner, polarisation, anchor, signed length and line width of half the distance between marks."""
     found = find(scene)
-    lines = np.vstack([light_lines(scene), scene.film_index.real[None]])
-    low, high = scene.open_end, scene.far_end
+    lines = np.vstack([light_lines(scene), scene.far_end[None]])
+    low, high = scene.open_end, landing_end(scene)
     there = high - low > 1e-9
     owners = [found.wavelength]
     pols = [found.polarisation]
@@ -199,6 +233,9 @@ def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
     over = standing(edges[nodes.owner], kz)
     responses = [wave.response(waves, k) if s.plates and not nodes.bound else None for k, s in enumerate(scene.sides)]
     ends = end_amounts(waves, responses, looks, mirrors, over.whole[:, 0], bound=nodes.bound)
+    if nodes.bound:
+        photons = nodes.points.q < scene.far_end[nodes.owner, None]
+        ends = (ends[0] * photons, ends[1] * photons)
     strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * np.exp(2j * film.phase * kz))
     twice, width = np.exp(2j * film.phase * kz.real), np.diff(edges[nodes.owner], axis=1)
     for polarisation in nodes.polarisations:
@@ -262,8 +299,9 @@ def _add_block(
         sent[1] += block.of(None, mirrors[1], block.upright * strength, zero)
     sent = [each / width[:, :, None] for each in sent]
     taken = [np.swapaxes(each * block.take[:, None], 1, 2) for each in right]
-    gather(out.upper, owner, np.matmul(sent[1], taken[0]))
-    gather(out.lower, owner, np.matmul(sent[0], taken[1]))
+    with np.errstate(over="ignore"):  # in the triangles that mean nothing
+        gather(out.upper, owner, np.matmul(sent[1], taken[0]))
+        gather(out.lower, owner, np.matmul(sent[0], taken[1]))
     gone = sum(np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)], 0, 2)) for k in (0, 1))
     for k in (0, 1):
         back = [ends[way][SEEN_FROM[k]] for way in (0, 1)]

@@ -168,7 +168,7 @@ def radiative_table(result: Result, read: tuple[Reading, ...]) -> pd.DataFrame:
     import pandas as pd
 
     factor = result.averages["rate_factor"]
-    rows: list[tuple[str, str, float]] = [("bulk", "", 1.0), ("times P", "", factor)]
+    rows: list[tuple[str, str, float]] = [("bulk", "any", 1.0), ("times P", "any", factor)]
     rows += [("times P (1 - p_r)", each.name, factor * (1.0 - each.p_r)) for each in read]
     known = result.radiation
     rate = np.nan if known is None else known.equilibrium_rate
