@@ -86,7 +86,7 @@ def import_material(
     Example:
       photonfate start my-film
       photonfate material import my-film/tables/invented-red-film.csv --name red-film --folder my-film
-      photonfate material show my-film/materials/red-film.toml
+      photonfate material check my-film/materials/red-film.toml
     """
     from optics.media.cabinet import cabinet_beside, users_cabinet
     from optics.media.importing import About, import_table

@@ -266,3 +266,10 @@ def test_births_from_absorption_that_end_on_a_floor_are_refused_until_it_is_repa
                 optics.read_stack(tmp_path / "tail.toml")
         else:
             assert optics.solve(optics.read_stack(tmp_path / "tail.toml")).averages["trapped"] > 0.5
+
+
+def test_the_invented_film_to_begin_from_is_fit(tmp_path):
+    run("start", tmp_path / "project")
+    (table,) = (tmp_path / "project" / "tables").glob("*.csv")
+    done = run("material", "check", table, "--from-nm", 610, "--to-nm", 750)
+    assert done.exit_code == 0, done.output
