@@ -16,9 +16,10 @@ import click
     show_default=True,
     help="Format of the data.",
 )
-@click.option("--full", is_flag=True, help="Keep tables that make the bundle larger than 5 MB.")
+@click.option("--slices", type=click.IntRange(2, 400), default=20, show_default=True, help="Slices of the film.")
+@click.option("--full", is_flag=True, help="Let it grow over 5 MB; adds the depth by wavelength.")
 @click.option("--replace", is_flag=True, help="Write over a folder that is not an untouched result of this tool.")
-def handoff(stack: Path, folder: Path | None, kind: str, full: bool, replace: bool) -> None:
+def handoff(stack: Path, folder: Path | None, kind: str, slices: int, full: bool, replace: bool) -> None:
     """Write one folder with all that another model may take over from a stack file.
 
     STACK is a stack file, or a result folder or bundle whose stack is taken. `photonfate solve` on a bundle computes
@@ -41,6 +42,6 @@ def handoff(stack: Path, folder: Path | None, kind: str, full: bool, replace: bo
     stack = stack_file_in(stack)
     loaded = read_stack(stack)
     check_target(folder, replace=replace)
-    handed = hand_over(loaded)
+    handed = hand_over(loaded, slices=slices, full=full)
     write_handoff(handed, folder, kind=kind, stack_file=stack, full=full, replace=replace)
     click.echo(report(handed, folder))

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.assumptions import assumptions
 from optics.fate.account import ledger_of
 from optics.fate.drawing import drawing_of
 from optics.fate.ends import SampleEnds, follow
@@ -17,12 +18,18 @@ from optics.fate.wave import Settings
 from optics.roughness import graded
 from optics.sample import Sample, at_wavelengths
 from optics.stack import Stack
+from optics.transport.depth import InDepth, indepth
+from optics.transport.depthtables import by_wavelength_table
 from optics.transport.inplane import InPlane, inplane
+from optics.transport.landing import ENDS
 from optics.units import absorption_per_cm
 from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd
+
+SLICES = 20
+"""Slices of the depth matrix where nothing is said."""
 
 TAKEN = "taken:"
 """How the columns of modes begin that say what a layer absorbs."""
@@ -51,13 +58,17 @@ class Handover:
     assumptions: tuple[str, ...]
 
 
-def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
+def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, settings: Settings | None = None) -> Handover:
     """Work out everything that a model may take over from a stack.
 
     Parameters
     ----------
     stack
         The stack; without a sample of its own its readings are those of a sample of defaults.
+    slices
+        Even slices of the film for its depth matrix.
+    full
+        Whether the depth matrix is wanted wavelength by wavelength too.
     settings
         How finely to integrate.
 
@@ -68,7 +79,9 @@ def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
     """
     settings = settings or Settings()
     result = solve(stack, settings=settings)
-    plane = inplane(stack, settings=settings)
+    smooth = graded(stack)
+    plane = inplane(smooth, settings=settings)
+    depth = indepth(smooth, slices=slices, settings=settings)
     read, by_wavelength = _readings(result, settings)
     tables = {} if result.table is None else {"outcomes": result.table}
     tables |= {
@@ -78,6 +91,7 @@ def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
         "kernel": plane.kernel,
         "exponentials": plane.exponentials,
         "compact": plane.compact,
+        **depth_tables(depth),
         "index": index_table(result),
         "where": result.where,
         "spectra": result.spectra,
@@ -88,13 +102,17 @@ def hand_over(stack: Stack, *, settings: Settings | None = None) -> Handover:
         fixed, absorbers = mode_tables(plane.modes)
         tables |= {"modes": fixed, "mode_absorbers": absorbers}
     tables["kernel_spectra"] = plane.by_wavelength
-    said = (result.assumptions, plane.assumptions, (_sample_said(stack),))
+    if full:
+        tables["depth_spectra"] = by_wavelength_table(depth)
+    # of a stack with rough faces, layers stand for them: what is said of those is no news
+    known = set(assumptions(smooth))
+    later = tuple(each for each in (*plane.assumptions, *depth.assumptions) if each not in known)
     return Handover(
         result,
         tables,
         numbers_of(result, read) | plane_numbers(plane),
-        _once(result.warnings, plane.warnings),
-        _once(*said),
+        _once(result.warnings, plane.warnings, depth.warnings),
+        _once(result.assumptions, later, (_sample_said(stack),)),
     )
 
 
@@ -112,6 +130,27 @@ def plane_numbers(plane: InPlane) -> dict[str, float]:
     """Return the averages of transport in the plane by names that end in their unit."""
     renamed = {"within_90_um": "90_percent_within_um", "within_99_um": "99_percent_within_um"}
     return {f"inplane_{renamed.get(name, name)}": value for name, value in plane.averages.items()}
+
+
+def depth_tables(depth: InDepth) -> dict[str, pd.DataFrame]:
+    """Return the depth matrix averaged over the births, tidy, and what of each slice of birth ends elsewhere."""
+    import pandas as pd
+
+    edges, lead = depth.edges_nm, depth.lead
+    count = len(edges) - 1
+    birth, landing = np.repeat(np.arange(count), count), np.tile(np.arange(count), count)
+    matrix = pd.DataFrame(
+        {
+            "birth_from_nm": edges[birth],
+            "birth_to_nm": edges[birth + 1],
+            "landing_from_nm": edges[landing],
+            "landing_to_nm": edges[landing + 1],
+            "share": lead.matrix.ravel(),
+        }
+    )
+    head = {"birth_from_nm": edges[:-1], "birth_to_nm": edges[1:], "rate_factor": lead.rate_factor}
+    ends = dict(zip(ENDS, lead.ends.T, strict=True))
+    return {"depth_matrix": matrix, "depth_slices": pd.DataFrame(head | {"film": lead.matrix.sum(axis=1)} | ends)}
 
 
 def mode_tables(modes: pd.DataFrame) -> tuple[pd.DataFrame, pd.DataFrame]:

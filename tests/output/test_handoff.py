@@ -275,6 +275,17 @@ def test_readings_by_wavelength_average_to_the_readings(handed):
         np.testing.assert_allclose(averages, expected.astype(float), rtol=0, atol=1e-12)  # the same sum
 
 
+def test_a_slice_of_birth_loses_nothing_and_slices_average_to_the_ledger(handed):
+    matrix, slices = handed.tables["depth_matrix"], handed.tables["depth_slices"]
+    landed = matrix.groupby("birth_from_nm")["share"].sum().to_numpy()
+    np.testing.assert_allclose(landed, slices["film"], rtol=0, atol=1e-12)  # the same sum
+    ends = slices.drop(columns=["birth_from_nm", "birth_to_nm", "rate_factor"])
+    np.testing.assert_allclose(ends.sum(axis=1), 1.0, rtol=0, atol=1e-9)  # the other ends are computed each by itself
+    # Slices are of one width here, so births in them weigh as their rate factor.
+    mean = (slices["film"] * slices["rate_factor"]).sum() / slices["rate_factor"].sum()
+    assert mean == pytest.approx(handed.numbers["taken_back"], abs=1e-8)
+
+
 def test_a_stack_without_a_coefficient_still_hands_over_the_factors(tmp_path):
     stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
     table = hand_over(stack).tables["radiative"]
