@@ -22,6 +22,9 @@ Index = NDArray[np.intp]
 MOST_COUNTED = 40
 """Round trips counted one by one; where more fit before the edge, their whole number is averaged over one trip."""
 
+FAINTEST = 1e-10
+"""Light below this part of what entered is not followed further."""
+
 MOST_PAIRS = 20_000
 """Pairs of round trips above and below that are counted one by one."""
 
@@ -260,6 +263,7 @@ def _between(out: Real, ends: Ends, trips: Sequence[Trip], entered: Sequence[Rea
         _mean_field(out, ends, trips, entered, reach)
         return
     visits = [np.zeros_like(entered[0]) for _ in trips]
+    faintest = FAINTEST * max(entered[0].max(), entered[1].max())
     nothing = np.zeros_like(entered[0])
     older: list[list[Real]] = [[nothing, nothing] for _ in range(counts[1] + 1)]
     for above in range(counts[0] + 1):
@@ -271,6 +275,9 @@ def _between(out: Real, ends: Ends, trips: Sequence[Trip], entered: Sequence[Rea
             before = newer[below - 1] if below else [nothing, nothing]
             arriving[0] = arriving[0] + trips[0].again * after[0] + trips[1].across * before[1]
             arriving[1] = arriving[1] + trips[0].across * after[0] + trips[1].again * before[1]
+            if max(arriving[0].max(), arriving[1].max()) < faintest:
+                newer.append([nothing, nothing])
+                continue
             way_made = above * trips[0].way + below * trips[1].way
             newer.append(_one_more(out, ends, trips, visits, arriving, reach - way_made))
         older = newer

@@ -4,6 +4,8 @@ from collections.abc import Iterator, Sequence
 from dataclasses import asdict
 from typing import TYPE_CHECKING, Any
 
+from optics.output.numbers import decimals_for
+
 if TYPE_CHECKING:
     from pandas import DataFrame
 
@@ -27,18 +29,21 @@ WIDTH = 10
 
 def readings_text(sampled: "Sampled") -> Iterator[str]:
     """Yield the table of ends of this sample and that of all readings, which are never shown apart."""
-    yield from _ends(sampled)
+    decimals = decimals_for(sampled.error)
+    yield from _ends(sampled, decimals)
     yield ""
     yield f"{'Reading':<26}" + "".join(f"{name:>{WIDTH}}" for name in ("p_r", "p_e", "p_a")) + "   bulk-normalised"
     for reading in sampled.readings:
-        yield _reading(_named(reading.name, sampled.sample), (reading.p_r, reading.p_e, reading.p_a), reading.bulk)
+        yield _reading(
+            _named(reading.name, sampled.sample), (reading.p_r, reading.p_e, reading.p_a), reading.bulk, decimals
+        )
     if sampled.model == "wave":
         for reading in sampled.ray_readings:
             name = f"  {reading.name}, rays"
-            yield _reading(name, (reading.p_r, reading.p_e, reading.p_a), reading.bulk)
+            yield _reading(name, (reading.p_r, reading.p_e, reading.p_a), reading.bulk, decimals)
     for limit in sampled.scrambled:
         name = "scrambled, open faces" if limit.open_faces else "scrambled, these faces"
-        yield _reading(name, (limit.p_r, limit.p_e, limit.p_a), None)
+        yield _reading(name, (limit.p_r, limit.p_e, limit.p_a), None, decimals)
     yield "p_r: the film takes it back and makes carriers; p_e: it leaves; p_a: lost. faces: held light lost;"
     yield "wide: no edges, held light followed to its end; sphere: light at the edge leaves too."
 
@@ -47,19 +52,22 @@ def _named(name: str, sample: "Sample") -> str:
     return f"{name}, edge at {sample.to_edge_mm:g} mm" if name in ("sphere", "lost edges") else name
 
 
-def _reading(name: str, shares: Sequence[float], bulk: Sequence[float] | None) -> str:
-    cells = "".join(f"{value + 0.0:>{WIDTH}.4f}" for value in shares)
-    return f"{name:<26}" + cells + ("" if bulk is None else "".join(f"{value + 0.0:>{WIDTH}.4f}" for value in bulk))
+def _reading(name: str, shares: Sequence[float], bulk: Sequence[float] | None, decimals: int) -> str:
+    return f"{name:<26}" + "".join(_cell(value, decimals) for value in (*shares, *(bulk or ())))
 
 
-def _ends(sampled: "Sampled") -> Iterator[str]:
+def _cell(value: float, decimals: int) -> str:
+    return f"{round(value, decimals) + 0.0:>{WIDTH}.{decimals}f}"  # adding 0.0 makes -0.0 plain
+
+
+def _ends(sampled: "Sampled", decimals: int) -> Iterator[str]:
     """Yield where first, held, guided and scattered light ends in a sample with this edge."""
     sample = sampled.sample
     yield f"{f'Ends, edge at {sample.to_edge_mm:g} mm':<26}" + "".join(f"{name:>{WIDTH}}" for name, _ in PLACES)
     for light, name in LIGHTS:
         cells = [sum(sampled.averages.get(("edged", light, place), 0.0) for place in places) for _, places in PLACES]
-        if any(abs(cell) > 0.5e-4 for cell in cells):
-            yield f"{f'{name} light':<26}" + "".join(f"{cell + 0.0:>{WIDTH}.4f}" for cell in cells)
+        if any(round(cell, decimals) for cell in cells):
+            yield f"{f'{name} light':<26}" + "".join(_cell(cell, decimals) for cell in cells)
 
 
 def yields_text(rows: Sequence["Implied"], known: "Given", *, temperature_K: float) -> Iterator[str]:
