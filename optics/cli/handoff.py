@@ -44,4 +44,4 @@ def handoff(stack: Path, folder: Path | None, kind: str, slices: int, full: bool
     check_target(folder, replace=replace)
     handed = hand_over(loaded, slices=slices, full=full)
     write_handoff(handed, folder, kind=kind, stack_file=stack, full=full, replace=replace)
-    click.echo(report(handed, folder))
+    click.echo(report(handed, folder, stack_file=stack))

@@ -3,12 +3,13 @@
 import csv
 import io
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from optics.output.folder import writing
+from optics.output.handoff_bands import bands_beside
 from optics.output.handoff_columns import Sheet, numbers, sheet
 from optics.output.handoff_formats import DATA, FORMATS, Contents, write_data
 from optics.output.handoff_methods import methods_text, references_text
@@ -18,6 +19,8 @@ from optics.output.record import RECORD, tool_version, write_record
 from optics.output.report import stack_line
 
 if TYPE_CHECKING:
+    from pandas import DataFrame
+
     from optics.transport.handover import Handover
 
 README = "README.txt"
@@ -29,6 +32,9 @@ LIMIT_BYTES = 5_000_000
 
 ROOM_BYTES = 4_600_000
 """What tables may take of it, counted as text."""
+
+LARGE = ("mode_absorbers", "kernel_spectra", "depth_spectra")
+"""Tables of a row a wavelength and something else: the first to go when room is short."""
 
 
 def bundle_folder(stack_file: Path) -> Path:
@@ -69,7 +75,8 @@ def write_handoff(
     """
     result, stack = handed.result, handed.result.stack
     source = None if stack_file is None else Path(stack_file)
-    sheets = [sheet(name, table) for name, table in handed.tables.items()]
+    bands = bands_beside(stack, source)
+    sheets = [sheet(name, table) for name, table in _ordered(handed.tables, bands.tables)]
     kept, left_out = (sheets, {}) if full else fitting(sheets, room=ROOM_BYTES)
     count, version = numbers(handed.numbers), tool_version()
     with writing(Path(folder), replace=replace) as part:
@@ -83,7 +90,7 @@ def write_handoff(
             kind=kind,
             advised=result.advised_model,
             numerical_error=result.numerical_error,
-            warnings=handed.warnings,
+            warnings=(*handed.warnings, *bands.warnings),
             left_out=left_out,
             version=version,
         )
@@ -100,16 +107,24 @@ def write_handoff(
     return Path(folder)
 
 
-def report(handed: "Handover", folder: Path) -> str:
+def report(handed: "Handover", folder: Path, *, stack_file: Path | None = None) -> str:
     """Return what to show of a bundle: the numbers of its page, warnings, and where it is."""
     result = handed.result
     lines = [result.stack.title] if result.stack.title else []
     lines += [stack_line(result.stack), ""]
     advised, error = result.advised_model, result.numerical_error
     lines += ten(numbers(handed.numbers), advised=advised, numerical_error=error)
-    lines += ["", "Warnings:", *(f"  - {line}" for line in handed.warnings)] if handed.warnings else []
+    warnings = (*handed.warnings, *bands_beside(result.stack, stack_file).warnings)
+    lines += ["", "Warnings:", *(f"  - {line}" for line in warnings)] if warnings else []
     size = sum(path.stat().st_size for path in folder.rglob("*") if path.is_file())
     return "\n".join([*lines, "", f"Bundle: {folder} ({size / 1e6:.2f} MB); begin with {README} in it"])
+
+
+def _ordered(tables: Mapping[str, "DataFrame"], bands: Mapping[str, "DataFrame"]) -> Iterator[tuple[str, "DataFrame"]]:
+    """Yield all tables, those of bands before those that may not fit."""
+    yield from ((name, table) for name, table in tables.items() if name not in LARGE)
+    yield from bands.items()
+    yield from ((name, table) for name, table in tables.items() if name in LARGE)
 
 
 def fitting(sheets: Sequence[Sheet], *, room: int) -> tuple[list[Sheet], Mapping[str, int]]:

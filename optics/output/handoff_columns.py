@@ -57,6 +57,7 @@ TITLES = {
     "depth_slices": "slices of the depth matrix with what leaves the film",
     "depth_spectra": "the depth matrix wavelength by wavelength",
     "bands": "spread of the averages within the tolerances of the inputs",
+    "band_spectra": "the same wavelength by wavelength",
 }
 
 ENDS = {
@@ -153,6 +154,15 @@ MEANINGS |= {
     "depth_slices.elsewhere": f"{OF_BORN}: absorbed by other layers or plates, bound light not",
     "depth_slices.guided_elsewhere": f"{OF_BORN}: bound light that other layers absorb",
     "depth_slices.guided_unfinished": f"{OF_BORN}: bound light that nothing absorbs",
+    "bands.share": "the share meant",
+    "band_spectra.share": "the share meant",
+    "own": "of the stack as it is given",
+    "median": "over the drawn inputs",
+    "low_68": "68 % lie above this and below high_68, half of the rest on either side",
+    "high_68": "see low_68",
+    "low_95": "95 % lie above this and below high_95",
+    "high_95": "see low_95",
+    "sd": "standard deviation over the drawn inputs",
     "modes.share": "share of the photons born at this wavelength that goes into the mode",
     "modes.absorption_per_cm": "2 Im q, of the power along the plane",
     "absorbed_share": "share of the mode's power that the layer absorbs",

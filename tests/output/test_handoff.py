@@ -446,3 +446,34 @@ def test_averages_handed_over_are_those_of_solve(home, handed):
     result = optics.solve(read_stack(home / "stack.toml"))
     for name, value in result.averages.items():
         assert handed.numbers[name] == pytest.approx(value, abs=1e-9)  # runs share wavelengths out differently
+
+
+@pytest.fixture(scope="module")
+def studied(tmp_path_factory):
+    """A stack at three wavelengths with its tolerance study beside it."""
+    folder = tmp_path_factory.mktemp("studied")
+    read_stack_of(folder, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
+    assert run("tolerance", folder / "stack.toml", "--samples", 16).exit_code == 0
+    return folder
+
+
+def test_tolerance_bands_go_along_when_a_study_lies_beside_the_stack(studied):
+    assert run("handoff", studied / "stack.toml", "--to", studied / "out").exit_code == 0
+    for name, file in (("bands", "bands.csv"), ("band_spectra", "bands_by_wavelength.csv")):
+        sent = pd.read_csv(studied / "out" / "data" / f"{name}.csv")
+        pd.testing.assert_frame_equal(sent, pd.read_csv(studied / "stack-tolerance" / file), rtol=ROUNDED)
+    assert frictionless.validate(str(studied / "out" / "datapackage.json")).valid
+    package = json.loads((studied / "out" / "datapackage.json").read_text("utf-8"))
+    fields = [field for part in package["resources"] if "band" in part["name"] for field in part["schema"]["fields"]]
+    assert fields
+    assert all(field["description"] for field in fields)
+
+
+def test_bands_of_another_stack_are_left_out_with_a_warning(studied, tmp_path):
+    copy = shutil.copytree(studied, tmp_path / "copy")
+    file = copy / "stack.toml"
+    file.write_text(file.read_text("utf-8").replace("thickness_nm = 400", "thickness_nm = 380"), encoding="utf-8")
+    done = run("handoff", file, "--to", copy / "later")
+    assert done.exit_code == 0
+    assert "bands were left out, because the stack file has changed since" in done.output
+    assert not (copy / "later" / "data" / "bands.csv").exists()
