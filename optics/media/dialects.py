@@ -16,7 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optics.errors import InputError
-from optics.media.sheet import shortened, shown
+from optics.media.sheet import bare, shortened, shown
 
 __all__ = ["DECIMALS", "SEPARATORS", "Dialect", "Grid", "grid_of_cells", "grid_of_text", "text_of"]
 
@@ -222,7 +222,7 @@ def _nothing_found(readings: list[tuple[Dialect, list[tuple[int, Cells]]]]) -> l
     for dialect, lines in readings:
         begun = [each for each in lines[1:] if len(each[1]) > 1 and number_in(each[1][0], dialect.decimal) is not None]
         if len(begun) * 2 > len(lines) - 1 and len(begun[0][1]) == len(lines[0][1]):
-            return [f"line {number}: {_broken(cells, tuple(lines[0][1]), dialect)}" for number, cells in begun]
+            return [f"line {number}: {_broken(cells, tuple(map(bare, lines[0][1])), dialect)}" for number, cells in begun]
     return ["found 0 row(s) of numbers, expected at least 2 under a header; text columns are not read"]
 
 
@@ -234,7 +234,7 @@ def _grid(cells: list[tuple[int, Cells, str]], dialect: Dialect, width: int, pla
     }
     first, last = min(rows), max(rows)
     above = tuple((number, line) for number, _, line in reversed(cells[:first]))
-    names = next(_headings(above[0][1], dialect, width), ()) if above else ()
+    names = tuple(bare(name) for name in next(_headings(above[0][1], dialect, width), ())) if above else ()
     faults, passed = _other_lines(cells, rows, dialect, names or tuple(f"column {each + 1}" for each in range(width)))
     if faults:
         raise InputError(shortened([f"{place}: {fault}" for fault in faults], place))

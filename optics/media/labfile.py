@@ -20,7 +20,7 @@ from optics.media.dispersion import Tabulated
 from optics.media.headings import AXIS, AXIS_UNITS, Heading, heading, unit_named
 from optics.media.labvalues import Values, index_from, ordered, value_faults
 from optics.media.material import Material
-from optics.media.sheet import read_bytes, shortened, shown
+from optics.media.sheet import bare, read_bytes, shortened, shown
 from optics.units import energy_eV
 
 __all__ = ["Hints", "LabTable", "is_workbook", "parse_lab", "read_hashed", "read_lab", "read_table"]
@@ -191,7 +191,7 @@ def _table(grid: Grid, *, place: str, hints: Hints, wanted: str, signed: bool, s
         unit=unit,
         columns={name: (column, headings[used[name]].unit) for name, column in columns.items()},
         lines=grid.lines,
-        names={quantity: headings[at].text for quantity, at in used.items()},
+        names={quantity: bare(headings[at].text) for quantity, at in used.items()},
         texts={quantity: tuple(row[at] for row in grid.texts) for quantity, at in used.items()},
     )
     faults = value_faults(values, hints, signed=signed)
@@ -301,7 +301,7 @@ def _axis_faults(headings: tuple[Heading, ...], axes: list[int], hints: Hints) -
     if doubtful and not known:
         return [f"column {shown(each.text)} {each.doubt}, expected for example wavelength_nm" for each in doubtful]
     if len(known) > 1:
-        names = " and ".join(each.text for each in known)
+        names = " and ".join(bare(each.text) for each in known)
         return [f"found {names}, expected one of them; say which with --columns"]
     if not plain:
         return [_no_axis(headings)]

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 
 from optics.errors import InputError
 
-__all__ = ["LIMIT_BYTES", "SHOWN_FAULTS", "Sheet", "decode", "parse_sheet", "read_bytes", "shortened", "shown"]
+__all__ = ["LIMIT_BYTES", "SHOWN_FAULTS", "Sheet", "bare", "decode", "parse_sheet", "read_bytes", "shortened", "shown"]
 
 Result = TypeVar("Result")
 
@@ -195,6 +195,11 @@ def shown(cell: str) -> str:
         return "nothing"
     printable = "".join(letter if letter.isprintable() else "?" for letter in cell[:41])
     return f'"{printable}"' if len(cell) <= 40 else f'"{printable[:37]}..."'
+
+
+def bare(name: str) -> str:
+    """A column's name as messages call it: as `shown`, without quotes."""
+    return shown(name).removeprefix('"').removesuffix('"')
 
 
 def _comma_cure(cell: str) -> str:

@@ -10,9 +10,12 @@ import re
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from optics import units
 from optics.errors import InputError
+from optics.media.dialects import text_of
 from optics.media.headings import AXIS_UNITS
 from optics.media.labfile import LabTable, parse_lab
 from optics.media.labvalues import nm_of
@@ -235,3 +238,39 @@ def test_a_unit_of_another_size_is_seen_wherever_the_numbers_make_no_sense_in_it
                 assert table.wavelength_nm == pytest.approx(taken)
     usual = {("nm", "um"), ("nm", "eV"), ("nm", "angstrom"), ("um", "nm"), ("eV", "nm"), ("um", "angstrom")}
     assert usual <= seen
+
+
+PIECES = st.lists(
+    st.one_of(
+        st.sampled_from(
+            [
+                *("0", "1", "9", ",", ".", ";", "\t", " ", "\n", "\r", "#", '"', "%", "-", "e", "D", "\x1b", "\0", "_"),
+                *("wavelength_nm", "nm", "E (eV)", "n", "k", "eps1", "1/cm", "nan", "inf", "\N{GREEK SMALL LETTER MU}"),
+                *("\n400,1.5,0.1\n", "500;1,6;0,2\n", "wavelength_nm,n,k\n", "wl\tn\tk\n", "300\t2,5\t1\n"),
+            ]
+        ),
+        st.text(max_size=3),
+    ),
+    max_size=60,
+).map("".join)
+
+
+@settings(max_examples=1000, deadline=None)
+@given(PIECES)
+def test_any_text_is_a_table_or_a_refusal_in_lines_that_can_be_shown(text):
+    try:
+        table = parse_lab(text, place="film.csv")
+    except InputError as refusal:
+        assert refusal.faults
+        assert all(fault.startswith("film.csv: ") and fault.isprintable() for fault in refusal.faults)
+    else:
+        assert np.isfinite(table.tabulated.index(table.wavelength_nm)).all()
+
+
+@settings(max_examples=300, deadline=None)
+@given(st.binary(max_size=200))
+def test_any_bytes_are_a_text_or_a_refusal(content):
+    try:
+        text_of(content, place="film.csv")
+    except InputError as refusal:
+        assert all(fault.isprintable() for fault in refusal.faults)
