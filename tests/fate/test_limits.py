@@ -2,11 +2,11 @@
 
 import numpy as np
 import pytest
-from piles import ISOTROPIC, amounts, bound_at, drawn, ledger, scene_of
+from piles import ISOTROPIC, amounts, bound_at, drawn, ledger, open_at, scene_of
 from scipy.integrate import quad_vec
 
 from optics.fate import wave
-from optics.fate.exits import Layout
+from optics.fate.exits import SUBSTRATE, Layout
 from optics.fate.ledger import ENDS
 
 EXACT = 1e-9
@@ -181,3 +181,32 @@ def test_an_almost_clear_film_between_absorbing_contacts_guides_light_to_them_as
 
     assert guided(1e-12) == pytest.approx(guided(0.0), abs=SHARES)
     assert guided(0.0)["guided_elsewhere"] > 0.5
+
+
+def test_held_light_survives_a_plate_as_beer_and_lambert_say():
+    """Beyond the air cone the far face reflects everything: there and back, exp(-2 alpha t/cos) is still held."""
+    k, thickness_nm, n = 3e-7, 1.1e6, 1.52
+    plate = (n + 1j * k, thickness_nm, "plate")
+    scene = scene_of(drawn(760, [(1, 0), FILM, plate, (1, 0)]))
+    q = np.linspace(1.05, 1.5, 40)
+    found, layout = open_at(scene, q), Layout(scene.media)
+    held, taken = found[layout.end(SUBSTRATE)], found[layout.held(2)]
+    round_trip = 2.0 * 4.0 * np.pi * k * thickness_nm / 760.0 / np.sqrt(1.0 - (q / n) ** 2)
+    np.testing.assert_allclose(held / (held + taken), np.exp(-round_trip), rtol=1e-9)
+    clear = open_at(scene_of(drawn(760, [(1, 0), FILM, (n, thickness_nm, "plate"), (1, 0)])), q)
+    np.testing.assert_allclose(held + taken, clear[layout.end(SUBSTRATE)], rtol=1e-9)
+
+
+@pytest.mark.parametrize("k", [1e-6, 1e-3, 0.1])
+def test_the_absorption_of_a_plate_does_not_change_its_faces(k):
+    """Faces of plates take the real index; what the plate absorbs is taken on the way through it."""
+    clear = amounts(drawn(760, [(1, 0), FILM, (1.52, 1.1e6, "plate"), (1, 0)]))
+    media = [(1, 0), FILM, (1.52 + 1j * k, 1.1e6, "plate"), (1, 0)]
+    absorbing = amounts(drawn(760, media))
+    assert ledger(drawn(760, media)).rate_factor[0] == pytest.approx(sum(clear[end] for end in ENDS), abs=SHARES)
+    assert absorbing["waveguided"] == pytest.approx(clear["waveguided"], abs=SHARES)
+    if k >= 1e-3:  # opaque: nothing comes back from its far face, nothing gets there
+        assert absorbing["free_below"] + absorbing["substrate"] < SHARES
+        half_space = amounts(drawn(760, [(1, 0), FILM, (1.52, 0)]))
+        assert absorbing["elsewhere"] == pytest.approx(half_space["free_below"], abs=SHARES)
+        assert absorbing["free_above"] == pytest.approx(half_space["free_above"], abs=SHARES)
