@@ -176,7 +176,7 @@ def sample_notes(sample: Sample, *, asked: bool = True) -> tuple[str, ...]:
     given = "" if asked else " (no [sample] given: defaults)"
     said = [
         f"sample: edge {sample.to_edge_mm:g} mm from the spot in all directions, light there {sample.edges}{given}",
-        f"{_told(sample.recycling_share)} of the film's absorption makes carriers (recycling_share)",
+        f"share of the film's absorption that makes carriers: {_told(sample.recycling_share)} (recycling_share)",
     ]
     if sample.rough:
         said.append(

@@ -36,7 +36,7 @@ def sample_report(
     """Return what to show of a sample: the stack, what was assumed, ends, all readings, yields."""
     parts = [
         "\n".join(heading(sampled.stack)),
-        listed("Assumed", (*assumptions(sampled.stack), *sample_notes(sampled.sample, asked=False))),
+        listed("Assumed", (*assumptions(sampled.stack), *_defaults(sampled))),
         listed("Warnings", sampled.warnings),
         "\n".join(readings_text(sampled)),
         "\n".join(yields_text(rows, known, temperature_K=temperature_K)) if known is not None else "",
@@ -44,6 +44,11 @@ def sample_report(
         f"Files: {folder}" if folder else "",
     ]
     return "\n\n".join(part for part in parts if part)
+
+
+def _defaults(sampled: "Sampled") -> tuple[str, ...]:
+    """Return what stands in for a sample that the stack does not have."""
+    return () if sampled.stack.sample is not None else sample_notes(sampled.sample, asked=False)
 
 
 def yields_table(rows: Sequence["Implied"]) -> "DataFrame":
