@@ -9,7 +9,9 @@ if TYPE_CHECKING:
     from optics.collection import Collection
     from optics.depth import Decay, DepthTable, Pump, Sheet
     from optics.errors import InputError
+    from optics.fate.implied import yields_of
     from optics.fate.overlay import lay_over
+    from optics.fate.sampled import Sampled, sampled
     from optics.fate.solve import Result, solve
     from optics.light import Light
     from optics.media.cabinet import bundled_names
@@ -22,6 +24,7 @@ if TYPE_CHECKING:
     from optics.output.result import write_result
     from optics.output.transport import write_indepth, write_inplane
     from optics.radiation import FromAbsorption, equilibrium_rate
+    from optics.sample import NearField, PerWavelength, Sample
     from optics.spectrum import Gaussian, SpectrumTable
     from optics.stack import Emission, Layer, Outer, Stack
     from optics.stackfile.reading import parse_stack, read_stack
@@ -45,9 +48,13 @@ __all__ = [
     "Layer",
     "Light",
     "Material",
+    "NearField",
     "Outer",
+    "PerWavelength",
     "Pump",
     "Result",
+    "Sample",
+    "Sampled",
     "Sheet",
     "SpectrumTable",
     "Stack",
@@ -64,11 +71,13 @@ __all__ = [
     "parse_stack",
     "read_stack",
     "read_table",
+    "sampled",
     "solve",
     "write_indepth",
     "write_inplane",
     "write_result",
     "write_stack",
+    "yields_of",
 ]
 
 _HOMES = {
@@ -84,9 +93,13 @@ _HOMES = {
     "Layer": "optics.stack:Layer",
     "Light": "optics.light:Light",
     "Material": "optics.media.material:Material",
+    "NearField": "optics.sample:NearField",
     "Outer": "optics.stack:Outer",
+    "PerWavelength": "optics.sample:PerWavelength",
     "Pump": "optics.depth:Pump",
     "Result": "optics.fate.solve:Result",
+    "Sample": "optics.sample:Sample",
+    "Sampled": "optics.fate.sampled:Sampled",
     "Sheet": "optics.depth:Sheet",
     "SpectrumTable": "optics.spectrum:SpectrumTable",
     "Stack": "optics.stack:Stack",
@@ -103,11 +116,13 @@ _HOMES = {
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
     "read_table": "optics.media.labfile:read_table",
+    "sampled": "optics.fate.sampled:sampled",
     "solve": "optics.fate.solve:solve",
     "write_indepth": "optics.output.transport:write_indepth",
     "write_inplane": "optics.output.transport:write_inplane",
     "write_result": "optics.output.result:write_result",
     "write_stack": "optics.stackfile.writing:write_stack",
+    "yields_of": "optics.fate.implied:yields_of",
 }
 
 

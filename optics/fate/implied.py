@@ -127,3 +127,38 @@ def _one(reading: Reading, known: Given, temperature_K: float) -> Implied:
         between = yields.internal_yield(low, **shares), yields.internal_yield(high, **shares)
     values = yields.yields(internal, rate_factor=reading.rate_factor, temperature_K=temperature_K, **shares)
     return Implied(reading, top, values, sd, between, cut)
+
+
+def yields_of(
+    sampled: Sampled,
+    *,
+    internal: float | None = None,
+    external: float | None = None,
+    sd: float = 0.0,
+    reading: str = DEFAULT_READING,
+    temperature_K: float = ROOM_K,
+) -> tuple[Implied, ...]:
+    """Return what an internal or an external yield implies in every reading of a sample.
+
+    Parameters
+    ----------
+    sampled
+        What :func:`optics.sampled` returned.
+    internal, external
+        The yield that is known, one of them; internal is that in this stack.
+    sd
+        Its standard deviation.
+    reading
+        The reading that has to allow a measured external yield.
+    temperature_K
+        For the voltage [K].
+
+    Raises
+    ------
+    InputError
+        When none or both are given, or a measured yield is above the largest that the reading allows.
+    """
+    known = given(internal=internal, external=external, sd=sd)
+    if known is None:
+        raise InputError("yields: found neither internal nor external, expected one of them")
+    return implied(sampled, known, reading=reading, temperature_K=temperature_K)
