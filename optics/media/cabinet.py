@@ -2,7 +2,8 @@
 
 A cabinet is a folder of cards (`optics.media.card`): ``materials/`` beside the stack file, and one a user in the place
 that the platform keeps for an application's data. A name is looked for in this order: beside the stack file, the
-user's, the bundled ones. The import refuses names of bundled materials, so that none is ever hidden.
+user's, the bundled ones. The import refuses names of bundled materials, and a name
+that is both bundled and one's own is refused, so that none is ever hidden.
 """
 
 import os
@@ -104,8 +105,13 @@ def own_names(folder: str | Path | None = None) -> dict[str, Path]:
     """Return the cards of one's own by name: those beside stack files in a folder before the user's."""
     cabinets = (users_cabinet(), cabinet_beside(folder))
     cards = [card.absolute() for each in cabinets if each.is_dir() for card in sorted(each.glob(f"*{_CARD_SUFFIX}"))]
-    bundled = set(_cards().values())  # in a checkout of this project they stand in a folder of that very name
-    return {card.stem: card for card in cards if card not in bundled}
+    return {card.stem: card for card in cards if not _copies_bundled(card)}
+
+
+def _copies_bundled(card: Path) -> bool:
+    """Say whether a card is a bundled one: in a checkout of this project they stand in a folder of that very name."""
+    bundled = _cards().get(card.stem)
+    return bundled is not None and (card == bundled or card.read_bytes() == bundled.read_bytes())
 
 
 def is_table(spec: str) -> bool:
@@ -123,6 +129,11 @@ def _named(spec: str, folder: str | Path | None) -> Material:
     name = spec.strip().lower()
     if name not in own:
         return bundled(spec, also=tuple(own))
+    if name in _cards() or name in _aliases():
+        raise InputError(
+            f'material: "{name}" is bundled, and the name of a card of your own too ({own[name]}); '
+            "give the path of that card, or rename it"
+        )
     return read_card(own[name])
 
 

@@ -222,7 +222,8 @@ def _nothing_found(readings: list[tuple[Dialect, list[tuple[int, Cells]]]]) -> l
     for dialect, lines in readings:
         begun = [each for each in lines[1:] if len(each[1]) > 1 and number_in(each[1][0], dialect.decimal) is not None]
         if len(begun) * 2 > len(lines) - 1 and len(begun[0][1]) == len(lines[0][1]):
-            return [f"line {number}: {_broken(cells, tuple(map(bare, lines[0][1])), dialect)}" for number, cells in begun]
+            names = tuple(map(bare, lines[0][1]))
+            return [f"line {number}: {_broken(cells, names, dialect)}" for number, cells in begun]
     return ["found 0 row(s) of numbers, expected at least 2 under a header; text columns are not read"]
 
 
@@ -310,14 +311,11 @@ def _refuse_grouped(texts: Sequence[Sequence[str]], place: str) -> None:
 
 def _headings(line: str, dialect: Dialect, width: int) -> Iterator[tuple[str, ...]]:
     """Yield the ways in which a line above the numbers splits into one heading a column."""
-    bare = line.strip().lstrip("".join(COMMENT)).strip() if _comment(line) else line
-    ways = [_split(bare, Dialect("tab", "point"))] if not dialect.separator else [_split(bare, dialect)]
+    bare_line = line.strip().lstrip("".join(COMMENT)).strip() if _comment(line) else line
+    ways = [_split(bare_line, Dialect("tab", "point"))] if not dialect.separator else [_split(bare_line, dialect)]
     if dialect.separator == "space":
-        ways += [
-            re.split(r"\s{2,}|\t", bare.strip()),
-            [each.strip() for each in bare.split(",")],
-            *_grouped(bare.split(), width),
-        ]
+        ways += [re.split(r"\s{2,}|\t", bare_line.strip()), [each.strip() for each in bare_line.split(",")]]
+    ways += _grouped(bare_line.split() if dialect.separator == "space" else ways[0], width)
     seen = []
     for cells in ways:
         while len(cells) > width and not cells[-1]:
@@ -328,7 +326,7 @@ def _headings(line: str, dialect: Dialect, width: int) -> Iterator[tuple[str, ..
 
 
 def _grouped(words: Cells, width: int) -> Iterator[Cells]:
-    """Yield the ways to join neighbouring words into so many headings: "Photon energy (eV)" is one of three words."""
+    """Yield the ways to join neighbours into so many headings: "Photon energy (eV)" is one, "Wavelength, nm" is one."""
     from itertools import combinations, pairwise
 
     if width < len(words) <= 12:

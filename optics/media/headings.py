@@ -63,10 +63,10 @@ _NAMES = {
     "energy": ("energy", "photonenergy", "energyphoton", "e", "ephoton", "hv", "hnu", "energie"),
     "wavenumber": ("wavenumber", "wavenumbers", "wn", "nubar", "wellenzahl"),
     "frequency": ("frequency", "freq", "f", "frequenz"),
-    "n": ("n", "index", "refractiveindex", "refractiveindexn", "indexofrefraction", "nreal", "realn", "ren"),
+    "n": ("n", "index", "refractiveindex", "refractiveindexn", "indexofrefraction", "nreal", "realn", "ren", "nlambda"),
     "k": (
         *("k", "kappa", "extinction", "extinctioncoefficient", "extinctioncoeff", "extinctioncoefficientk"),
-        *("nimag", "imagn", "imn"),
+        *("nimag", "imagn", "imn", "klambda", "extinctionk"),
     ),
     "eps1": ("eps1", "e1", "epsr", "epsreal", "realeps", "reeps", "eps'"),
     "eps2": ("eps2", "e2", "epsi", "epsimag", "imageps", "imeps", "eps''"),

@@ -102,6 +102,14 @@ def test_a_card_beside_the_stack_file_comes_before_the_users_own(raw, tmp_path):
     assert set(own_names(tmp_path / "project")) == {"film"}
 
 
+def test_a_card_that_took_a_bundled_name_by_hand_is_refused_not_preferred(raw, tmp_path):
+    done = import_table(raw, name="red-film", cabinet=users_cabinet())
+    done.path.rename(done.path.with_name("silver.toml"))
+    with pytest.raises(InputError, match='"silver" is bundled, and the name of a card of your own too'):
+        find("silver")
+    assert find(str(users_cabinet() / "silver.toml")).name == "red-film"
+
+
 def test_an_unknown_name_is_told_with_names_of_ones_own_among_the_nearest(raw):
     import_table(raw, name="red-film", cabinet=users_cabinet())
     with pytest.raises(InputError, match="did you mean red-film"):

@@ -102,6 +102,7 @@ FORMS = {
     "comments between rows": "wavelength_nm,n,k\n{first}\n# lamp changed\n{rest}",
     "blank lines": "\n\nwavelength_nm,n,k\n\n{first}\n\n{rest}\n\n",
     "a note below": "wavelength_nm,n,k\n{rows}\nEnd of scan\nfile closed",
+    "a comma before the unit": "Wavelength, nm,n,k\n{rows}",
     "quotes": '"wavelength_nm","n","k"\n{rows}',
 }
 
