@@ -20,6 +20,7 @@ def plane_figure(found: "InPlane") -> Figure:
     middle, decades = np.sqrt(low * high), np.log10(high / low)
     figure = Figure(figsize=SIZE, layout="constrained")
     axes = figure.subplots()
+    top = 0.0
     for column, name, colour in (
         ("share_guided", "guided", DARK),
         ("share_rays", "rays", MIDDLE),
@@ -29,11 +30,13 @@ def plane_figure(found: "InPlane") -> Figure:
         if density.max() > 1e-6:
             axes.plot(middle, density, color=colour, lw=1.8)
             at = int(np.argmax(density))
-            axes.annotate(name, (middle[at], density[at]), (4, 4), textcoords="offset points", color=colour)
+            late = middle[at] > middle[-1] / 300.0  # its name would run into the right axis
+            where = {"ha": "right" if late else "left", "textcoords": "offset points", "color": colour}
+            axes.annotate(name, (middle[at], density[at]), (-6 if late else 6, 4), **where)
+            top = max(top, float(density[at]))
     axes.set_xscale("log")
     axes.set_xlim(middle[0], middle[-1])
-    axes.set_ylim(bottom=0.0)
-    axes.margins(y=0.12)
+    axes.set_ylim(0.0, 1.15 * top if top else 1.0)
     axes.set_xlabel("in-plane distance from the birth (um)")
     axes.set_ylabel("share of births taken back, per decade")
     right = axes.twinx()
@@ -64,7 +67,7 @@ def depth_figure(found: "InDepth") -> Figure:
     side.invert_yaxis()
     side.set_ylim(edges[-1], edges[0])
     side.set_xlim(left=0.0)
-    side.set_xlabel("share not taken back by the film" + ("" if found.wave is None else "\n(thin line: rays)"))
+    side.set_xlabel("share not taken back" + ("" if found.wave is None else "\n(thin line: rays)"))
     side.set_ylabel("birth depth (nm)")
     figure.suptitle(found.stack.title or "Transport over the depth", fontsize=10)
     _plain(side)

@@ -23,7 +23,7 @@ from optics.waves.scene import Scene
 ORDER = 24
 """Order of the rule over angles on each panel: shapes need no more, totals come from the ledger."""
 
-HELD_ORDER = 24
+HELD_ORDER = 48
 
 BLOCK_ROWS = 24
 """Wavelength panels done at a time, so that arrays over angle and radius stay in cache."""

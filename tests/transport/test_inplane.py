@@ -1,0 +1,218 @@
+"""The kernel in the plane: totals, limits that have closed forms, and a Monte Carlo of rays."""
+
+import numpy as np
+import pytest
+from piles import drawn, ledger
+from piles import scene_of as only_scene
+from scipy.integrate import quad
+from scipy.special import expn, k0
+
+from optics import Emission, Gaussian, Layer, Light, Outer, Stack, find_material
+from optics.transport import flights, rings
+from optics.transport.inplane import inplane
+
+LEDGER = 1e-6  # what the ledger itself is known to
+SIGMAS = 4.0  # of a seeded Monte Carlo; one in sixteen thousand draws would fail
+
+
+def stack_of(media, *, above=1.0, below=1.5, wavelengths_nm=(760.0, 770.0, 780.0), **emission):
+    layers = tuple(
+        Layer(name=f"layer {i}", material=find_material(index), thickness_nm=thickness, emits=i == 0)
+        for i, (index, thickness) in enumerate(media)
+    )
+    return Stack(
+        above=Outer(material=find_material(above), counts_as="free"),
+        below=Outer(material=find_material(below), counts_as="free"),
+        layers=layers,
+        light=Light(wavelengths_nm=np.array(wavelengths_nm), spectrum=Gaussian(peak_nm=770, fwhm_nm=40)),
+        emission=Emission(**emission),
+    )
+
+
+@pytest.mark.parametrize(
+    "media",
+    [
+        [(2.5 + 0.02j, 500)],
+        [(2.5 + 0.002j, 500), (1.8 + 0.005j, 120), (1.52, 1.1e6)],
+        [(1.65 + 0.005j, 60), (1.95 + 0.005j, 150), (1.52, 1.1e6)],
+        [(2.5 + 0.02j, 30)],
+        [(2.5 + 0.3j, 500), (0.2 + 4j, 80)],
+        [(2.5, 500)],
+        [(2.5 + 1e-3j, 60_000)],
+    ],
+    ids=["film", "on a plate", "by a denser neighbour", "below cut-off", "on a metal", "clear", "thick"],
+)
+@pytest.mark.parametrize("model", ["wave", "ray"])
+def test_rings_add_up_to_what_the_ledger_says_the_film_takes(media, model):
+    stack = stack_of(media)
+    found = inplane(stack, model=model)
+    if found.model != model:
+        pytest.skip("a thick film has rays alone")
+    wavelengths = stack.light.wavelengths_nm
+    drawing = drawn(wavelengths, [(1.0, 0), *((i, t, "plate") if t > 2e4 else (i, t) for i, t in media), (1.5, 0)])
+    said = ledger(drawing, model=model)
+    film = said.shares["reabsorbed"] + said.shares["guided_reabsorbed"]
+    last = found.by_wavelength.groupby("wavelength_nm")["cumulative"].last()
+    assert found.compact["taken_back"].to_numpy() == pytest.approx(film, abs=LEDGER)
+    # light that grazes a plate's face comes back beyond ten centimetres: that is left to a number of its own
+    assert last.to_numpy() == pytest.approx(film, abs=1e-5)
+    assert found.averages["beyond_grid"] == pytest.approx(found.averages["taken_back"] - found.kernel["share"].sum())
+    assert (found.by_wavelength["share"] >= -1e-15).all()
+
+
+@pytest.mark.parametrize("k", [1e-4, 0.02, 0.3])
+def test_rays_summed_ray_by_ray_take_what_the_ray_ledger_says_before_any_scaling(k):
+    drawing = drawn(760, [(1.0, 0), (2.5 + 1j * k, 500), (1.7 + 0.01j, 90), (1.52, 1.1e6, "plate"), (1.0, 0)])
+    scene, said = only_scene(drawing), ledger(drawing, model="ray")
+    radius = rings.edges_nm()[:, None] * 2 * np.pi / 760
+    free = flights.flights(scene, radius, bound=False).plus(flights.returns(scene, radius))
+    bound = flights.flights(scene, radius, bound=True)
+    assert free.total == pytest.approx(said.taken[0, 1], rel=1e-5)
+    assert bound.total == pytest.approx(said.taken[2, 1], abs=LEDGER)
+    held = flights.held(scene, radius, model="ray")
+    assert 0.0 < held.total[0] <= said.shares["substrate"][0] + LEDGER
+
+
+def test_a_guide_of_one_mode_gives_an_exponential_of_twice_im_q():
+    # 60 nm of 2.5 on 1.5 under air: past the cut-off of TE0 (31 nm at 770 nm), short of that of TM0 (79 nm)
+    found = inplane(stack_of([(2.5 + 0.01j, 60)], wavelengths_nm=[770.0]))
+    assert found.modes[["polarisation", "order"]].to_numpy().tolist() == [["s", 0]]
+    rate_um = 4 * np.pi * found.modes["effective_index_k"].iloc[0] / 0.770
+    radius = found.kernel["radius_to_um"].to_numpy()
+    expected = found.modes["share"].iloc[0] * -np.expm1(-rate_um * radius)
+    within = found.kernel["share_guided"].to_numpy().cumsum()
+    # bound light in no mode dies with the film's own absorption, or is as much less than the mode holds
+    assert within == pytest.approx(expected, abs=abs(found.averages["bound_in_no_mode"]) + 1e-9)
+    far = radius > 6 / rate_um
+    left = (found.averages["taken_back_guided"] - within)[far & (radius < 20 / rate_um)]
+    decay = np.diff(np.log(left)) / np.diff(radius[far & (radius < 20 / rate_um)])
+    assert decay == pytest.approx(-rate_um, rel=1e-6)
+
+
+def first_flights(radius, tau):
+    """Return the share absorbed within a radius (units of the thickness) on first flights from a sheet-free slab."""
+
+    def at(cosine):
+        path = min(1.0 / cosine, radius / np.sqrt(1.0 - cosine * cosine) if cosine < 1.0 else np.inf)
+        gone = np.exp(-tau * path)
+        return (1.0 - gone) - cosine / tau * (1.0 - gone * (1.0 + tau * path))
+
+    corner = 1.0 / np.hypot(1.0, radius)  # where rays leave through a face at this very radius
+    return quad(at, 0.0, corner, epsabs=1e-12)[0] + quad(at, corner, 1.0, epsabs=1e-12)[0]
+
+
+@pytest.mark.parametrize("k", [0.01, 0.1, 1.0])
+def test_without_interfaces_the_kernel_is_that_of_a_slabs_first_flights(k):
+    drawing = drawn(760, [(2.5, 0), (2.5 + 1j * k, 500), (2.5, 0)])
+    scene, tau = only_scene(drawing), 4 * np.pi * k * 500 / 760
+    radius_nm = rings.edges_nm()[8:40:4]
+    taken = flights.flights(scene, radius_nm[:, None] * 2 * np.pi / 760, bound=False)
+    expected = [first_flights(r, tau) for r in radius_nm / 500]
+    assert taken.within[:, 0] == pytest.approx(expected, abs=1e-4)  # the rule over angles, before it is scaled
+    # Case, de Hoffmann & Placzek (1953): escape (1 - 2 E3(tau))/(2 tau)
+    assert taken.total[0] == pytest.approx(1 - (1 - 2 * expn(3, tau)) / (2 * tau), abs=1e-4)
+
+
+def reflectances(cosine, film, outer):
+    """Return the power reflectances of s and p light at a bare face (Fresnel)."""
+    sine = film / outer * np.sqrt(1.0 - cosine**2)
+    onward = np.sqrt(np.maximum(1.0 - sine**2, 0.0))
+    s = ((film * cosine - outer * onward) / (film * cosine + outer * onward)) ** 2
+    p = ((outer * cosine - film * onward) / (outer * cosine + film * onward)) ** 2
+    total = sine >= 1.0
+    return np.where(total, 1.0, s), np.where(total, 1.0, p)
+
+
+def traced(count, *, film, above, below, alpha, thickness, seed):
+    """Trace rays one by one; return the radii at which they are absorbed, infinite for those that leave."""
+    random = np.random.default_rng(seed)
+    cosine = random.random(count)
+    is_s = random.random(count) < 0.5  # isotropic births: half of the power in either polarisation at every angle
+    upwards = random.random(count) < 0.5
+    depth = thickness * random.random(count)
+    to_go = random.exponential(1.0 / alpha, count)  # path before absorption
+    made = np.zeros(count)
+    alive, radius = np.ones(count, dtype=bool), np.full(count, np.inf)
+    mirrors = [np.where(is_s, *reflectances(cosine, film, outer)) for outer in (above, below)]
+    for _ in range(100_000):
+        flight = np.where(upwards, depth, thickness - depth) / cosine
+        taken = alive & (made + flight >= to_go)
+        radius[taken] = to_go[taken] * np.sqrt(1.0 - cosine[taken] ** 2)
+        made = made + flight
+        back = random.random(count) < np.where(upwards, *mirrors)
+        alive &= ~taken & back
+        depth = np.where(upwards, 0.0, thickness)
+        upwards = ~upwards
+        if not alive.any():
+            return radius
+    raise AssertionError("rays that never end")
+
+
+def test_a_monte_carlo_of_rays_agrees_with_the_kernel_of_a_thick_film():
+    k, thickness = 2e-3, 50_000.0
+    stack = stack_of([(2.5 + 1j * k, thickness)], wavelengths_nm=[770.0])
+    found = inplane(stack)
+    assert found.model == "ray"
+    count = 40_000
+    alpha = 4 * np.pi * k / 770
+    radius = traced(count, film=2.5, above=1.0, below=1.5, alpha=alpha, thickness=thickness, seed=7) * 1e-3
+    for place in range(20, 48, 3):
+        row = found.kernel.iloc[place]
+        drawn_share = (radius <= row["radius_to_um"]).mean()
+        error = np.sqrt(row["cumulative"] * (1 - row["cumulative"]) / count)
+        assert drawn_share == pytest.approx(row["cumulative"], abs=SIGMAS * error)
+
+
+def test_an_exponential_in_radius_becomes_k0_on_a_line():
+    distance = np.array([0.01, 0.1, 1.0, 3.0])
+    share = rings.on_line_of_exponential(np.array(1.0), distance)
+    expected = [2 / np.pi * quad(k0, 0.0, x)[0] for x in distance]
+    assert share == pytest.approx(expected, abs=1e-7)
+
+
+def test_rings_projected_on_a_line_agree_with_the_closed_form():
+    radius = rings.edges_nm()
+    projected = rings.on_line(rings.within_of_exponential(1e-3, radius), radius)
+    expected = rings.on_line_of_exponential(np.array(1e-3), radius)
+    assert projected == pytest.approx(expected, abs=2e-3)  # a tenth of a decade is spread evenly
+
+
+def test_the_line_holds_all_of_the_kernel_and_the_area_form_too():
+    kernel = inplane(stack_of([(2.5 + 0.02j, 500)])).kernel
+    width = np.diff(kernel["radius_to_um"], prepend=0.0)
+    area = np.pi * np.diff(kernel["radius_to_um"] ** 2, prepend=0.0)
+    whole = kernel["share"].sum()
+    assert (kernel["line_per_cm"] * 2 * width * 1e-4).sum() == pytest.approx(whole, abs=1e-6)
+    assert (kernel["per_cm2"] * area * 1e-8).sum() == pytest.approx(whole, rel=1e-12)
+    assert (kernel["per_um_radius"] * width).sum() == pytest.approx(whole, rel=1e-12)
+
+
+def test_exponentials_fitted_to_the_kernel_are_not_negative_and_say_how_far_off_they_are():
+    found = inplane(stack_of([(2.5 + 0.02j, 500)]))
+    for form, column in (("radius", "cumulative"), ("line", "line_cumulative")):
+        terms = found.exponentials[found.exponentials["form"] == form]
+        assert (terms["weight"] > 0).all()
+        at = found.kernel["radius_to_um"].to_numpy()[:, None]
+        sum_of_terms = (terms["weight"].to_numpy() * -np.expm1(-at / terms["length_um"].to_numpy())).sum(axis=1)
+        miss = np.abs(sum_of_terms - found.kernel[column]).max()
+        assert miss == pytest.approx(terms["largest_miss"].iloc[0], abs=1e-12)
+        assert miss < 5e-3
+
+
+def test_guided_light_turns_red_on_its_way():
+    stack = stack_of(
+        [("ch3nh3pbi3", 500)], wavelengths_nm=np.linspace(700, 860, 41)
+    )  # published table: absorption falls towards the red, down to a floor
+    said = inplane(stack).averages
+    means = [said[f"guided_mean_wavelength_nm_{d}_um"] for d in (0, 1, 3, 10)]
+    assert np.all(np.diff(means) > 1.0)
+
+
+def test_the_diffusivity_is_that_of_flights_that_end_at_the_absorption_rate():
+    table = inplane(stack_of([(2.5 + 0.02j, 500)])).compact
+    rate = table["absorption_in_plane_per_cm"] * 1e-4 * table["group_velocity_um_per_ps"]
+    assert table["absorption_rate_per_ps"].to_numpy() == pytest.approx(rate.to_numpy())
+    # D = L^2 x rate, um^2/ps = 1e4 cm^2/s
+    length = table["diffusion_length_um"]
+    assert table["diffusivity_cm2_per_s"].to_numpy() == pytest.approx((length**2 * rate * 1e4).to_numpy())
+    assert table["diffusion_miss"].between(0.05, 0.3).all()  # one exponential against K0: far apart, and said so
