@@ -86,7 +86,11 @@ def _draw_implied(axes: "Axes", found: "Fitness") -> None:
     if implied is None:
         return
     axes.plot(implied.wavelength_nm, implied.n_from_k, color=DARK, linewidth=0.8, linestyle="--")
-    axes.text(0.99, 0.93, "dashed: n that k implies", transform=axes.transAxes, ha="right", fontsize=SMALL, color=DARK)
+    low, high = axes.get_ylim()
+    beside = found.n[found.wavelength_nm > found.wavelength_nm[0] + 0.65 * np.ptp(found.wavelength_nm)]
+    height = 0.92 if beside.max() < low + 0.85 * (high - low) else 0.05
+    said = "dashed: n that k implies"
+    axes.text(0.99, height, said, transform=axes.transAxes, ha="right", fontsize=SMALL, color=DARK)
 
 
 def _mark(axes: "list[Axes]", found: "Fitness", finding: "Finding") -> None:
