@@ -21,6 +21,7 @@ from optics.output.report import stack_line
 if TYPE_CHECKING:
     from pandas import DataFrame
 
+    from optics.fate.solve import Result
     from optics.transport.handover import Handover
 
 README = "README.txt"
@@ -30,7 +31,7 @@ REFERENCES = "references.bib"
 LIMIT_BYTES = 5_000_000
 """Largest bundle unless all is asked for; the user's own tables come on top."""
 
-ROOM_BYTES = 4_600_000
+ROOM_BYTES = 4_500_000
 """What tables may take of it, counted as text."""
 
 LARGE = ("mode_absorbers", "kernel_spectra", "depth_spectra")
@@ -78,33 +79,37 @@ def write_handoff(
     bands = bands_beside(stack, source)
     sheets = [sheet(name, table) for name, table in _ordered(handed.tables, bands.tables)]
     kept, left_out = (sheets, {}) if full else fitting(sheets, room=ROOM_BYTES)
-    count, version = numbers(handed.numbers), tool_version()
+    title = stack.title or stack_line(stack)
+    name, when = _slug(Path(folder).name), datetime.now(UTC)
+    contents = Contents(name, title, numbers(handed.numbers), tuple(kept), when)
+    warnings = (*handed.warnings, *bands.warnings)
     with writing(Path(folder), replace=replace) as part:
-        title = stack.title or stack_line(stack)
-        contents = Contents(_slug(Path(folder).name), title, count, tuple(kept), datetime.now(UTC))
         write_data(contents, part, kind=kind)
-        text = page(
-            stack,
-            count,
-            kept,
-            kind=kind,
-            advised=result.advised_model,
-            numerical_error=result.numerical_error,
-            warnings=(*handed.warnings, *bands.warnings),
-            left_out=left_out,
-            version=version,
-        )
-        for name, content in (
-            (README, text),
-            (METHODS, methods_text(result, version=version)),
-            (REFERENCES, references_text(result)),
-        ):
-            (part / name).write_text(content, encoding="utf-8", newline="\n")
+        _write_texts(result, contents, part, kind=kind, warnings=warnings, left_out=left_out)
         taken = (*FORMATS[kind].files, DATA, README, METHODS, REFERENCES, RECORD, STACK_FILE)
         copy_inputs(stack, part, stack_file=source, taken=taken)
         settings = settings_of(stack) | {"format": kind, "left_out": list(left_out)}
         write_record(part, command="handoff", inputs=inputs_of(stack, source), settings=settings)
     return Path(folder)
+
+
+def _write_texts(
+    result: "Result",
+    contents: Contents,
+    folder: Path,
+    *,
+    kind: str,
+    warnings: Sequence[str],
+    left_out: Mapping[str, int],
+) -> None:
+    version = tool_version()
+    texts = {
+        README: page(result, contents, kind=kind, warnings=warnings, left_out=left_out, version=version),
+        METHODS: methods_text(result, version=version),
+        REFERENCES: references_text(result),
+    }
+    for name, text in texts.items():
+        (folder / name).write_text(text, encoding="utf-8", newline="\n")
 
 
 def report(handed: "Handover", folder: Path, *, stack_file: Path | None = None) -> str:
@@ -141,9 +146,10 @@ def fitting(sheets: Sequence[Sheet], *, room: int) -> tuple[list[Sheet], Mapping
 
 
 def text_bytes(sheet: Sheet) -> int:
-    """Return the size of a sheet written as CSV [bytes]."""
+    """Return the size of a sheet written as plain text, text in quotes [bytes]; no format takes more."""
     text = io.StringIO()
-    csv.writer(text, lineterminator="\n").writerows(zip(*(value.tolist() for value in sheet.values), strict=True))
+    writer = csv.writer(text, lineterminator="\n", quoting=csv.QUOTE_NONNUMERIC)
+    writer.writerows(zip(*(value.tolist() for value in sheet.values), strict=True))
     return len(text.getvalue().encode())
 
 

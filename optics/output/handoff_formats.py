@@ -157,8 +157,8 @@ def _write_json(contents: Contents, folder: Path) -> None:
     }
     numbers = {name: part | {"value": _or_none(part["value"])} for name, part in numbers.items()}
     content = {"title": contents.title, NUMBERS: numbers, "tables": tables}
-    # no indentation: a number a line would be most of the file
-    text = json.dumps(content, ensure_ascii=False, allow_nan=False)
+    # neither lines nor spaces: with a number a line they would be most of the file
+    text = json.dumps(content, ensure_ascii=False, allow_nan=False, separators=(",", ":"))
     (folder / "bundle.json").write_text(text + "\n", encoding="utf-8", newline="\n")
 
 

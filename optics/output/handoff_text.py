@@ -5,9 +5,11 @@ from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from optics.output.handoff_columns import Number, Sheet
+from optics.output.handoff_formats import Contents
 from optics.output.numbers import decimals_for
 
 if TYPE_CHECKING:
+    from optics.fate.solve import Result
     from optics.stack import Layer, Outer, Stack
 
 WIDTH = 110
@@ -54,13 +56,10 @@ OPENED_WITH = {
 
 
 def page(
-    stack: "Stack",
-    numbers: Sequence[Number],
-    sheets: Sequence[Sheet],
+    result: "Result",
+    contents: Contents,
     *,
     kind: str,
-    advised: str,
-    numerical_error: float,
     warnings: Sequence[str],
     left_out: Mapping[str, int],
     version: str,
@@ -69,14 +68,12 @@ def page(
 
     Parameters
     ----------
-    stack
+    result
         What was solved.
-    numbers, sheets
+    contents
         The contents of the bundle.
     kind
         Its format.
-    advised, numerical_error
-        Model that is advised and largest numerical error of a share.
     warnings
         Sentences.
     left_out
@@ -84,16 +81,16 @@ def page(
     version
         Of this tool.
     """
+    stack = result.stack
+    tool = f"Photonfate {version}".rstrip()
+    advised, error = result.advised_model, result.numerical_error
     parts = [
-        [
-            stack.title or "A stack without a title",
-            f"Bundle for recycling, diffusion and device models; Photonfate {version}".rstrip(),
-        ],
+        [stack.title or "A stack without a title", f"Bundle for recycling, diffusion and device models; {tool}"],
         list(sketch(stack)),
-        list(ten(numbers, advised=advised, numerical_error=numerical_error)),
+        list(ten(contents.numbers, advised=advised, numerical_error=error)),
         _wrapped("Warnings", warnings),
         _wrapped("Definitions", DEFINITIONS),
-        list(_files(sheets, kind, left_out)),
+        list(_files(contents.sheets, kind, left_out)),
     ]
     return "\n\n".join("\n".join(lines) for lines in parts if lines) + "\n"
 
