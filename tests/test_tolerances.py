@@ -25,7 +25,10 @@ def read(*edits):
 
 
 def test_a_number_may_carry_a_standard_deviation():
-    stack = read((FILM, 'thickness_nm = { value = 300, sd = 15, shape = "uniform" }\nn_offset_sd = 0.02\nemits'), ("peak_nm = 762", "peak_nm = { value = 762, sd = 2 }"))
+    stack = read(
+        (FILM, 'thickness_nm = { value = 300, sd = 15, shape = "uniform" }\nn_offset_sd = 0.02\nemits'),
+        ("peak_nm = 762", "peak_nm = { value = 762, sd = 2 }"),
+    )
     assert stack.film.thickness_nm == 300.0
     assert {(t.key, t.sd, t.shape) for t in stack.tolerances} == {
         ("film.thickness_nm", 15.0, "uniform"),
@@ -65,17 +68,33 @@ def test_written_and_read_back_it_is_the_same(edits):
 @pytest.mark.parametrize(
     ("before", "after", "said"),
     [
-        (FILM, "thickness_nm = { value = 300, sd = -1 }\nemits", "thickness_nm: sd: found -1, expected a number above 0"),
+        (
+            FILM,
+            "thickness_nm = { value = 300, sd = -1 }\nemits",
+            "thickness_nm: sd: found -1, expected a number above 0",
+        ),
         (FILM, "thickness_nm = { value = 300, sd = 200 }\nemits", "expected at most 75, a quarter of the value"),
         (FILM, "thickness_nm = { value = 300, sdd = 2 }\nemits", "thickness_nm: sdd: unknown key; did you mean sd?"),
-        (FILM, 'thickness_nm = { value = 300, sd = 2, shape = "flat" }\nemits', 'shape: found "flat" (text), expected "normal" or "uniform"'),
-        (FILM, "thickness_nm = { value = 300, varies_nm = 70 }\nemits", "varies_nm: found 70, expected at most a sixth of the thickness, 50"),
+        (
+            FILM,
+            'thickness_nm = { value = 300, sd = 2, shape = "flat" }\nemits',
+            'shape: found "flat" (text), expected "normal" or "uniform"',
+        ),
+        (
+            FILM,
+            "thickness_nm = { value = 300, varies_nm = 70 }\nemits",
+            "varies_nm: found 70, expected at most a sixth of the thickness, 50",
+        ),
         (FILM, 'thickness_nm = { value = "x", sd = 1 }\nemits', 'thickness_nm: found "x" (text)'),
         (FILM, "thickness_nm = 300\nk_scale_sd = 0.5\nemits", "film.k_scale: sd: found 0.5, expected at most 0.25"),
         (FILM, 'thickness_nm = 300\nn_offset_sd = "x"\nemits', 'n_offset_sd: sd: found "x" (text)'),
         ("thickness_mm = 1.1", "thickness_mm = { value = 1.1, varies_nm = 1 }", "found in a layer that does not emit"),
         ("fwhm_nm = 40", "fwhm_nm = { value = 40, sd = 0 }", "light: fwhm_nm: sd: found 0"),
-        ("{ n = 2.4, k = 0.02 }", '["ch3nh3pbi3", "nope"]', 'layer "film": material: no bundled material is called "nope"'),
+        (
+            "{ n = 2.4, k = 0.02 }",
+            '["ch3nh3pbi3", "nope"]',
+            'layer "film": material: no bundled material is called "nope"',
+        ),
     ],
 )
 def test_what_is_wrong_with_a_tolerance_is_one_line_with_its_place(before, after, said):

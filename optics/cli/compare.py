@@ -16,8 +16,8 @@ def compare(stacks: tuple[Path, ...], workers: int, output: Path | None, replace
     \b
     Example:
       photonfate start my-film
-      sed "s/thickness_nm = 320/thickness_nm = 250/" my-film/stack.toml > my-film/thin.toml
-      photonfate compare my-film/stack.toml my-film/thin.toml
+      photonfate start my-other-film
+      photonfate compare my-film/stack.toml my-other-film/stack.toml
     """
     from optics.errors import InputError
     from optics.output.comparison import report, write_comparison

@@ -65,7 +65,9 @@ def test_a_sound_stack_passes_every_check_there_is():
 @pytest.fixture
 def project(tmp_path):
     shutil.copytree(ROOT / "optics" / "output" / "starter" / "tables", tmp_path / "tables")
-    text = STACK_FILE.replace("{ n = 2.4, k = 0.02 }", '"tables/invented-red-film.csv"').replace("740, 760, 780", "650, 668, 690")
+    text = STACK_FILE.replace("{ n = 2.4, k = 0.02 }", '"tables/invented-red-film.csv"').replace(
+        "740, 760, 780", "650, 668, 690"
+    )
     (tmp_path / "stack.toml").write_text(text.replace("762", "668"), encoding="utf-8")
     return tmp_path
 
@@ -78,7 +80,10 @@ def edited(project, change):
 
 def test_a_wrong_sign_of_k_fails_at_the_tables(project):
     def turned(lines):
-        return [line if "," not in line or "n" in line else ",".join([*line.split(",")[:2], f"-{line.split(',')[2]}"]) for line in lines]
+        return [
+            line if "," not in line or "n" in line else ",".join([*line.split(",")[:2], f"-{line.split(',')[2]}"])
+            for line in lines
+        ]
 
     edited(project, turned)
     done = run(project / "stack.toml")
@@ -100,7 +105,9 @@ def test_a_tampered_card_fails_at_the_tables(project, tmp_path, monkeypatch):
     text = (ROOT / "materials" / "float-glass.toml").read_text(encoding="utf-8")
     head, mark, data = text.partition("[data]")
     card.write_text(head + mark + data.replace("1", "2", 1), encoding="utf-8")
-    monkeypatch.setattr("optics.media.cabinet.read_card", lambda path: read_card(card if path.stem == "float-glass" else path))
+    monkeypatch.setattr(
+        "optics.media.cabinet.read_card", lambda path: read_card(card if path.stem == "float-glass" else path)
+    )
     done = run(project / "stack.toml")
     assert done.exit_code == 1
     assert "FAIL  tables and cards" in done.stdout
@@ -122,7 +129,8 @@ def test_a_layer_swapped_within_the_computation_fails_at_the_plane_waves(monkeyp
 def test_a_layer_swapped_in_the_stack_file_fails_at_the_result_on_file(project):
     file = project / "stack.toml"
     text = file.read_text(encoding="utf-8").replace(
-        '[[layer]]\nname = "glass"', '[[layer]]\nname = "contact"\nmaterial = { n = 1.8, k = 0.02 }\nthickness_nm = 90\n\n[[layer]]\nname = "glass"'
+        '[[layer]]\nname = "glass"',
+        '[[layer]]\nname = "contact"\nmaterial = { n = 1.8, k = 0.02 }\nthickness_nm = 90\n\n[[layer]]\nname = "glass"',
     )
     file.write_text(text, encoding="utf-8")
     assert CliRunner().invoke(main, ["solve", str(file)]).exit_code == 0
@@ -131,7 +139,9 @@ def test_a_layer_swapped_in_the_stack_file_fails_at_the_result_on_file(project):
     file.write_text("[[layer]]".join([head, layers[1], layers[0], layers[2]]), encoding="utf-8")
     done = run(file, "--json")
     assert done.exit_code == 1
-    assert [each["name"] for each in json.loads(done.stdout)["checks"] if each["verdict"] == "FAIL"] == ["result on file"]
+    assert [each["name"] for each in json.loads(done.stdout)["checks"] if each["verdict"] == "FAIL"] == [
+        "result on file"
+    ]
 
 
 def test_a_quadrature_cut_to_few_nodes_fails_at_the_doubled_one(monkeypatch):

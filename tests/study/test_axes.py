@@ -40,7 +40,11 @@ def test_a_case_is_a_row_and_takes_whole_tables(tmp_path):
     table.write_text(text, encoding="utf-8")
     points = from_cases(small_stack(), table, folder=tmp_path)
     assert len(points) == 2
-    assert points.labels(1) == {"film.material": "aged.csv", "film.thickness_nm": 295.0, "light.spectrum.peak_nm": 755.0}
+    assert points.labels(1) == {
+        "film.material": "aged.csv",
+        "film.thickness_nm": 295.0,
+        "light.spectrum.peak_nm": 755.0,
+    }
     assert not list(points.neighbours(0))
 
 
@@ -49,7 +53,10 @@ def test_a_case_is_a_row_and_takes_whole_tables(tmp_path):
     [
         ("film.thickness_nm", "expected KEY = VALUES, for example"),
         ("film.thickness_nm = ", "expected KEY = VALUES"),
-        ("film.thickness_nm = 50 to 100 step 7", "film.thickness_nm: steps of 7 from 50 do not end at 100; 99 would do"),
+        (
+            "film.thickness_nm = 50 to 100 step 7",
+            "film.thickness_nm: steps of 7 from 50 do not end at 100; 99 would do",
+        ),
         ("film.thickness_nm = 50 to 100 step -5", "expected a step that leads from one to the other"),
         ("film.thickness_nm = 50 to 100 step x", 'film.thickness_nm: found "x" (text), expected a number'),
         ("film.thickness_nm = 0 to 100 step 50", "film.thickness_nm = 0: "),
@@ -113,7 +120,10 @@ def test_a_study_file_says_what_the_options_say(tmp_path):
     [
         ('stack = "stack.toml"\nvari = []', "vari: unknown key; did you mean vary?"),
         ('stack = "stack.toml"\nvary = "film"', "vary: found"),
-        ('stack = "stack.toml"\n[[vary]]\nkey = "film.thickness_nm"\nfrom = 1', "either values or all of from, to and step"),
+        (
+            'stack = "stack.toml"\n[[vary]]\nkey = "film.thickness_nm"\nfrom = 1',
+            "either values or all of from, to and step",
+        ),
         ('stack = "stack.toml"\n[[vary]]\nvalues = [1]', "key: found nothing"),
         ('stack = "stack.toml"\ncases = 3', "cases: found 3"),
         ('stack = "stack.toml"\nspectra = 1', "spectra: found 1, expected true or false"),

@@ -68,6 +68,8 @@ def test_a_share_at_its_maximum_is_not_taken_for_one_that_nothing_moves():
     top = int(np.argmax(shares[1:-1])) + 1
     if not 0 < top < 40:
         pytest.skip("no maximum here")
-    own = replace(stack.with_layer("film", thickness_nm=float(at[top])), tolerances=(Tolerance(key="film.thickness_nm", sd=15.0),))
+    own = replace(
+        stack.with_layer("film", thickness_nm=float(at[top])), tolerances=(Tolerance(key="film.thickness_nm", sd=15.0),)
+    )
     row = input_uncertainty(optics.solve(own)).by_input.set_index("key").loc["film.thickness_nm"]
     assert row["free_above"] > 1e-4

@@ -79,7 +79,9 @@ with Journal(__import__("pathlib").Path(sys.argv[1]), basis={}, points=100) as j
 
 @pytest.mark.skipif(sys.platform == "win32", reason="no limits of this kind")
 def test_a_full_disk_is_one_line_and_loses_no_whole_answer(tmp_path):
-    run = subprocess.run([sys.executable, "-c", FULL, tmp_path / "j"], capture_output=True, text=True, check=False, env=dict(os.environ))
+    run = subprocess.run(
+        [sys.executable, "-c", FULL, tmp_path / "j"], capture_output=True, text=True, check=False, env=dict(os.environ)
+    )
     assert run.stdout.count("\n") == 1, run.stderr
     assert "are kept: make room and run the same command again" in run.stdout
     with Journal(tmp_path / "j", basis={}, points=100) as journal:

@@ -112,7 +112,9 @@ def test_stopped_by_the_user_it_says_what_is_kept_and_goes_on(stack_file, undist
     assert "points are kept; the same command goes on" in said
     assert "Traceback" not in said
     assert not (stack_file.parent / "stack-sweep").exists()
-    assert begun(stack_file).wait() == 0
+    last = begun(stack_file)
+    _, said = last.communicate()
+    assert last.returncode == 0, said
     assert (stack_file.parent / "stack-sweep" / "sweep.csv").read_bytes() == undisturbed
 
 

@@ -55,7 +55,9 @@ def test_indices_of_a_linearised_stack():
 
 def test_draws_have_the_mean_and_spread_that_were_asked_for():
     for shape in ("normal", "uniform"):
-        drawn = values_drawn([replace(each, value=5.0) for each in inputs(2.0, 0.5, shape=shape)], samples=1024, seed=0)[:2048]
+        drawn = values_drawn(
+            [replace(each, value=5.0) for each in inputs(2.0, 0.5, shape=shape)], samples=1024, seed=0
+        )[:2048]
         np.testing.assert_allclose(drawn.mean(axis=0), 5.0, atol=0.01)
         np.testing.assert_allclose(drawn.std(axis=0), [2.0, 0.5], rtol=0.01)
         if shape == "uniform":

@@ -7,9 +7,9 @@ from studied import small_stack
 import optics
 from optics.errors import InputError
 from optics.fate.ledger import SHARES
-from optics.study.best import best, goal
 from optics.study.answer import RAY
 from optics.study.axes import from_values
+from optics.study.best import best, goal
 from optics.study.sweep import sweep
 
 SAME = 1e-10  # a sweep asks the same integrals as separate solves; their last digits may differ by threads
