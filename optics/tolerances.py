@@ -83,7 +83,7 @@ def check_doubts(
     if faults.lines:
         return
     places = (*(layer.name for layer in layers), *OUTER_NAMES, *PARTS)
-    keys = [each.key for each in (*tolerances, *alternatives)]
+    keys = [each.key for each in tolerances] + [other.key for other in alternatives]
     for key in dict.fromkeys(keys):
         if not isinstance(key, str) or not any(key.startswith(f"{place}.") for place in places):
             faults.add("tolerances", f"{found(key)}: names nothing in this stack")
@@ -93,7 +93,8 @@ def check_doubts(
     for each in tolerances:
         value = values.get(each.key, 1.0 if each.key.endswith(".k_scale") else None)
         if value is not None and each.sd > MOST_SD[each.shape] * value:
-            most = f"at most {MOST_SD[each.shape] * value:g}, a {'quarter' if each.shape == 'normal' else 'half'} of the value"
+            part = "quarter" if each.shape == "normal" else "half"
+            most = f"at most {MOST_SD[each.shape] * value:g}, a {part} of the value"
             faults.add(each.key, f"sd: found {each.sd:g}, expected {most}: a draw could fall below zero")
 
 

@@ -2,6 +2,7 @@
 
 import os
 import time
+from pathlib import Path
 
 
 def squares(packed):
@@ -18,9 +19,8 @@ def slow(packed):
 def dies_once(packed):
     """End the process at the point 7, as long as no file says that it did."""
     flag, numbers = packed
-    if 7 in numbers and not os.path.exists(flag):
-        with open(flag, "w", encoding="utf-8"):
-            pass
+    if 7 in numbers and not Path(flag).exists():
+        Path(flag).touch()
         os._exit(9)
     return squares(numbers)
 

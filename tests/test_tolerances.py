@@ -54,8 +54,14 @@ def test_a_material_may_be_a_list_of_tables_of_which_the_first_is_used():
         ((FILM, "thickness_nm = { value = 300, sd = 15, varies_nm = 12 }\nemits"),),
         ((FILM, 'thickness_nm = 300\nk_scale_sd = { sd = 0.2, shape = "uniform" }\nn_offset_sd = 0.01\nemits'),),
         (("{ n = 2.4, k = 0.02 }", '["ch3nh3pbi3", { n = 2.4, k = 0.02 }, { n = 2.3, k = 0.01 }]'),),
-        (("n = 2.4", "n = { value = 2.4, sd = 0.01 }"), ('above = "air"', "above = { n = { value = 1.3, sd = 0.01 } }")),
-        (('below = "air"', 'below = { material = "pmma", n_offset_sd = 0.01 }'), ("thickness_mm = 1.1", "thickness_mm = { value = 1.1, sd = 0.05 }")),
+        (
+            ("n = 2.4", "n = { value = 2.4, sd = 0.01 }"),
+            ('above = "air"', "above = { n = { value = 1.3, sd = 0.01 } }"),
+        ),
+        (
+            ('below = "air"', 'below = { material = "pmma", n_offset_sd = 0.01 }'),
+            ("thickness_mm = 1.1", "thickness_mm = { value = 1.1, sd = 0.05 }"),
+        ),
     ],
     ids=["thickness", "index", "list", "constants", "outer media"],
 )  # fmt: skip

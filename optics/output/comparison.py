@@ -53,13 +53,13 @@ def report(found: "Comparison", *, folder: Path | None = None) -> str:
     first, *others = found.names
     lines += ["", f"{'Share of photons born':<21}" + "".join(f"{name:>{width}}" for name in found.names)]
     for share, name in ROWS:
-        lines.append(f"{name:<21}" + "".join(f"{found.shares.loc[share, each]:>{width}.4f}" for each in found.names))
+        lines.append(f"{name:<21}" + "".join(f"{float(found.shares[each][share]):>{width}.4f}" for each in found.names))
     lines += [
         "",
         f"{f'Against {first}, points':<21}" + " " * (width * 1) + "".join(f"{name:>{width}}" for name in others),
     ]
     for share, name in ROWS:
-        cells = "".join(f"{found.differences.loc[share, each]:>+{width}.2f}" for each in others)
+        cells = "".join(f"{float(found.differences[each][share]):>+{width}.2f}" for each in others)
         lines.append(f"{name:<21}" + " " * width + cells)
     for name in others:
         lines += ["", *_why(found, name)]

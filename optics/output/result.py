@@ -1,7 +1,7 @@
 """The files of one solved stack."""
 
-from dataclasses import asdict
 import json
+from dataclasses import asdict
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 

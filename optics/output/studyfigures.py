@@ -67,15 +67,11 @@ def _lines(table: "DataFrame", key: str, own: Any, title: str) -> Figure:
     axes = figure.add_axes(PLOT)
     x, ticks = _positions(table[key].tolist())
     shown = [end for end in ENDS if table[end.column].max() >= SHOWN_ABOVE]
-    style = {} if ticks is None else {"marker": "o", "linestyle": "none"}
+    style: dict[str, Any] = {} if ticks is None else {"marker": "o", "linestyle": "none"}
     for end in shown:
         axes.plot(x, table[end.column], color=end.colour, linewidth=1.8, path_effects=OUTLINE, **style)
-    if (
-        own is not None
-        and own in table[key].tolist()
-        or isinstance(own, float)
-        and ticks is None
-        and min(x) <= own <= max(x)
+    if (own is not None and own in table[key].tolist()) or (
+        isinstance(own, float) and ticks is None and min(x) <= own <= max(x)
     ):
         axes.axvline(own if ticks is None else table[key].tolist().index(own), color="#999999", linewidth=0.9, zorder=0)
     _name_lines(axes, shown, [float(table[end.column].iloc[-1]) for end in shown])
@@ -124,9 +120,9 @@ def _maps(table: "DataFrame", one: str, other: str, own: Mapping[str, Any], titl
     figure = _figure(
         title, "shares of the photons born, averaged over the spectrum; cross: the stack as it is", (8.0, 6.4)
     )
-    names = list(dict.fromkeys([*([share] if share in table else []), *MAPPED]))[:4]
+    names = list(dict.fromkeys([*([share] if share and share in table else []), *MAPPED]))[:4]
     rows, columns = (list(dict.fromkeys(table[key].tolist())) for key in (one, other))
-    flip = not _positions(columns)[1] is None and _positions(rows)[1] is None
+    flip = _positions(columns)[1] is not None and _positions(rows)[1] is None
     (ykey, ys), (xkey, xs) = ((other, columns), (one, rows)) if flip else ((one, rows), (other, columns))
     (x, xticks), (y, yticks) = _positions(xs), _positions(ys)
     for number, name in enumerate(names):
@@ -147,12 +143,11 @@ def _maps(table: "DataFrame", one: str, other: str, own: Mapping[str, Any], titl
         if number % 2:
             axes.set_yticklabels([])
         axes.tick_params(labelsize=SMALL - 1)
-        mark = [
-            _place(own.get(key), values_, ticks) for key, values_, ticks in ((xkey, xs, xticks), (ykey, ys, yticks))
-        ]
-        if None not in mark:
+        across, upwards = _place(own.get(xkey), xs, xticks), _place(own.get(ykey), ys, yticks)
+        if across is not None and upwards is not None:
             axes.plot(
-                *mark,
+                across,
+                upwards,
                 marker="+",
                 markersize=9,
                 color=LIGHT,
@@ -199,8 +194,8 @@ def ladder_figure(shares: "DataFrame", *, title: str = "") -> Figure:
     )
     for number, (name, down) in enumerate(zip(shares.columns, offsets, strict=True)):
         axes.plot(
-            shares.loc[rows, name], heights - down, linestyle="none", marker=MARKERS[number % len(MARKERS)], markersize=6.5,
-            color=STACKS[number % len(STACKS)], markeredgecolor=LIGHT, label=shorten(name, 30),
+            shares.loc[rows, name], heights - down, linestyle="none", marker=MARKERS[number % len(MARKERS)],
+            markersize=6.5, color=STACKS[number % len(STACKS)], markeredgecolor=LIGHT, label=shorten(name, 30),
         )  # fmt: skip
     axes.set_yticks(heights, [row.replace("_", " ") for row in rows])
     axes.axhline(heights[0] - 0.5, color="#dddddd", linewidth=0.8)
@@ -241,7 +236,7 @@ def difference_figure(differences: "DataFrame", *, title: str = "") -> Figure:
         axes = figure.add_axes((0.09, 1 - (0.85 + 2.1 * (number + 1) - 0.35) / height, 0.72, 1.75 / height))
         rows = differences[differences["stack"] == name]
         for end in shown:
-            style = {"marker": "o"} if len(rows) == 1 else {}
+            style: dict[str, Any] = {"marker": "o"} if len(rows) == 1 else {}
             axes.plot(
                 rows["wavelength_nm"],
                 rows[end.column],
@@ -318,7 +313,8 @@ def sensitivity_figure(indices: "DataFrame", bands: "DataFrame", *, title: str =
     title
         Put above.
     """
-    shares = [share for share in BANDED if bands.loc[share, "sd"] > 1e-6]
+    spread_of = bands["sd"].to_dict()
+    shares = [share for share in BANDED if spread_of[share] > 1e-6]
     inputs = list(dict.fromkeys(indices["input"]))
     figure = _figure(
         title,
@@ -342,6 +338,6 @@ def sensitivity_figure(indices: "DataFrame", bands: "DataFrame", *, title: str =
         axes.set_xlim(0, 1.05)
         axes.set_xticks([0, 0.5, 1], ["0", "0.5", "1"], fontsize=SMALL - 1)
         axes.set_yticks(y, inputs if number == 0 else [""] * len(inputs), fontsize=SMALL, parse_math=False)
-        axes.set_title(f"{share.replace('_', ' ')}\n±{bands.loc[share, 'sd']:.4f}", fontsize=SMALL, loc="left")
+        axes.set_title(f"{share.replace('_', ' ')}\n±{spread_of[share]:.4f}", fontsize=SMALL, loc="left")
         axes.spines[["top", "right"]].set_visible(False)
     return figure

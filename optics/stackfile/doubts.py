@@ -5,7 +5,7 @@ from pathlib import Path
 from typing import Any
 
 from optics.errors import InputError
-from optics.faults import Faults, found, is_number
+from optics.faults import Faults, as_float, found, is_number
 from optics.layer import OUTER_NAMES, THICKNESS_TO_NM
 from optics.media.cabinet import find
 from optics.media.material import Material
@@ -133,7 +133,7 @@ class Doubts:
                 self.faults.lines.append(f"{place}: sd: missing, expected a number, for example 0.02")
             return
         own = Faults(place)
-        if not is_number(table["sd"]) or not table["sd"] > 0:
+        if not is_number(table["sd"]) or not as_float(table["sd"]) > 0:
             own.add("sd", f"found {found(table['sd'])}, expected a number above 0, one standard deviation")
         shape = table.get("shape", "normal")
         own.choice("shape", shape, SHAPES)
@@ -192,7 +192,7 @@ def _at(document: Any, key: str, layers: Mapping[str, int], inline: Callable[[An
         ):
             document[steps[0]] = inline({"material": document[steps[0]]})
     for step in steps[:-1]:
-        table = table[step] if step in table else {}
+        table = table.get(step, {})
     if steps[-1] not in table and steps[-1] not in OFFSETS:
         raise InputError(f"{key}: has a tolerance, but the stack has no such number in its file")
     return table, steps[-1]

@@ -12,7 +12,7 @@ from optics.errors import InputError
 from optics.fate.account import ledger_of
 from optics.fate.advice import coherence_length_nm, linewidth
 from optics.fate.ledger import ENDS, SHARES
-from optics.fate.scenes import Drawing, scenes
+from optics.fate.scenes import Drawing, scenes, swallows
 from optics.fate.solve import Result, solve
 from optics.fate.wave import Settings
 from optics.media.checks import examine, floor_warning
@@ -20,7 +20,7 @@ from optics.media.dispersion import Tabulated
 from optics.stack import Stack
 from optics.study.chance import follow
 from optics.study.keypath import without_doubts
-from optics.study.planewaves import LEAST_K, against_tmm, exchange, plain, reciprocity, swallows
+from optics.study.planewaves import LEAST_K, against_tmm, exchange, plain, reciprocity
 from optics.waves.coherent import Real
 
 PASS, FAIL, NOTE = "pass", "FAIL", "note"
@@ -29,7 +29,7 @@ PLANE_WAVES = 1e-9
 """Difference from the library on thin layers: rounding, over hundreds of terms."""
 
 PER_PLATE_K = 5.0
-"""A plate's k changes what its faces reflect in second order, and here counts inside it alone; this times k is allowed."""
+"""A plate's k counts inside it alone here, not at its faces; this times k is allowed."""
 
 ON_FILE = 1e-6
 RECIPROCITY = 1e-6
@@ -267,7 +267,8 @@ def _models(result: Result) -> Iterator[Check]:
     thickness = stack.film.thickness_nm
     length = coherence_length_nm(wavelength_nm=mean, index=index, fwhm_nm=width) if width else np.inf
     bound = NEAR_FACES * mean / (2.0 * index * thickness) + FRINGE * float(np.exp(-thickness / length))
-    said = f"largest difference of an average; expected up to {NEAR_FACES:g} lambda/(2 n d) + {FRINGE:g} exp(-d/L), L = {length:.0f} nm"
+    expected = f"{NEAR_FACES:g} lambda/(2 n d) + {FRINGE:g} exp(-d/L), L = {length:.0f} nm"
+    said = f"largest difference of an average; expected up to {expected}"
     if _couples_by_evanescence(result):
         yield Check(
             "wave against ray",
@@ -297,8 +298,9 @@ def _chance(stack: Stack, wavelength: Real, settings: Settings, seed: int) -> It
     ray = np.array([ledger.shares[end][0] for end in ENDS])
     away = np.abs(found.shares - ray) / found.errors
     worst = int(np.argmax(away))
+    end = ENDS[worst].replace("_", " ")
     said = (
-        f"{found.rays} rays followed by chance at {wavelength[0]:g} nm, standard errors of {ENDS[worst].replace('_', ' ')}: "
+        f"{found.rays} rays followed by chance at {wavelength[0]:g} nm, standard errors of {end}: "
         f"{found.shares[worst]:.4f} +- {found.errors[worst]:.4f} against {ray[worst]:.4f}"
     )
     yield _judged("rays by chance", float(away[worst]), SIGMAS, said)

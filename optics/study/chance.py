@@ -87,7 +87,8 @@ class _Walk:
         view = waves.view
         kz = waves.kz(room).real[0]
         depth = 2.0 * view.loss[room, 0, 0] * view.phase[room, 0, 0] * view.index[room, 0, 0].real
-        return np.divide(depth, kz, out=np.full_like(kz, np.inf), where=kz > 0.0)
+        out: Real = np.divide(depth, kz, out=np.full_like(kz, np.inf), where=kz > 0.0)
+        return out
 
     def _walls(self, waves: Waves) -> list[tuple[tuple[Real, Real], tuple[Real, Real]]]:
         """Return, wall by wall, what it reflects and passes on of light from above and of light from below."""
@@ -107,7 +108,8 @@ class _Walk:
 
     def _own(self, both: Real) -> Real:
         """Return what belongs to each ray's polarisation, (ray,), of (polarisation, 1, ray)."""
-        return both[self.pol, 0, np.arange(self.count)]
+        own: Real = both[self.pol, 0, np.arange(self.count)]
+        return own
 
     def _sink(self, side: Side) -> Flags:
         least = min((self.scene.index[m, 0].real for m in side.clear), default=np.inf)

@@ -119,13 +119,13 @@ def compared(results: Mapping[str, Result]) -> Comparison:
 
 
 def parts_of(result: Result) -> dict[tuple[str, str], float]:
-    """Return the averaged share that each layer takes in each zone, and the ends that no layer takes; they add to one."""
+    """Return the averaged share of each layer in each zone and of the ends that no layer takes; they add to one."""
     table = result.ray_table if result.table is None else result.table
     weight = dict(zip(table["wavelength_nm"], table["birth_weight"], strict=True))
     taken = result.where.assign(part=result.where["share"] * result.where["wavelength_nm"].map(weight))
     parts: dict[tuple[str, str], float] = {}
-    for (zone, layer), part in taken.groupby(["zone", "layer"], sort=False)["part"].sum().items():
-        parts[str(zone), str(layer)] = float(part)
+    for zone, layer, part in zip(taken["zone"], taken["layer"], taken["part"], strict=True):
+        parts[zone, layer] = parts.get((zone, layer), 0.0) + float(part)
     parts |= {("out", end.replace("_", " ")): result.averages[end] for end in LEFT if result.averages[end]}
     return parts
 

@@ -265,7 +265,7 @@ def _cluster(address: str) -> Iterator[tuple[Executor, int]]:
     except ImportError:
         raise InputError('cluster: needs the extra cluster: pip install "photonfate[cluster]"') from None
     try:
-        client = Client(address, timeout="10s", set_as_default=False)
+        client: Any = Client(address, timeout="10s", set_as_default=False)  # type: ignore[no-untyped-call]
     except (OSError, TimeoutError, ValueError) as error:
         raise InputError(f"cluster: no scheduler answers at {address} ({type(error).__name__})") from None
     with client:

@@ -28,7 +28,7 @@ LEADING = ("trapped", "substrate", "cover", "free_below", "free_above", "elsewhe
 
 @dataclass(frozen=True)
 class Input:
-    """One number of the stack in doubt: its key path, value, standard deviation, shape, and whether the file says so."""
+    """One number in doubt: its key path, value, standard deviation, shape, and whether the file says so."""
 
     key: str
     value: float
@@ -144,6 +144,6 @@ def _summed(inputs: Sequence[Input], moved: np.ndarray[Any, np.dtype[np.float64]
     table = pd.concat([pd.DataFrame(heads), pd.DataFrame(moved, columns=list(FIGURES))], axis=1)
     total = np.sqrt(np.square(moved).sum(axis=0))
     leading = moved[:, [FIGURES.index(name) for name in LEADING]]
-    which, share = np.unravel_index(int(np.argmax(leading)), leading.shape) if leading.size else (0, 0)
+    which, share = divmod(int(np.argmax(leading)), len(LEADING)) if leading.size else (0, 0)
     most = (inputs[which].key, LEADING[share]) if leading.size else ("", "")
     return InputUncertainty(dict(zip(FIGURES, total.tolist(), strict=True)), table, most, tuple(inputs))

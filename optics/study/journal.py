@@ -101,8 +101,8 @@ class Journal:
             os.fsync(file.fileno())
         except OSError as error:
             raise InputError(
-                f"{self.folder}: cannot be written ({error.strerror or error}); {self.done} of {self.points} points are "
-                "kept: make room and run the same command again"
+                f"{self.folder}: cannot be written ({error.strerror or error}); {self.done} of {self.points} points "
+                "are kept: make room and run the same command again"
             ) from None
         for point, line in zip(points, lines, strict=True):
             self._at[point] = end

@@ -3,7 +3,7 @@
 import warnings
 from collections.abc import Iterator
 from dataclasses import replace
-from itertools import combinations
+from itertools import combinations, pairwise
 
 import numpy as np
 
@@ -39,7 +39,7 @@ def lit_sides(drawing: Drawing) -> list[int]:
 
 
 def waves_met(drawing: Drawing, side: int, q: Real) -> PlaneWaves:
-    """Return what becomes of plane waves from one side at every wavelength of a drawing; ``q`` is (wavelength, node)."""
+    """Return what becomes of plane waves from one side; ``q`` is (wavelength, node)."""
     parts = list(scenes(drawing))
     film_is_plate = drawing.plate[drawing.film]
     shape = (2, *q.shape)
@@ -76,7 +76,7 @@ def against_tmm(stack: Stack, wavelength_nm: Real) -> tuple[float, int]:
 
 def _tmm(stack: Stack, wavelength: float, angle: float, pol: str, side: int) -> Real:
     """Return R and the absorptance of every layer, from above to below, by the `tmm` library."""
-    import tmm
+    import tmm  # type: ignore[import-untyped]  # it has no annotations
 
     step = 1 if side == 0 else -1
     materials = [material for _, material, _ in stack.media][::step]
@@ -126,7 +126,7 @@ def _nodes(drawing: Drawing, outer: Real) -> tuple[Real, Real]:
             low[:, None] + (high - low)[:, None] * np.sin(0.5 * np.pi * u) ** 2,
             (high - low)[:, None] * 0.5 * np.pi * np.sin(np.pi * u) * du,
         )
-        for low, high in zip(marks[:-1], marks[1:], strict=True)
+        for low, high in pairwise(marks)
     ]
     return np.concatenate([q for q, _ in pieces], axis=1), np.concatenate([w for _, w in pieces], axis=1)
 

@@ -1,5 +1,7 @@
 """Encapsulation limits in closed form."""
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 
@@ -48,7 +50,7 @@ def test_a_cover_of_the_films_own_index_leaves_no_bound_zone(film_nm):
 
 def test_a_cover_a_little_less_dense_than_the_film_leaves_a_little():
     shares = [optics.solve(between_plates(2.4 + 0.01j, n)).averages["waveguided"] for n in (1.5, 2.0, 2.3, 2.399)]
-    assert all(later < earlier for earlier, later in zip(shares[:-1], shares[1:], strict=True))
+    assert all(later < earlier for earlier, later in pairwise(shares))
     assert 0.0 < shares[-1] < 0.05
 
 

@@ -4,6 +4,7 @@ import functools
 import os
 import sys
 from concurrent.futures import ThreadPoolExecutor
+from pathlib import Path
 
 import engine_work
 import pytest
@@ -18,7 +19,7 @@ WORKERS = Place(workers=2)
 @pytest.fixture(autouse=True)
 def _workers_find_the_tests(monkeypatch):
     """Let processes that are started find the module of the work."""
-    here = os.path.dirname(engine_work.__file__)
+    here = str(Path(engine_work.__file__).parent)
     monkeypatch.setenv("PYTHONPATH", os.pathsep.join([here, *filter(None, [os.environ.get("PYTHONPATH")])]))
 
 
@@ -46,9 +47,13 @@ def test_a_worker_that_dies_loses_nothing(tmp_path):
 
 def test_what_kills_worker_after_worker_is_named_and_the_rest_done():
     found = {}
-    with pytest.raises(UnfinishedError) as error:
+
+    def gather():
         for at, answers in run(engine_work.dies_always, list, range(20), WORKERS):
             found.update(zip(at, answers, strict=True))
+
+    with pytest.raises(UnfinishedError) as error:
+        gather()
     assert 7 in error.value.missing
     assert set(found) | set(error.value.missing) == set(range(20))
     assert len(error.value.missing) <= 3  # chunks of a point while the pace is unknown, and what flew beside
