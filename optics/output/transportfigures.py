@@ -31,8 +31,14 @@ def plane_figure(found: "InPlane") -> Figure:
             axes.plot(middle, density, color=colour, lw=1.8)
             at = int(np.argmax(density))
             late = middle[at] > middle[-1] / 300.0  # its name would run into the right axis
-            where = {"ha": "right" if late else "left", "textcoords": "offset points", "color": colour}
-            axes.annotate(name, (middle[at], density[at]), (-6 if late else 6, 4), **where)
+            axes.annotate(
+                name,
+                (middle[at], density[at]),
+                (-6 if late else 6, 4),
+                ha="right" if late else "left",
+                textcoords="offset points",
+                color=colour,
+            )
             top = max(top, float(density[at]))
     axes.set_xscale("log")
     axes.set_xlim(middle[0], middle[-1])

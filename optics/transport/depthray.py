@@ -60,19 +60,13 @@ def _flights(edges: Real, slant: Real) -> _Flights:
     taken = -np.expm1(-t * np.diff(x, axis=1))
     thick = t * np.diff(x, axis=1)
     mean = np.where(thick > 0.0, taken / np.where(thick > 0.0, thick, 1.0), 1.0)
-    above, below = np.exp(-t * x[:, :-1]), np.exp(-t * (1.0 - x[:, 1:]))
+    fade = np.exp(-t * x)
+    rest = np.exp(-t * (1.0 - x[:, 1:]))
     # between slices exponents count from the middle; neighbours stay exact where they are cut, others get nothing
-    steep = np.minimum(t, 2.0 * MOST_FADING)
-    upper, lower = np.exp(steep * (0.5 - x[:, :-1])), np.exp(steep * (0.5 - x[:, 1:]))
+    from_middle = np.exp(np.minimum(t, 2.0 * MOST_FADING) * (0.5 - x))
+    above, upper, lower = fade[:, :-1], from_middle[:, :-1], from_middle[:, 1:]
     return _Flights(
-        mean * above,
-        mean * below,
-        taken * above,
-        taken * below,
-        mean / lower,
-        taken * upper,
-        mean * upper,
-        taken / lower,
+        mean * above, mean * rest, taken * above, taken * rest, mean / lower, taken * upper, mean * upper, taken / lower
     )
 
 
@@ -84,6 +78,11 @@ def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *,
     ends = _ends(waves, rays, responses, bound=bound)
     loop = ray.unclosed(rays.slant, rays.crossing, rays.above, rays.below)
     dark = bool(rays.slant.any())
+    if dark:
+        both = (0.5 * rays.launched.sum(axis=0) * weight)[:, None]
+        with np.errstate(over="ignore"):  # in the triangles that mean nothing
+            gather(out.lower, owner, np.matmul(both * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
+            gather(out.upper, owner, np.matmul(both * flights.leaves_up, np.swapaxes(flights.above, 1, 2)))
     for polarisation in (0, 1):
         back = (rays.above.back[polarisation], rays.below.back[polarisation])
         half = 0.5 * rays.launched[polarisation] * weight
@@ -94,10 +93,6 @@ def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *,
             gather(out.ends, owner, np.matmul(arriving, np.moveaxis(amounts[: len(ENDS), polarisation], 0, 2)))
         if dark:
             lands = [np.swapaxes(each, 1, 2) for each in (flights.lands_down, flights.lands_up)]
-            below, above = (np.swapaxes(each, 1, 2) for each in (flights.below, flights.above))
-            with np.errstate(over="ignore"):  # in the triangles that mean nothing
-                gather(out.lower, owner, np.matmul(half[:, None] * flights.leaves_down, below))
-                gather(out.upper, owner, np.matmul(half[:, None] * flights.leaves_up, above))
             mirrored = np.matmul(up * back[0][:, None], lands[0]) + np.matmul(down * back[1][:, None], lands[1])
             gather(out.returned, owner, mirrored)
             for k in (0, 1):

@@ -50,7 +50,8 @@ def land(scene: Scene, edges: Real, settings: Settings) -> Landing:
     for zone in (_open_nodes(scene, settings), _bound_nodes(scene)):
         for nodes in zone:
             _add(out, scene, edges, nodes)
-    return out
+    width = np.diff(edges, axis=1)[:, :, None]
+    return Landing(out.power, out.lower / width, out.upper / width, out.returned / width, out.ends / width)
 
 
 @dataclass(frozen=True)
@@ -237,12 +238,12 @@ def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
         photons = nodes.points.q < scene.far_end[nodes.owner, None]
         ends = (ends[0] * photons, ends[1] * photons)
     strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * np.exp(2j * film.phase * kz))
-    twice, width = np.exp(2j * film.phase * kz.real), np.diff(edges[nodes.owner], axis=1)
+    twice = np.exp(2j * film.phase * kz.real)
     for polarisation in nodes.polarisations:
         block = _Block(over, twice, *_weights(film, nodes.points.q, kz, polarisation))
         pair = (mirrors[0][polarisation], mirrors[1][polarisation])
         mine = (ends[0][:, polarisation], ends[1][:, polarisation])
-        _add_block(out, nodes.owner, block, pair, mine, strength[polarisation], width)
+        _add_block(out, nodes.owner, block, pair, mine, strength[polarisation])
 
 
 @dataclass(frozen=True)
@@ -288,25 +289,46 @@ def _add_block(
     mirrors: tuple[Complex, Complex],
     ends: tuple[Real, Real],
     strength: Real,
-    width: Real,
 ) -> None:
-    """Add one polarisation's rows: products over the nodes of what slices send and what slices and ends take."""
-    zero = np.zeros_like(block.plain)
-    right = [block.of(mirrors[0], None, block.plain, block.slope), block.of(None, mirrors[1], block.plain, block.slope)]
-    sent = [each * (block.send * strength)[:, None] for each in right]
-    if block.upright.any():
-        sent[0] += block.of(mirrors[0], None, block.upright * strength, zero)
-        sent[1] += block.of(None, mirrors[1], block.upright * strength, zero)
-    sent = [each / width[:, :, None] for each in sent]
-    taken = [np.swapaxes(each * block.take[:, None], 1, 2) for each in right]
+    """Add one polarisation's rows: products over the nodes of what slices send and what slices and ends take.
+
+    Amounts are those of a whole slice, not yet divided by its width.
+    """
+    up = block.of(mirrors[0], None, block.plain, block.slope)
+    down = block.of(None, mirrors[1], block.plain, block.slope)
+    load = block.send * strength
     with np.errstate(over="ignore"):  # in the triangles that mean nothing
-        gather(out.upper, owner, np.matmul(sent[1], taken[0]))
-        gather(out.lower, owner, np.matmul(sent[0], taken[1]))
-    gone = sum(np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)], 0, 2)) for k in (0, 1))
+        pairs = np.matmul(up * (load * block.take)[:, None], np.swapaxes(down, 1, 2))
+    gather(out.lower, owner, pairs)
+    gather(out.upper, owner, np.swapaxes(pairs, 1, 2))
+    _add_ends(out, owner, (up, down), (up, down), ends, load)
+    if block.upright.any():
+        nothing = np.zeros_like(block.plain)
+        more_up = block.of(mirrors[0], None, block.upright, nothing)
+        more_down = block.of(None, mirrors[1], block.upright, nothing)
+        taken = (strength * block.take)[:, None]
+        with np.errstate(over="ignore"):
+            gather(out.lower, owner, np.matmul(more_up * taken, np.swapaxes(down, 1, 2)))
+            gather(out.upper, owner, np.matmul(more_down * taken, np.swapaxes(up, 1, 2)))
+        _add_ends(out, owner, (more_up, more_down), (up, down), ends, strength)
+
+
+def _add_ends(
+    out: Landing,
+    owner: Index,
+    sent: tuple[Real, Real],
+    lands: tuple[Real, Real],
+    ends: tuple[Real, Real],
+    load: Real,
+) -> None:
+    """Add what gets to the ends, and what the film takes of light that plates send back.
+
+    Births send the wave that is right below upwards, and the other one down.
+    """
     for k in (0, 1):
-        back = [ends[way][SEEN_FROM[k]] for way in (0, 1)]
+        gather(out.ends, owner, np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)] * load, 0, 2)))
+        back = [ends[way][SEEN_FROM[k]] * load for way in (0, 1)]
         if back[0].any() or back[1].any():
             coming = sent[1] * back[0][:, None] + sent[0] * back[1][:, None]
-            lands = taken[1 - k]  # light from above is the wave that is right below
-            gather(out.returned, owner, np.matmul(coming, lands / lands.sum(axis=2, keepdims=True)))
-    gather(out.ends, owner, gone)
+            where = lands[1 - k] / lands[1 - k].sum(axis=1, keepdims=True)  # light from above is right below
+            gather(out.returned, owner, np.matmul(coming, np.swapaxes(where, 1, 2)))
