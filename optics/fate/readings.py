@@ -17,9 +17,9 @@ lost edges
 Convention: the power P in units of the bulk's, and p_r, depend on where the film's exchange with itself is cut: light
 taken back within a wavelength may be counted as never emitted, which lowers both. P (p_e + p_a) does not depend
 on it. The bulk-normalised set refers all to emission in the bulk: p_e^b = P p_e, p_a^b = P p_a and
-p_r^b = 1 - P (1 - p_r) (Kirchartz, Staub & Rau, ACS Energy Lett. 1, 731 (2016); Rau et al., Phys. Rev. Applied 2, 014013
-(2014)); the efficiency that goes with it is the bulk's q, the one that goes with p is q_stack = P q/(1 - q + P q) (Furno
-et al., Phys. Rev. B 85, 115205 (2012)). Both give the same external yield.
+p_r^b = 1 - P (1 - p_r) (Kirchartz, Staub & Rau, ACS Energy Lett. 1, 731 (2016); Rau et al., Phys. Rev. Applied 2,
+014013 (2014)); the efficiency that goes with it is the bulk's q, the one that goes with p is
+q_stack = P q/(1 - q + P q) (Furno et al., Phys. Rev. B 85, 115205 (2012)). Both give the same external yield.
 """
 
 from dataclasses import dataclass
