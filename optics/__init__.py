@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from optics.media.labfile import read_table
     from optics.media.material import Material
     from optics.media.tail import Tail
+    from optics.output.handoff import write_handoff
     from optics.output.result import write_result
     from optics.output.transport import write_indepth, write_inplane
     from optics.radiation import FromAbsorption, equilibrium_rate
@@ -31,6 +32,7 @@ if TYPE_CHECKING:
     from optics.stackfile.writing import write_stack
     from optics.transport.depth import InDepth, indepth
     from optics.transport.guided import guided_modes
+    from optics.transport.handover import Handover, hand_over
     from optics.transport.inplane import InPlane, inplane
 
     __version__: str
@@ -42,6 +44,7 @@ __all__ = [
     "Emission",
     "FromAbsorption",
     "Gaussian",
+    "Handover",
     "InDepth",
     "InPlane",
     "InputError",
@@ -64,6 +67,7 @@ __all__ = [
     "equilibrium_rate",
     "find_material",
     "guided_modes",
+    "hand_over",
     "import_table",
     "indepth",
     "inplane",
@@ -73,6 +77,7 @@ __all__ = [
     "read_table",
     "sampled",
     "solve",
+    "write_handoff",
     "write_indepth",
     "write_inplane",
     "write_result",
@@ -87,6 +92,7 @@ _HOMES = {
     "Emission": "optics.stack:Emission",
     "FromAbsorption": "optics.radiation:FromAbsorption",
     "Gaussian": "optics.spectrum:Gaussian",
+    "Handover": "optics.transport.handover:Handover",
     "InDepth": "optics.transport.depth:InDepth",
     "InPlane": "optics.transport.inplane:InPlane",
     "InputError": "optics.errors:InputError",
@@ -109,6 +115,7 @@ _HOMES = {
     "equilibrium_rate": "optics.radiation:equilibrium_rate",
     "find_material": "optics.media.cabinet:find",
     "guided_modes": "optics.transport.guided:guided_modes",
+    "hand_over": "optics.transport.handover:hand_over",
     "import_table": "optics.media.importing:import_table",
     "indepth": "optics.transport.depth:indepth",
     "inplane": "optics.transport.inplane:inplane",
@@ -118,6 +125,7 @@ _HOMES = {
     "read_table": "optics.media.labfile:read_table",
     "sampled": "optics.fate.sampled:sampled",
     "solve": "optics.fate.solve:solve",
+    "write_handoff": "optics.output.handoff:write_handoff",
     "write_indepth": "optics.output.transport:write_indepth",
     "write_inplane": "optics.output.transport:write_inplane",
     "write_result": "optics.output.result:write_result",

@@ -28,6 +28,8 @@ SHORTER = (
     ("depth_spectra", "depth_wl"),
     ("mode_absorbers", "mode_abs"),
     ("guided_spectrum", "guided"),
+    ("taken_back_beyond", "back_beyond"),
+    ("guided_mean_wavelength", "guided_mean"),
     ("absorption", "abs"),
     ("wavelength", "wl"),
     ("velocity", "vel"),
@@ -214,7 +216,7 @@ def _write_mat(contents: Contents, folder: Path) -> None:
     for each in contents.numbers:
         field = field_name(each.column.name, fields)
         fields[field] = each.value
-        named.append((field, NUMBERS, each.column.unit, each.column.meaning))
+        named.append((field, f"{NUMBERS}: {each.column.name}", each.column.unit, each.column.meaning))
     for sheet in contents.sheets:
         for column, values in zip(sheet.columns, sheet.values, strict=True):
             field = field_name(f"{sheet.name}_{column.name}", fields)

@@ -165,7 +165,9 @@ def test_scipy_reads_one_flat_struct_of_version_5_with_short_names(bundles, hand
     assert max(map(len, struct)) <= 31
     assert all(re.fullmatch(r"[A-Za-z][A-Za-z0-9_]*", name) for name in struct)
     assert not any(isinstance(value, dict) for value in struct.values())
+    # every name ends as the column does, so that its unit is still there
     where = {meant: field for field, meant in zip(struct["fields_field"], struct["fields_column"], strict=True)}
+    assert not [field for meant, field in where.items() if field.split("_")[-1] != meant.split("_")[-1].split()[-1]]
     for name, table in handed.tables.items():
         for column in table:
             same(np.atleast_1d(struct[where[f"{name}: {column}"]]), table[column].to_numpy())
