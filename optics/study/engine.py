@@ -116,10 +116,9 @@ class _Queue:
         self.point_s = 0.5 * (self.point_s + pace) if self.point_s else pace
 
     def return_chunk(self, chunk: _Chunk) -> None:
-        """Hand a chunk that found no answer out once more, or give it up."""
-        chunk.attempts += 1
-        if chunk.attempts < ATTEMPTS:
-            self.again.append(chunk)
+        """Hand the points of a chunk that found no answer out once more, each by itself, or give them up."""
+        if chunk.attempts + 1 < ATTEMPTS:
+            self.again += [_Chunk([point], chunk.attempts + 1) for point in chunk.points]
         else:
             self.given_up += chunk.points
 
@@ -187,7 +186,8 @@ def _drain(work: Work, pack: Pack, queue: _Queue, executor: Executor) -> Iterato
     broken = False
     try:
         while flying or (queue and not broken):
-            while queue and not broken and len(flying) <= queue.slots:
+            # what may have killed a worker flies alone, so that it takes nothing with it and is known for it
+            while queue and not broken and len(flying) <= (0 if queue.again else queue.slots):
                 chunk = queue.take()
                 try:
                     flying[executor.submit(timed, work, pack(chunk.points))] = chunk
