@@ -4,13 +4,17 @@ import math
 
 import numpy as np
 
+from optics.fate.nearfield import FURTHER, Transfer
 from optics.waves.coherent import Complex, Real
+from optics.waves.scattering import specular_loss
 
 NEAR_METAL_NM = 50.0
 """Within this distance of a metal, energy goes over to plasmons beyond the film's light line (Drexhage; Chance, Prock
 & Silbey 1978 show rates rising below about a tenth of a wavelength)."""
 
 ERROR_WORTH_A_WORD = 1e-6
+CUT_OFF_WORTH_A_WORD = 1e-4
+SPECULAR_WORTH_A_WORD = 0.01
 
 STRONG_NEAR_FIELD = 0.3
 """k/(k0 d) from which the film's near field reaches past its faces by more than a few percent of the births."""
@@ -62,6 +66,28 @@ def metal_warning(names: list[str], index: Complex, thickness_nm: Real, film: in
     return (
         f"{' and '.join(close)}: a metal within {NEAR_METAL_NM:.0f} nm of the births takes energy through its near "
         "field (plasmons among it) beyond the film's light line; that part is left out"
+    )
+
+
+def cut_off_warning(found: Transfer, *, to_index: float) -> str | None:
+    """Return a warning where the near field has not ended at its cut-off, else None."""
+    worst = float(np.abs(found.further).max())
+    if worst <= CUT_OFF_WORTH_A_WORD:
+        return None
+    return (
+        f"the near field has not ended at to_index = {to_index:g}: a cut-off {FURTHER - 1:.0%} further adds up to "
+        f"{worst:.1e} per photon that the same births send into the bulk"
+    )
+
+
+def roughness_warning(layer: str, roughness_nm: float, wavelength_nm: Real, index: Real) -> str | None:
+    """Return what a rough face scatters out of its direction, which a graded layer leaves out, if worth a word."""
+    worst = float(specular_loss(rms_nm=roughness_nm, wavelength_nm=wavelength_nm, index=index).max())
+    if worst <= SPECULAR_WORTH_A_WORD:
+        return None
+    return (
+        f'layer "{layer}": its rough face throws up to {worst:.1%} of light reflected in the denser medium out of its '
+        "direction (Bennett & Porteus 1961, normal incidence); the graded layer leaves that out"
     )
 
 

@@ -156,7 +156,8 @@ def solve(stack: Stack, *, settings: Settings | None = None) -> Result:
     ledgers = {model: ledger_of(drawing, settings, model=model) for model in models}
     result = _result(smooth, drawing, ledgers, settings)
     moved = _moved_by_tail(stack, drawing, ledgers, result.averages, settings)
-    return replace(result, stack=stack, assumptions=assumptions(stack), moved_by_tail=moved)
+    said = (*result.warnings, *_rough_faces(stack))
+    return replace(result, stack=stack, assumptions=assumptions(stack), moved_by_tail=moved, warnings=said)
 
 
 def _result(stack: Stack, drawing: Drawing, ledgers: dict[str, Ledger], settings: Settings) -> Result:
@@ -319,13 +320,34 @@ def _index(drawing: Drawing, names: list[str]) -> pd.DataFrame:
     return pd.DataFrame(columns)
 
 
+def _near_field(stack: Stack, drawing: Drawing) -> str | None:
+    """Return a warning where the cut-off of a near field matters, else None."""
+    asked = stack.emission.near_field
+    if asked is None or stack.film.plate:
+        return None
+    return advice.cut_off_warning(nearfield.transfer(drawing, asked, Settings()), to_index=asked.to_index)
+
+
+def _rough_faces(stack: Stack) -> list[str]:
+    """Return what rough faces scatter, where that is worth a word."""
+    above = [stack.above.material, *(layer.repaired for layer in stack.layers)]
+    wavelength = stack.light.wavelengths_nm
+    said = []
+    for layer, neighbour in zip(stack.layers, above, strict=False):
+        index = np.maximum(layer.repaired.index(wavelength).real, neighbour.index(wavelength).real)
+        said.append(advice.roughness_warning(layer.name, layer.roughness_nm, wavelength, index))
+    return [sentence for sentence in said if sentence]
+
+
 def _warnings(
     stack: Stack, drawing: Drawing, names: list[str], born: births.Born, ledger: Ledger, *, advised: str, lead: str
 ) -> tuple[str, ...]:
     film = drawing.index[drawing.film]
     weight = born.per_nm * weights(drawing.wavelength_nm)
     said = [
-        advice.metal_warning(names, drawing.index, drawing.thickness_nm, drawing.film),
+        _near_field(stack, drawing)
+        if stack.emission.near_field is not None
+        else advice.metal_warning(names, drawing.index, drawing.thickness_nm, drawing.film),
         floor_warning(stack.film.name, stack.film.repaired, drawing.wavelength_nm, film.imag, weight),
         advice.error_warning(ledger.error),
         advice.near_field_warning(

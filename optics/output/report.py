@@ -57,7 +57,14 @@ def report(
 
 
 def _sampled(result: "Result") -> Iterator[str]:
-    """Yield the ends of held and guided light and all readings, where the stack has a sample."""
+    """Yield the near field where asked for, the ends of held and guided light and all readings of a sample."""
+    asked = result.stack.emission.near_field
+    if asked is not None and "near_field" in result.averages:
+        near = result.averages["near_field"]
+        yield (
+            f"Near field per photon born: {near:.4f} (up to an index of {asked.to_index:g}, "
+            f"births {asked.stand_off_nm:g} nm off the faces; not part of the shares)"
+        )
     if result.sample is not None:
         yield from readings_text(result.sample)
         yield from (f"Warning: {line}" for line in result.sample.warnings)
