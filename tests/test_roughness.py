@@ -95,3 +95,10 @@ def test_faces_that_are_no_graded_layers_are_refused(change, said):
 def test_a_rough_stack_is_not_turned_upside_down():
     with pytest.raises(InputError, match="upside down"):
         stack(5.0).flipped()
+
+
+def test_a_rough_face_says_what_it_scatters():
+    """Bennett & Porteus 1961 in the denser medium: 1 - exp(-(4 pi 2.5 10/760)^2) = 15.7 %."""
+    (said,) = (line for line in solve(stack(10.0)).warnings if "Bennett" in line)
+    assert "15.7%" in said
+    assert not any("Bennett" in line for line in solve(stack(1.0)).warnings)

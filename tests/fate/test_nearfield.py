@@ -109,3 +109,11 @@ def test_the_column_is_there_when_asked_for_and_the_shares_stay():
     assert any("up to an in-plane index of 20" in line for line in with_it.assumptions)
     for share in ("trapped", "free_above", "elsewhere"):
         assert with_it.averages[share] == without.averages[share]
+
+
+def test_a_cut_off_that_matters_is_told():
+    from optics.fate.solve import solve
+
+    short, long = (solve(stack({"stand_off_nm": 5, "to_index": end})).warnings for end in (10, 300))
+    assert any("has not ended at to_index = 10" in line for line in short)
+    assert not any("near field" in line for line in long)
