@@ -16,7 +16,7 @@ from optics.waves.paths import Index, Rows
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
-DEPTH = 0.5
+DEPTH = 0.7
 """How far a dip leaves the real axis, in units of the angle it runs through over pi/2."""
 
 

@@ -32,10 +32,10 @@ CLEARANCE = 2.5
 """Lines nearer to another, or to an end of their panel, than this many half widths are not fitted: the ground under
 them is not smooth."""
 
-CUT_FROM = 0.03
+CUT_FROM = 0.1
 """Half width, in units of the room around a line, from which a panel is cut there: a fit leaves too much of it."""
 
-CUT_APART = 1.0
+CUT_APART = 1.5
 """Lines that follow another by less than this many half widths share its cut."""
 
 CELL_ORDER = 24
