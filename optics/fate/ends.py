@@ -184,14 +184,17 @@ def _joined(
     model: str,
 ) -> SampleEnds:
     shares = ledger.shares
-    straight = whole.straight / ledger.rate_factor
-    entered = shares["substrate"] + shares["cover"] + ledger.taken[1].sum(axis=0) - straight.sum(axis=0)
+    # light in plates and in outer media, parted by the second integral; their sum stays that of the ledger
+    both = shares["substrate"] + shares["cover"] + ledger.taken[1].sum(axis=0)
+    in_plates = whole.wide.sum(axis=0) > 0.0
+    entered = np.where(in_plates, both - whole.straight.sum(axis=0) / ledger.rate_factor, 0.0)
+    straight = both - entered
     held_places = {name: np.zeros((len(PLACES), len(entered))) for name in SAMPLES}
     for name, part in (("wide", whole.wide), ("edged", whole.edged)):
         total = part.sum(axis=0)
         held_places[name] = _places(whole.ends, part, drawing.film) * entered / np.where(total > 0.0, total, 1.0)
     for places in held_places.values():
-        places[PLACES.index("to_outer")] += straight.sum(axis=0)
+        places[PLACES.index("to_outer")] += straight
     up = sample.scatter_up_share
     scattered = {name: np.zeros((len(PLACES), len(entered))) for name in SAMPLES}
     if sample.scatters:
