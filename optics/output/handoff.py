@@ -85,7 +85,8 @@ def write_handoff(
     warnings = (*handed.warnings, *bands.warnings)
     with writing(Path(folder), replace=replace) as part:
         write_data(contents, part, kind=kind)
-        _write_texts(result, contents, part, kind=kind, warnings=warnings, left_out=left_out)
+        said = {"warnings": warnings, "assumptions": handed.assumptions}
+        _write_texts(result, contents, part, kind=kind, left_out=left_out, **said)
         taken = (*FORMATS[kind].files, DATA, README, METHODS, REFERENCES, RECORD, STACK_FILE)
         copy_inputs(stack, part, stack_file=source, taken=taken)
         settings = settings_of(stack) | {"format": kind, "left_out": list(left_out)}
@@ -100,12 +101,13 @@ def _write_texts(
     *,
     kind: str,
     warnings: Sequence[str],
+    assumptions: Sequence[str],
     left_out: Mapping[str, int],
 ) -> None:
     version = tool_version()
     texts = {
         README: page(result, contents, kind=kind, warnings=warnings, left_out=left_out, version=version),
-        METHODS: methods_text(result, version=version),
+        METHODS: methods_text(result, assumptions=assumptions, version=version),
         REFERENCES: references_text(result),
     }
     for name, text in texts.items():

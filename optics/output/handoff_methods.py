@@ -1,7 +1,7 @@
 """Methods for a paper's supplement: a paragraph, the layers with their sources, and BibTeX."""
 
 import re
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -57,15 +57,30 @@ REFERENCES = {
   doi = {10.1021/acsenergylett.6b00223}
 }""",
 }
+PLANE = (
+    "In-plane distances at which the film takes photons back were found mode by mode for guided light (poles of the "
+    "power density, their residues as shares of the births) and from rays in closed form for the rest; the matrix over "
+    "the film's depth from the fields of births in each of its slices; both add to the shares above."
+)
 DOI = re.compile(r"\b10\.\d{4,9}/[^\s;,]+")
 LAST_OF_A_DOI = ".)]}"
 
 
-def methods_text(result: "Result", *, version: str) -> str:
-    """Return the methods: Markdown with citation keys of ``references_text``."""
+def methods_text(result: "Result", *, assumptions: Sequence[str], version: str) -> str:
+    """Return the methods: Markdown with citation keys of ``references_text``.
+
+    Parameters
+    ----------
+    result
+        What was solved.
+    assumptions
+        Sentences on every choice that shapes the numbers.
+    version
+        Of this tool.
+    """
     stack = result.stack
     parts = ["# Methods", paragraph(result, version=version)]
-    parts += ["\n".join(layer_table(result)), "Further choices:", "\n".join(f"- {line}" for line in result.assumptions)]
+    parts += ["\n".join(layer_table(result)), "Further choices:", "\n".join(f"- {line}" for line in assumptions)]
     if _keys(stack):
         parts += ["Sources of n and k:", "\n".join(_sources(stack))]
     return "\n\n".join(parts) + "\n"
@@ -83,6 +98,7 @@ def paragraph(result: "Result", *, version: str) -> str:
         _births(stack),
         _model(result),
         *_found(result),
+        PLANE,
         "Readings of the shares as p_r, p_e and p_a, and what they do to radiative rates, follow [@kirchartz2016].",
     ]
     if result.radiation is not None:

@@ -40,7 +40,7 @@ DEFINITIONS = (
     "the edge counts as out). With p_r goes P times the bulk's radiative rate; with p_r_bulk the bulk's rate itself.",
     "In the plane: per_um_radius is the share a unit of radius, per_cm2 an area around the spot, line_per_cm a line "
     "through it, averaged over cells on both sides. Take the one of your geometry; they are not proportional.",
-    "Depth: rows are birth slices, columns landing slices, z = 0 at the film's upper face.",
+    "Depth: share of the births in one slice that the film takes back in another; z = 0 at the film's upper face.",
     "Empty cells (nan, null): not a number, or without bound.",
 )
 

@@ -92,6 +92,7 @@ def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, setting
         "exponentials": plane.exponentials,
         "compact": plane.compact,
         **depth_tables(depth),
+        **({} if result.depth is None else {"birth_depth": result.depth}),
         "index": index_table(result),
         "where": result.where,
         "spectra": result.spectra,
@@ -249,6 +250,10 @@ def numbers_of(result: Result, read: tuple[Reading, ...]) -> dict[str, float]:
         label = each.name.replace(" ", "_")
         numbers |= {f"p_r_{label}": each.p_r, f"p_e_{label}": each.p_e, f"p_a_{label}": each.p_a}
         numbers[f"radiative_factor_{label}"] = each.rate_factor * (1.0 - each.p_r)
+    if result.pump is not None:
+        numbers["pump_absorbed"] = result.pump.absorbed
+        numbers["pump_carriers_per_cm3"] = result.pump.carriers_per_cm3
+        numbers["pump_peak_carriers_per_cm3"] = result.pump.peak_carriers_per_cm3
     numbers |= {f"ray_{name}": value for name, value in result.ray_averages.items() if name in SHARES}
     if result.radiation is not None:
         numbers["temperature_K"] = result.radiation.temperature_K

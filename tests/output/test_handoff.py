@@ -288,6 +288,19 @@ def test_a_slice_of_birth_loses_nothing_and_slices_average_to_the_ledger(handed)
     assert mean == pytest.approx(handed.numbers["taken_back"], abs=1e-8)
 
 
+def test_a_pump_hands_over_its_births_over_depth_and_carriers(home):
+    stack = read_stack(home / "stack.toml")
+    pumped = stack.with_emission(depth=optics.Pump(pump_nm=660, side="above"))
+    found = hand_over(pumped)
+    table = found.tables["birth_depth"]
+    # Births are scaled to a mean of one; the trapezoid rule over a hundred depths.
+    assert np.trapezoid(table["linear"], table["depth_nm"]) / 400.0 == pytest.approx(1.0, abs=1e-3)
+    assert found.numbers["pump_carriers_per_cm3"] == found.result.pump.carriers_per_cm3
+    assert unit_of("pump_carriers_per_cm3") == "1/cm3"
+    assert not [each.name for each in sheet("birth_depth", table).columns if not each.meaning]
+    assert not [name for name in found.numbers if not handoff.numbers({name: 1.0})[0].column.meaning]
+
+
 def test_a_stack_without_a_coefficient_still_hands_over_the_factors(tmp_path):
     stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
     table = hand_over(stack).tables["radiative"]
@@ -400,7 +413,7 @@ def test_with_full_nothing_is_left_out(handed, tmp_path):
 
 @pytest.mark.parametrize("error", [OSError("disk full"), KeyboardInterrupt()])
 def test_a_bundle_that_could_not_be_finished_leaves_nothing(error, handed, tmp_path, monkeypatch):
-    def broken(result, *, version):
+    def broken(result, **said):
         raise error
 
     monkeypatch.setattr(handoff, "methods_text", broken)
