@@ -32,7 +32,8 @@ def readings_text(sampled: "Sampled") -> Iterator[str]:
     decimals = decimals_for(sampled.error)
     yield from _ends(sampled, decimals)
     yield ""
-    yield f"{'Reading':<26}" + "".join(f"{name:>{WIDTH}}" for name in ("p_r", "p_e", "p_a")) + "   bulk-normalised"
+    heads = ("p_r", "p_e", "p_a", "bulk p_r", "bulk p_e", "bulk p_a")
+    yield f"{'Reading':<26}" + "".join(f"{name:>{WIDTH}}" for name in heads)
     for reading in sampled.readings:
         yield _reading(
             _named(reading.name, sampled.sample), (reading.p_r, reading.p_e, reading.p_a), reading.bulk, decimals
@@ -45,7 +46,8 @@ def readings_text(sampled: "Sampled") -> Iterator[str]:
         name = "scrambled, open faces" if limit.open_faces else "scrambled, these faces"
         yield _reading(name, (limit.p_r, limit.p_e, limit.p_a), None, decimals)
     yield "p_r: the film takes it back and makes carriers; p_e: it leaves; p_a: lost. faces: held light lost;"
-    yield "wide: no edges, held light followed to its end; sphere: light at the edge leaves too."
+    yield "wide: no edges, held light followed to its end; sphere: light at the edge leaves too. bulk: per emission in the"
+    yield "bulk. The rate factor P and p_r depend on where the film's exchange with itself is cut; P (p_e + p_a) does not."
 
 
 def _named(name: str, sample: "Sample") -> str:
