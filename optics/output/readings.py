@@ -47,7 +47,7 @@ def readings_text(sampled: "Sampled") -> Iterator[str]:
         yield _reading(name, (limit.p_r, limit.p_e, limit.p_a), None, decimals)
     yield "p_r: the film takes it back and makes carriers; p_e: it leaves; p_a: lost. faces: held light lost;"
     yield "wide: no edges, held light followed to its end; sphere: light at the edge leaves too. bulk: per emission in"
-    yield "the bulk. Rate factor P and p_r depend on where the film's exchange with itself is cut; P (p_e + p_a) does not."
+    yield "the bulk. P (rate factor) and p_r depend on where the film's exchange with itself is cut, P (p_e + p_a) not."
 
 
 def _named(name: str, sample: "Sample") -> str:
