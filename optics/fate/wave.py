@@ -9,20 +9,19 @@ from optics.fate.exits import Layout, Response, emerge, light_lines, split_panel
 from optics.waves import curves, source
 from optics.waves.coherent import (
     Complex,
-    Outlook,
     Real,
     admittances,
     fold,
     normal_inside,
     normal_outside,
     reflection,
-    squared,
 )
 from optics.waves.curves import Points
 from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
+from optics.waves.shelf import kept_for
 
 SHARP_FROM_DEPTH = 25.0
 """Phase through the group from which leaky lines are looked for in the open zone."""
@@ -58,18 +57,25 @@ def power_on_path(view: View, points: Points, *, flights: bool, dips: bool = Fal
     """
     scene, film = view.scene, view.film
     q = points.q
-    kz = 1j * np.sqrt(-points.short_of_film * (film.index + q))
-    own = admittances(kz, film.eps)
-    faces = [
-        _face_on_path(view, q, layers, side.touching, dips=dips)
-        for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True)
-    ]
-    up, down = (reflection(own, face) for face in faces)
+    kept = kept_for(lambda: ("path", dips, scene.halves), view.owner, q)
+    kz, up, down = kept.get("halves", lambda: _halves_on_path(view, points, dips=dips))
     density = source.density(source.cavity(film, q, kz, up, down))
     density *= points.slope
     if not flights:
         return density[None]
     return np.stack([density, density * source.first_flight(film.slant(kz), film.moments)])
+
+
+def _halves_on_path(view: View, points: Points, *, dips: bool) -> tuple[Complex, Complex, Complex]:
+    """Return the film's normal wave number and the reflections of both halves: what its thickness does not touch."""
+    scene, film, q = view.scene, view.film, points.q
+    kz = 1j * np.sqrt(-points.short_of_film * (film.index + q))
+    own = admittances(kz, film.eps)
+    up, down = (
+        reflection(own, _face_on_path(view, q, layers, side.touching, dips=dips))
+        for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True)
+    )
+    return kz, up, down
 
 
 def _face_on_path(view: View, q: Complex, layers: tuple[int, ...], touching: int, *, dips: bool) -> Complex:
@@ -93,23 +99,15 @@ class Emission:
 def emission(waves: Waves) -> Emission:
     """Return what the dipoles radiate into both halves at real ``q``."""
     scene, film = waves.view.scene, waves.view.film
-    kz, own = waves.kz(scene.film), waves.own(scene.film)
-    looks = (
-        waves.look(scene.layers_up, scene.above.touching),
-        waves.look(scene.layers_down, scene.below.touching),
-    )
-    up, down = (reflection(own, o.face) for o in looks)
-    cavity = source.cavity(film, waves.q, kz, up, down)
+    above, up, field_up = waves.mirror(scene.layers_up, scene.above.touching)
+    below, down, field_down = waves.mirror(scene.layers_down, scene.below.touching)
+    cavity = source.cavity(film, waves.q, waves.kz(scene.film), up, down)
     sent = source.handed(cavity)
     return Emission(
         source.density(cavity),
-        _fluxes(looks[0], up, sent.up),
-        _fluxes(looks[1], down, sent.down),
+        above.fluxes(sent.up * field_up),
+        below.fluxes(sent.down * field_down),
     )
-
-
-def _fluxes(outlook: Outlook, amplitude: Complex, sent: Real) -> list[Real]:
-    return outlook.fluxes(sent * squared(1.0 + amplitude))
 
 
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from optics.waves.coherent import Complex, Outlook, Real, admittances, look, normal_on_axis, reflection, squared
 from optics.waves.curves import middle
 from optics.waves.scene import Side, View
+from optics.waves.shelf import kept_for
 
 Mask = NDArray[np.bool_]
 
@@ -24,33 +25,51 @@ class Waves:
 
     def __init__(self, view: View, q: Real, short_of_film: Complex | None = None) -> None:
         self.view, self.q = view, q
-        self._kz: dict[int, Complex] = {}
+        self.kept = kept_for(lambda: view.scene.halves, view.owner, q)
         if short_of_film is not None:
-            self._kz[view.scene.film] = np.sqrt(short_of_film * (view.film.index + q))
-        self._own: dict[int, Complex] = {}
-        self._turn: dict[int, Complex] = {}
+            film = view.film.index
+            self.kept.get(("kz", view.scene.film), lambda: np.sqrt(short_of_film * (film + q)))
+        self._film_turn: Complex | None = None
 
     def kz(self, medium: int) -> Complex:
         """Normal wave number of a medium."""
-        if medium not in self._kz:
-            self._kz[medium] = normal_on_axis(self.view.eps[medium], self.q)
-        return self._kz[medium]
+        return self.kept.get(("kz", medium), lambda: normal_on_axis(self.view.eps[medium], self.q))
 
     def own(self, medium: int) -> Complex:
         """Admittance of a medium, (polarisation, row, node)."""
-        if medium not in self._own:
-            self._own[medium] = admittances(self.kz(medium), self.view.eps[medium])
-        return self._own[medium]
+        return self.kept.get(("own", medium), lambda: admittances(self.kz(medium), self.view.eps[medium]))
 
     def layer(self, medium: int) -> tuple[Complex, Complex]:
         """Admittance and exp(2 i kz d) of a thin layer."""
-        if medium not in self._turn:
-            self._turn[medium] = np.exp(2j * self.view.phase[medium] * self.kz(medium))
-        return self.own(medium), self._turn[medium]
+        if medium != self.view.scene.film:
+            return self.own(medium), self.kept.get(("turn", medium), lambda: self._turn(medium))
+        if self._film_turn is None:  # the one thing here that depends on the film's thickness
+            self._film_turn = self._turn(medium)
+        return self.own(medium), self._film_turn
+
+    def _turn(self, medium: int) -> Complex:
+        turn: Complex = np.exp(2j * self.view.phase[medium] * self.kz(medium))
+        return turn
 
     def look(self, layers: tuple[int, ...], behind: int) -> Outlook:
         """Look outwards through ``layers`` (nearest first) at the medium ``behind``."""
-        return look([self.layer(j) for j in layers], self.own(behind))
+        film = self.view.scene.film
+        if film not in layers:
+            return self.kept.get(
+                ("look", layers, behind), lambda: look([self.layer(j) for j in layers], self.own(behind))
+            )
+        at = layers.index(film) + 1
+        beyond = self.look(layers[at:], behind)
+        before = look([self.layer(j) for j in layers[:at]], beyond.face)
+        return Outlook((*before.faces[:-1], *beyond.faces), (*before.gains, *beyond.gains))
+
+    def mirror(self, layers: tuple[int, ...], behind: int) -> tuple[Outlook, Complex, Real]:
+        """Return the film's outlook through ``layers``, its reflection r there, and |1 + r|^2."""
+        outlook = self.look(layers, behind)
+        amplitude = self.kept.get(
+            ("mirror", layers, behind), lambda: reflection(self.own(self.view.scene.film), outlook.face)
+        )
+        return outlook, amplitude, self.kept.get(("field", layers, behind), lambda: squared(1.0 + amplitude))
 
 
 @dataclass(frozen=True)
@@ -64,6 +83,12 @@ class Meeting:
 
 def meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Meeting:
     """Send light from the lossless medium ``origin`` through coherent ``layers`` to ``behind``."""
+    if waves.view.scene.film in layers:
+        return _meet(waves, origin, layers, behind)
+    return waves.kept.get(("meet", origin, layers, behind), lambda: _meet(waves, origin, layers, behind))
+
+
+def _meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Meeting:
     outlook = waves.look(layers, behind)
     own = waves.own(origin)
     amplitude = reflection(own, outlook.face)
@@ -125,6 +150,10 @@ class Shell:
 
 def shell(waves: Waves, side: Side) -> Shell:
     """Fold the plates of ``side``, outermost first."""
+    return waves.kept.get(("shell", side), lambda: _shell(waves, side))
+
+
+def _shell(waves: Waves, side: Side) -> Shell:
     stages: list[_Stage] = []
     behind = side.outer
     for plate, coating in zip(reversed(side.plates), reversed(side.coatings), strict=True):

@@ -4,12 +4,14 @@ Media run from the outer medium above (position 0) to the one below. The film an
 the thin group; outside it stand plates, which carry intensities, with thin coatings between them.
 """
 
+from collections.abc import Hashable
 from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
+from optics.waves.shelf import digest
 from optics.waves.source import Film, Moments
 
 Real = NDArray[np.float64]
@@ -111,6 +113,13 @@ class Scene:
         highest: Real = np.max(real, axis=0)
         return highest
 
+    @cached_property
+    def halves(self) -> Hashable:
+        """A key of everything but the film's thickness: scenes that share it differ in nothing else."""
+        phase = self.phase.copy()
+        phase[self.film] = 0.0
+        return digest(self.index, self.loss, phase), self.film, self.sides, self.layers_up, self.layers_down
+
     def view(self, rows: Index) -> "View":
         """Return the scene at chosen wavelengths, shaped to broadcast over nodes."""
         return View(self, rows)
@@ -124,7 +133,7 @@ class View:
     """A scene at the wavelengths of some rows, (medium, row, 1)."""
 
     def __init__(self, scene: Scene, owner: Index) -> None:
-        self.scene = scene
+        self.scene, self.owner = scene, owner
         self.index = scene.index[:, owner, None]
         self.eps = scene.eps[:, owner, None]
         self.loss = scene.loss[:, owner, None]
