@@ -18,7 +18,7 @@ from optics.fate.wave import Settings
 from optics.spectrum import weights
 from optics.stack import Stack
 from optics.transport import depthray, depthwave
-from optics.transport.landing import AT, ENDS, Landing
+from optics.transport.landing import AT, ENDS, Landed
 from optics.waves.coherent import Real
 from optics.waves.paths import Index
 from optics.waves.source import uniform
@@ -169,18 +169,20 @@ def _matrix(
     width = np.diff(edges_nm) / edges_nm[-1]
     power, ends, scaled = _scaled(landing, width, ledger)
     clear = drawing.index[drawing.film].imag == 0.0
-    matrix = np.where(clear[:, None, None], 0.0, landing.matrix)
+    matrix = landing.matrix
+    matrix[clear] = 0.0
     own = power.T - ends.sum(axis=2) - matrix.sum(axis=2)
     ends, own = _unabsorbed(ends, own, clear, ledger)
     mended = _mended(matrix, own, power)
     spectrum = share @ power.T
     births_in = share[:, None] * power.T / spectrum
-    shares, ends = matrix / power.T[:, :, None], ends / power.T[:, :, None]
+    matrix /= power.T[:, :, None]
+    ends = ends / power.T[:, :, None]
     return DepthMatrix(
-        matrix=np.einsum("wi,wij->ij", births_in, shares),
+        matrix=np.einsum("wi,wij->ij", births_in, matrix),
         ends=np.einsum("wi,wie->ie", births_in, ends),
         rate_factor=spectrum / share.sum(),
-        by_wavelength=shares,
+        by_wavelength=matrix,
         ends_by_wavelength=ends,
         rate_by_wavelength=power,
         scaled_by=scaled,
@@ -188,13 +190,13 @@ def _matrix(
     )
 
 
-def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) -> Landing:
+def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) -> Landed:
     """Return what each wavelength's scene gives, wavelengths shared out among threads."""
     count, slices = len(drawing.wavelength_nm), len(edges_nm) - 1
-    whole = Landing.empty(slices, count)
+    whole = Landed.empty(slices, count)
     threads = max(1, min(settings.threads, count // 8))
 
-    def run(first: int) -> list[tuple[Index, Landing]]:
+    def run(first: int) -> list[tuple[Index, Landed]]:
         chosen = np.arange(first, count, threads)
         part = replace(drawing, wavelength_nm=drawing.wavelength_nm[chosen], index=drawing.index[:, chosen])
         out = []
@@ -211,7 +213,7 @@ def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) ->
     return whole
 
 
-def _scaled(landing: Landing, width: Real, ledger: Ledger) -> tuple[Real, Real, float]:
+def _scaled(landing: Landed, width: Real, ledger: Ledger) -> tuple[Real, Real, float]:
     """Return power and ends scaled so that even births give the ledger's, and the largest miss of a share."""
     rate = ledger.rate_factor
     power = landing.power * (rate / (width @ landing.power))

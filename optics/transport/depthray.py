@@ -8,25 +8,25 @@ import numpy as np
 from optics.fate import ray
 from optics.fate.exits import Response, light_lines, split_panels
 from optics.fate.trips import Network
-from optics.transport.landing import AT, ENDS, SEEN_FROM, Landing, gather, leave_group
-from optics.transport.slices import MOST_FADING
+from optics.transport.landing import AT, ENDS, SEEN_FROM, Landed, Landing, gather, leave_group
+from optics.transport.slices import MOST_FADING, gauss
 from optics.waves import curves
 from optics.waves.coherent import Real
-from optics.waves.paths import Index, fejer
+from optics.waves.paths import Index
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene
 
-ORDER = 32
-BLOCK = 1500
+ORDER = 16
+BLOCK = 300
 
 
-def land(scene: Scene, edges: Real) -> Landing:
+def land(scene: Scene, edges: Real) -> Landed:
     """Return where light from every slice lands, in units of the power radiated; ``edges`` as for waves."""
     seen = ray.real_film(scene)
     out = Landing.empty(edges.shape[1] - 1, scene.wavelengths)
     out.power[:] = 1.0
     edge, end = ray.edge_of_open(seen), seen.film_index.real
-    nodes, weights = fejer(ORDER)
+    nodes, weights = gauss(ORDER)
     step = max(1, BLOCK // len(nodes))
     for low, high, bound in ((np.zeros_like(edge), edge, False), (edge, end, True)):
         rows = curves.panels(*split_panels(low, high, light_lines(seen)))
@@ -35,22 +35,20 @@ def land(scene: Scene, edges: Real) -> Landing:
             u = np.broadcast_to(nodes, (len(part), len(nodes)))
             points = curves.on_crowded_panel(part, u, seen.film_index[part.owner, None])
             waves = Waves(seen.view(part.owner), points.q, points.short_of_film)
-            _add(out, waves, edges[part.owner], part.owner, points.slope * weights[:, 0], bound=bound)
-    return out
+            _add(out, waves, edges[part.owner], part.owner, points.slope * weights, bound=bound)
+    return out.landed(np.diff(edges, axis=1))
 
 
 @dataclass(frozen=True)
 class _Flights:
     """Means and absorptances of the slices for one block, (row, slice, node); depths from the upper face."""
 
-    reach_up: Real  # mean of exp(-t x) over a slice: what gets to the upper face
+    reach_up: Real  # integral of exp(-t x) over a slice: what gets to the upper face
     reach_down: Real
     lands_down: Real  # of light that starts down from the upper face
     lands_up: Real
     leaves_down: Real  # what leaves a slice downwards; with what lands below it, a product
     below: Real
-    leaves_up: Real
-    above: Real
 
 
 def _flights(edges: Real, slant: Real) -> _Flights:
@@ -60,14 +58,13 @@ def _flights(edges: Real, slant: Real) -> _Flights:
     taken = -np.expm1(-t * np.diff(x, axis=1))
     thick = t * np.diff(x, axis=1)
     mean = np.where(thick > 0.0, taken / np.where(thick > 0.0, thick, 1.0), 1.0)
+    mean *= np.diff(edges, axis=1)[:, :, None]  # amounts are those of a whole slice
     fade = np.exp(-t * x)
     rest = np.exp(-t * (1.0 - x[:, 1:]))
     # between slices exponents count from the middle; neighbours stay exact where they are cut, others get nothing
     from_middle = np.exp(np.minimum(t, 2.0 * MOST_FADING) * (0.5 - x))
     above, upper, lower = fade[:, :-1], from_middle[:, :-1], from_middle[:, 1:]
-    return _Flights(
-        mean * above, mean * rest, taken * above, taken * rest, mean / lower, taken * upper, mean * upper, taken / lower
-    )
+    return _Flights(mean * above, mean * rest, taken * above, taken * rest, mean / lower, taken * upper)
 
 
 def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *, bound: bool) -> None:
@@ -81,8 +78,7 @@ def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *,
     if dark:
         both = (0.5 * rays.launched.sum(axis=0) * weight)[:, None]
         with np.errstate(over="ignore"):  # in the triangles that mean nothing
-            gather(out.lower, owner, np.matmul(both * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
-            gather(out.upper, owner, np.matmul(both * flights.leaves_up, np.swapaxes(flights.above, 1, 2)))
+            gather(out.pairs, owner, np.matmul(both * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
     for polarisation in (0, 1):
         back = (rays.above.back[polarisation], rays.below.back[polarisation])
         half = 0.5 * rays.launched[polarisation] * weight

@@ -15,25 +15,28 @@ import numpy as np
 from optics.fate import wave
 from optics.fate.exits import light_lines, split_panels
 from optics.fate.wave import Settings
-from optics.transport.landing import ENDS, SEEN_FROM, Landing, end_amounts, gather
-from optics.transport.slices import Standing, from_above, from_below, path_means, standing
+from optics.transport.landing import ENDS, SEEN_FROM, Landed, Landing, end_amounts, gather
+from optics.transport.slices import Standing, from_above, from_below, gauss, path_means, standing
 from optics.waves import curves
 from optics.waves.coherent import Complex, Real, admittances, reflection, squared
 from optics.waves.curves import Points
 from optics.waves.modes import faces, find
-from optics.waves.paths import Index, Rows, fejer
+from optics.waves.paths import Index, Rows
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene, View
 from optics.waves.source import Film
 
-HALF_CELL = 16
-"""Order of the rule on each side of a guided line."""
+PER_LINE, PER_END = 12, 7
+"""Nodes on each side of a guided line, and towards an end of the bound zone."""
 
-BLOCK = 1500
+MANY_WIDTHS = 7.0
+"""Logarithm of the cell over the line's width beyond which twice as many nodes are needed."""
+
+BLOCK = 500
 """Nodes done at a time: with fifty slices the arrays stay in cache."""
 
 
-def land(scene: Scene, edges: Real, settings: Settings) -> Landing:
+def land(scene: Scene, edges: Real, settings: Settings) -> Landed:
     """Return where light from every slice lands, in units of the bulk power.
 
     Parameters
@@ -50,8 +53,7 @@ def land(scene: Scene, edges: Real, settings: Settings) -> Landing:
     for zone in (_open_nodes(scene, settings), _bound_nodes(scene)):
         for nodes in zone:
             _add(out, scene, edges, nodes)
-    width = np.diff(edges, axis=1)[:, :, None]
-    return Landing(out.power, out.lower / width, out.upper / width, out.returned / width, out.ends / width)
+    return out.landed(np.diff(edges, axis=1))
 
 
 @dataclass(frozen=True)
@@ -67,14 +69,14 @@ class Nodes:
 
 def _open_nodes(scene: Scene, settings: Settings) -> Iterator[Nodes]:
     owner, low, high = split_panels(np.zeros(scene.wavelengths), scene.open_end, light_lines(scene))
-    nodes, weights = fejer(wave.panel_order(scene, settings))
+    nodes, weights = gauss(settings.finer * max(16, wave.panel_order(scene, settings) // 2))
     rows = curves.panels(owner, low, high)
     step = max(1, BLOCK // len(nodes))
     for first in range(0, len(rows), step):
         part = rows.take(slice(first, first + step))
         u = np.broadcast_to(nodes, (len(part), len(nodes)))
         points = curves.on_panel(part, u, scene.film_index[part.owner, None])
-        yield Nodes(part.owner, points, points.slope * weights[:, 0], (0, 1), bound=False)
+        yield Nodes(part.owner, points, points.slope * weights, (0, 1), bound=False)
 
 
 def _bound_nodes(scene: Scene) -> Iterator[Nodes]:
@@ -82,22 +84,20 @@ def _bound_nodes(scene: Scene) -> Iterator[Nodes]:
     owner, polarisation, anchor, length, width = _half_cells(scene)
     if not len(owner):
         return
-    nodes, weights = fejer(HALF_CELL)
-    reach, wide = np.abs(length)[:, None], width[:, None]
-    sharp = wide > 0.0
-    top = np.arcsinh(reach / np.where(sharp, wide, 1.0))
-    away = np.where(sharp, wide * np.sinh(top * nodes), reach * nodes * nodes)
-    weight = np.where(sharp, wide * top * np.cosh(top * nodes), 2.0 * reach * nodes) * weights[:, 0]
-    q = anchor[:, None] + np.sign(length)[:, None] * away
-    # half cells of a wavelength and polarisation side by side; rows with fewer than others are filled with no weight
-    key, starts, counts = np.unique(2 * owner + polarisation, return_index=True, return_counts=True)
-    most = int(counts.max())
-    own = np.repeat(np.arange(len(key)), counts)
-    place = np.arange(len(owner)) - np.repeat(starts, counts)
-    spread = np.repeat(q[starts, :1], most * len(nodes), axis=1)
-    loads = np.zeros_like(spread)
-    spread.reshape(len(key), most, -1)[own, place] = q
-    loads.reshape(len(key), most, -1)[own, place] = weight
+    marks: list[Index] = []
+    at: list[Real] = []
+    weights: list[Real] = []
+    for sharp in (False, True):
+        which = np.flatnonzero((width > 0.0) == sharp)
+        q, weight = (
+            _about_lines(anchor[which], length[which], width[which])
+            if sharp
+            else _to_ends(anchor[which], length[which])
+        )
+        marks.append(np.repeat(2 * owner[which] + polarisation[which], q.shape[1]))
+        at.append(q.ravel())
+        weights.append(weight.ravel())
+    key, spread, loads = _side_by_side(np.concatenate(marks), np.concatenate(at), np.concatenate(weights))
     columns = min(BLOCK, spread.shape[1])
     for mode in (0, 1):
         chosen = np.flatnonzero(key % 2 == mode)
@@ -105,9 +105,39 @@ def _bound_nodes(scene: Scene) -> Iterator[Nodes]:
             part = chosen[first : first + max(1, BLOCK // columns)]
             mine = key[part] // 2
             for left in range(0, spread.shape[1], columns):
-                at, load = spread[part, left : left + columns], loads[part, left : left + columns]
-                points = Points(at, np.ones_like(at), scene.film_index[mine, None] - at)
+                nodes, load = spread[part, left : left + columns], loads[part, left : left + columns]
+                points = Points(nodes, np.ones_like(nodes), scene.film_index[mine, None] - nodes)
                 yield Nodes(mine, points, load, (mode,), bound=True)
+
+
+def _about_lines(line: Real, length: Real, width: Real) -> tuple[Real, Real]:
+    """Return nodes and weights, (cell, node), from lines of half width ``width`` on, to a signed ``length`` away."""
+    top = np.arcsinh(np.abs(length) / width)
+    nodes, weights = gauss(PER_LINE if top.max(initial=0.0) < MANY_WIDTHS else 2 * PER_LINE)
+    turn, wide = top[:, None] * nodes, width[:, None]
+    return line[:, None] + np.sign(length)[:, None] * wide * np.sinh(turn), wide * top[:, None] * np.cosh(
+        turn
+    ) * weights
+
+
+def _to_ends(end: Real, length: Real) -> tuple[Real, Real]:
+    """Return nodes and weights, (cell, node), from ends of the zone on, where square roots may sit."""
+    nodes, weights = gauss(PER_END)
+    reach = length[:, None]
+    return end[:, None] + reach * nodes * nodes, np.abs(reach) * 2.0 * nodes * weights
+
+
+def _side_by_side(key: Index, q: Real, weight: Real) -> tuple[Index, Real, Real]:
+    """Stand nodes of a key in a row, (key, node); rows with fewer than others are filled with nodes of no weight."""
+    order = np.argsort(key, kind="stable")
+    key, q, weight = key[order], q[order], weight[order]
+    keys, starts, counts = np.unique(key, return_index=True, return_counts=True)
+    own = np.repeat(np.arange(len(keys)), counts)
+    place = np.arange(len(key)) - np.repeat(starts, counts)
+    spread = np.repeat(q[starts, None], int(counts.max()), axis=1)
+    loads = np.zeros_like(spread)
+    spread[own, place], loads[own, place] = q, weight
+    return keys, spread, loads
 
 
 def landing_end(scene: Scene) -> Real:
@@ -185,17 +215,17 @@ def _power(scene: Scene, edges: Real, settings: Settings) -> Real:
     dark = np.flatnonzero(scene.film_index.imag > 0.0)
     risers = wave.riser_rows(scene, dark, scene.far_end) if len(dark) else dips.take(dark)
     for rows, curve, order in (
-        (dips, curves.on_dip, wave.path_order(scene, settings)),
-        (risers, curves.on_riser, 32 * settings.finer),
+        (dips, curves.on_dip, wave.path_order(scene, settings) * 5 // 8),
+        (risers, curves.on_riser, 20 * settings.finer),
     ):
-        nodes, weights = fejer(order)
+        nodes, weights = gauss(order)
         step = max(1, BLOCK // len(nodes))
         for first in range(0, len(rows), step):
             part = rows.take(slice(first, first + step))
             width = (part.stop - part.start)[:, None]
             view = scene.view(part.owner)
             points = curve(part, part.start[:, None] + width * nodes, view.film.index)
-            value = _power_on_path(view, edges[part.owner], points, width * weights[:, 0])
+            value = _power_on_path(view, edges[part.owner], points, width * weights)
             np.add.at(out.T, part.owner, value)
     return out
 
@@ -299,8 +329,7 @@ def _add_block(
     load = block.send * strength
     with np.errstate(over="ignore"):  # in the triangles that mean nothing
         pairs = np.matmul(up * (load * block.take)[:, None], np.swapaxes(down, 1, 2))
-    gather(out.lower, owner, pairs)
-    gather(out.upper, owner, np.swapaxes(pairs, 1, 2))
+    gather(out.pairs, owner, pairs)
     _add_ends(out, owner, (up, down), (up, down), ends, load)
     if block.upright.any():
         nothing = np.zeros_like(block.plain)
@@ -308,8 +337,10 @@ def _add_block(
         more_down = block.of(None, mirrors[1], block.upright, nothing)
         taken = (strength * block.take)[:, None]
         with np.errstate(over="ignore"):
-            gather(out.lower, owner, np.matmul(more_up * taken, np.swapaxes(down, 1, 2)))
-            gather(out.upper, owner, np.matmul(more_down * taken, np.swapaxes(up, 1, 2)))
+            below = np.matmul(more_up * taken, np.swapaxes(down, 1, 2))
+            gather(out.pairs, owner, below)
+            above = np.matmul(more_down * taken, np.swapaxes(up, 1, 2))
+            gather(out.above, owner, above - np.swapaxes(below, 1, 2))
         _add_ends(out, owner, (more_up, more_down), (up, down), ends, strength)
 
 

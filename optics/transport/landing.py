@@ -22,22 +22,26 @@ SEEN_FROM = (len(ENDS), len(ENDS) + 1)
 
 @dataclass(frozen=True)
 class Landing:
-    """Amounts in units of the bulk power; births spread evenly over each slice.
+    """Amounts in units of the bulk power, each that of a birth slice as a whole, summed up node by node.
 
     Attributes
     ----------
     power
-        What births in each slice radiate, (slice, wavelength).
-    lower, upper, returned
-        What the film takes below and above the slice of birth, and of light that plates send back, (wavelength, birth
-        slice, landing slice); only their triangles mean anything in the first two.
+        What births in each slice radiate, a mean over it, (slice, wavelength).
+    pairs
+        What the film takes below the slice of birth, (wavelength, birth slice, landing slice); above the diagonal alone
+        it means anything. What it takes above the slice of birth is the same with the slices exchanged.
+    above
+        What comes to the latter where sending and taking are not alike; below the diagonal alone it means anything.
+    returned
+        What the film takes of light that faces and plates send back, of the same shape.
     ends
         What every other end takes, (wavelength, birth slice, end).
     """
 
     power: Real
-    lower: Real
-    upper: Real
+    pairs: Real
+    above: Real
     returned: Real
     ends: Real
 
@@ -48,17 +52,44 @@ class Landing:
         ends = np.zeros((wavelengths, slices, len(ENDS)))
         return cls(np.zeros((slices, wavelengths)), np.zeros(square), np.zeros(square), np.zeros(square), ends)
 
-    def put(self, at: Index, part: "Landing") -> None:
-        """Take over some wavelengths."""
-        self.power[:, at] = part.power
-        self.lower[at], self.upper[at], self.returned[at] = part.lower, part.upper, part.returned
-        self.ends[at] = part.ends
+    def landed(self, width: Real) -> "Landed":
+        """Return all of it per unit of ``width``, (wavelength, slice)."""
+        slices = np.arange(width.shape[1])
+        below = slices[:, None] < slices
+        matrix = np.where(below, self.pairs, np.swapaxes(self.pairs, 1, 2))
+        matrix[:, slices, slices] = 0.0
+        if self.above.any():
+            matrix += np.where(below.T, self.above, 0.0)
+        if self.returned.any():
+            matrix += self.returned
+        matrix /= width[:, :, None]
+        return Landed(self.power, matrix, self.ends / width[:, :, None])
 
-    @property
-    def matrix(self) -> Real:
-        """What the film takes, (wavelength, birth slice, landing slice), but for light landing where it was born."""
-        whole: Real = np.tril(self.upper, -1) + np.triu(self.lower, 1) + self.returned
-        return whole
+
+@dataclass(frozen=True)
+class Landed:
+    """Amounts in units of the bulk power for births spread evenly over each slice.
+
+    ``power`` is (slice, wavelength), ``matrix`` what the film takes, (wavelength, birth slice, landing slice), but for
+    light that lands where it was born, and ``ends`` (wavelength, birth slice, end).
+    """
+
+    power: Real
+    matrix: Real
+    ends: Real
+
+    @classmethod
+    def empty(cls, slices: int, wavelengths: int) -> "Landed":
+        """Return room for some wavelengths."""
+        return cls(
+            np.empty((slices, wavelengths)),
+            np.empty((wavelengths, slices, slices)),
+            np.empty((wavelengths, slices, len(ENDS))),
+        )
+
+    def put(self, at: Index, part: "Landed") -> None:
+        """Take over some wavelengths."""
+        self.power[:, at], self.matrix[at], self.ends[at] = part.power, part.matrix, part.ends
 
 
 def end_amounts(

@@ -6,6 +6,7 @@ e^(-2 Im kz a), and the real and imaginary part of e^(2 i Re kz a): their integr
 """
 
 from dataclasses import dataclass
+from functools import cache
 from typing import Any
 
 import numpy as np
@@ -14,6 +15,13 @@ from optics.waves.coherent import Complex, Real, squared
 
 MOST_FADING = 690.0
 """Exponents beyond which exp overflows; films this dark pass nothing from slice to slice."""
+
+
+@cache
+def gauss(order: int) -> tuple[Real, Real]:
+    """Return nodes on (0, 1) and weights of the Gauss-Legendre rule."""
+    nodes, weights = np.polynomial.legendre.leggauss(order)
+    return 0.5 + 0.5 * nodes, 0.5 * weights
 
 
 @dataclass(frozen=True)

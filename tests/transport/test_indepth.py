@@ -52,7 +52,7 @@ def test_even_births_reproduce_the_ledger_and_rows_add_to_one(media):
         assert matrix.by_wavelength.min() >= 0.0
         # what was summed here agrees with the ledger before it was scaled to it; leaky lines by a metal are sharp
         metal = np.real(media[-1][0]) < 1.0
-        assert matrix.scaled_by < (2e-3 if metal else 1e-4 if model == "wave" else 1e-6)
+        assert matrix.scaled_by < (1e-2 if metal else 1e-4 if model == "wave" else 1e-6)
 
 
 @pytest.mark.parametrize("model", ["wave", "ray"])
@@ -113,7 +113,7 @@ def test_rays_without_interfaces_are_differences_of_exponential_integrals(k):
     stack = stack_of([(2.5 + 1j * k, 500)], above=2.5, below=2.5, wavelengths_nm=[770.0])
     found = indepth(stack, slices=10)
     expected = exchange(found.edges_nm, 4 * np.pi * k * 500 / 770)
-    assert found.ray.matrix == pytest.approx(expected, abs=2e-5)  # the rule over angles near the grazing ones
+    assert found.ray.matrix == pytest.approx(expected, abs=5e-5)  # the rule over angles near the grazing ones
 
 
 def test_waves_far_from_faces_come_near_the_same_limit():
