@@ -25,11 +25,18 @@ def normal_on_axis(eps: Complex, q: Real) -> Complex:
 
     The principal root is the right one because Im eps >= 0; its cut is never crossed on the real axis.
     """
-    gap = eps - q * q
     # a node may round to a layer's own light line, where the layer's admittance would be an exact zero over zero
-    gap += 1e-300
-    root: Complex = np.sqrt(gap)
-    return root
+    if eps.imag.any():
+        gap = eps - q * q
+        gap += 1e-300
+        root: Complex = np.sqrt(gap)
+        return root
+    height = eps.real - q * q
+    height += 1e-300
+    clear = np.empty(height.shape, dtype=complex)
+    np.sqrt(np.maximum(height, 0.0), out=clear.real)
+    np.sqrt(np.maximum(-height, 0.0), out=clear.imag)
+    return clear
 
 
 def normal_inside(eps: Complex, q: Complex) -> Complex:
