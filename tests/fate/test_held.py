@@ -211,3 +211,10 @@ def test_more_round_trips_than_are_counted_run_into_the_averaged_decay():
     shares = [place(ends_of(media, to_edge_mm=mm), "held", "edged", "at_edge") for mm in (2.1, 2.2, 2.3, 2.4)]
     steps = np.diff(np.log(shares))
     assert np.ptp(steps) < 0.15 * abs(steps.mean())
+
+
+def test_a_node_on_a_thin_layers_light_line_is_no_hole():
+    """The middle of a panel from 1.38 to 1.52 is 1.45, to the last digit."""
+    media = [(1, 0), (1.38, 3e4, "plate"), (1.7, 20), (1.45, 5), (1.52, 3e4, "plate"), (1, 0)]
+    ends = ends_of(media, film=2, free=(False, False), to_edge_mm=0)
+    assert largest_gap(ends) < ADDING_UP
