@@ -31,6 +31,9 @@ if TYPE_CHECKING:
 SLICES = 20
 """Slices of the depth matrix where nothing is said."""
 
+WORTH_SAYING = 1e-5
+"""Difference of kernel and ledger that deserves a warning; numerical errors are below it."""
+
 TAKEN = "taken:"
 """How the columns of modes begin that say what a layer absorbs."""
 
@@ -112,13 +115,25 @@ def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, setting
         result,
         tables,
         numbers_of(result, read) | plane_numbers(plane),
-        _once(result.warnings, plane.warnings, depth.warnings),
+        _once(result.warnings, plane.warnings, depth.warnings, _unkerneled(result, plane)),
         _once(result.assumptions, later, (_sample_said(stack),)),
     )
 
 
 def _once(*sentences: tuple[str, ...]) -> tuple[str, ...]:
     return tuple(dict.fromkeys(each for part in sentences for each in part))
+
+
+def _unkerneled(result: Result, plane: InPlane) -> tuple[str, ...]:
+    """Say so where the kernel in the plane holds less or more than the ledger's film share."""
+    whole = result.averages["reabsorbed"] + result.averages["guided_reabsorbed"]
+    found = plane.averages["taken_back"]
+    if abs(found - whole) < WORTH_SAYING:
+        return ()
+    return (
+        f"the kernel in the plane holds {found:.4f} of the births, the film takes back {whole:.4f}: the rest is bound "
+        "light that neither modes nor rays of the film carry, and has no distance",
+    )
 
 
 def _sample_said(stack: Stack) -> str:

@@ -301,6 +301,16 @@ def test_a_pump_hands_over_its_births_over_depth_and_carriers(home):
     assert not [name for name in found.numbers if not handoff.numbers({name: 1.0})[0].column.meaning]
 
 
+def test_a_kernel_that_lacks_light_is_warned_of_and_others_are_not(handed, tmp_path):
+    assert not [line for line in handed.warnings if "kernel in the plane" in line]
+    assert handed.numbers["inplane_taken_back"] == pytest.approx(handed.numbers["taken_back"], abs=1e-6)
+    stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
+    # a film of low index under a contact of high index: light bound by the contact alone
+    found = hand_over(stack.with_layer("film", material=1.2 + 0.02j, thickness_nm=300.0))
+    lacking = abs(found.numbers["inplane_taken_back"] - found.numbers["taken_back"]) > 1e-5
+    assert lacking == any("kernel in the plane" in line for line in found.warnings)
+
+
 def test_a_stack_without_a_coefficient_still_hands_over_the_factors(tmp_path):
     stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
     table = hand_over(stack).tables["radiative"]
