@@ -4,10 +4,16 @@ from typing import Any
 
 import numpy as np
 
-from optics.fate.ledger import SHARES
-from optics.fate.solve import Result, solve
+from optics.fate.account import ledger_of
+from optics.fate.advice import advise
+from optics.fate.births import born_inside
+from optics.fate.drawing import drawing_of
+from optics.fate.ledger import SHARES, Ledger
 from optics.fate.wave import Settings
+from optics.roughness import graded
+from optics.spectrum import weights
 from optics.stack import Stack
+from optics.waves.coherent import Real
 
 ONE_THREAD = Settings(threads=1)
 RAY = "ray_"
@@ -33,19 +39,44 @@ Answer = dict[str, Any]
 def answer(stack: Stack, *, spectra: bool = False) -> Answer:
     """Solve a stack and return `FIGURES` and `WORDS`, with ``spectra`` also `SPECTRAL` columns as lists.
 
-    One thread does the work: studies share the cores between processes.
+    The numbers are those of `optics.solve`, without its tables. One thread does the work: studies share the cores
+    between processes.
     """
-    return answer_of(solve(stack, settings=ONE_THREAD), spectra=spectra)
+    smooth = graded(stack)
+    drawing = drawing_of(smooth)
+    models = ("ray",) if stack.film.plate else ("wave", "ray")
+    ledgers = {model: ledger_of(drawing, ONE_THREAD, model=model) for model in models}
+    lead, ledger = next(iter(ledgers.items()))
+    born = born_inside(smooth, drawing, ledger, model=lead, settings=ONE_THREAD).per_nm
+    steps = weights(drawing.wavelength_nm)
+    figures = _averages(ledger, born * steps)
+    figures |= {f"{RAY}{name}": value for name, value in _averages(ledgers["ray"], born * steps).items()}
+    figures |= {"numerical_error": ledger.error.max(), "largest_closure": np.abs(ledger.closure).max()}
+    film = drawing.index[drawing.film]
+    advised, _ = advise(drawing.wavelength_nm, born * steps, film, stack.film.thickness_nm)
+    words = {"model": lead, "advised_model": "ray" if stack.film.plate else advised}
+    found: Answer = {name: float(figures[name]) for name in FIGURES} | words
+    if spectra:
+        found["spectra"] = _spectra(drawing.wavelength_nm, ledger, born, steps)
+    return found
 
 
-def answer_of(result: Result, *, spectra: bool = False) -> Answer:
-    """Return the answer that a solved stack gives; see `answer`."""
-    table = result.ray_table if result.table is None else result.table
-    figures = {share: result.averages[share] for share in SHARES}
-    figures["rate_factor"] = result.averages["rate_factor"]
-    figures |= {f"{RAY}{share}": result.ray_averages[share] for share in SHARES}
-    figures["numerical_error"] = result.numerical_error
-    figures["largest_closure"] = float(np.abs(table["closure"]).max())
-    words = {"model": "ray" if result.table is None else "wave", "advised_model": result.advised_model}
-    columns = {name: table[name].tolist() for name in SPECTRAL} if spectra else None
-    return {name: float(value) for name, value in figures.items()} | words | ({"spectra": columns} if spectra else {})
+def _averages(ledger: Ledger, births: Real) -> dict[str, float]:
+    """Return averages over photons born, ``births`` being those per unit rate factor, and the mean rate factor."""
+    weight = births * ledger.rate_factor
+    weight = weight / weight.sum()
+    shares = {name: float(weight @ ledger.shares[name]) for name in SHARES}
+    return shares | {"rate_factor": float(births @ ledger.rate_factor)}
+
+
+def _spectra(wavelength_nm: Real, ledger: Ledger, born: Real, steps: Real) -> dict[str, list[float]]:
+    per_nm = born * ledger.rate_factor
+    per_nm = per_nm / (per_nm @ steps)
+    columns = {
+        "wavelength_nm": wavelength_nm,
+        "births_per_nm": per_nm,
+        "birth_weight": per_nm * steps,
+        "rate_factor": ledger.rate_factor,
+        **ledger.shares,
+    }
+    return {name: columns[name].tolist() for name in SPECTRAL}

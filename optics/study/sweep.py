@@ -14,6 +14,7 @@ from optics.study.answer import FIGURES, SPECTRAL, WORDS, Answer, answer
 from optics.study.axes import Points, from_cases, from_values
 from optics.study.engine import Place, run
 from optics.study.keypath import all_changed, without_doubts
+from optics.waves.shelf import shelved
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -116,7 +117,8 @@ def sweep(
 def work(packed: Packed) -> list[Answer]:
     """Return the answers of some points; what a worker does."""
     stack, points, spectra = packed
-    return [answer(all_changed(stack, values), spectra=kept) for values, kept in zip(points, spectra, strict=True)]
+    with shelved():  # where only the film's thickness moves, the halves of the group stay
+        return [answer(all_changed(stack, values), spectra=kept) for values, kept in zip(points, spectra, strict=True)]
 
 
 def row(plan: Plan, point: int, found: Answer) -> dict[str, Any]:
