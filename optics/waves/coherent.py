@@ -20,6 +20,11 @@ def squared(z: Complex) -> Real:
     return z.real * z.real + z.imag * z.imag
 
 
+OFF_THE_LINE = 1e-16
+"""Added to the square of a normal wave number, below its rounding: the wave is then large enough to count beside the
+admittance of what stands behind its layer."""
+
+
 def normal_on_axis(eps: Complex, q: Real) -> Complex:
     """Return the normal wave number sqrt(eps - q^2) for real ``q``, the root with Im >= 0.
 
@@ -28,11 +33,11 @@ def normal_on_axis(eps: Complex, q: Real) -> Complex:
     # a node may round to a layer's own light line, where the layer's admittance would be an exact zero over zero
     if eps.imag.any():
         gap = eps - q * q
-        gap += 1e-300
+        gap += OFF_THE_LINE
         root: Complex = np.sqrt(gap)
         return root
     height = eps.real - q * q
-    height += 1e-300
+    height += OFF_THE_LINE
     clear = np.empty(height.shape, dtype=complex)
     np.sqrt(np.maximum(height, 0.0), out=clear.real)
     np.sqrt(np.maximum(-height, 0.0), out=clear.imag)
