@@ -21,6 +21,7 @@ ROOT = Path(__file__).resolve().parents[2]
 COMMANDS = {
     "start": ["start"],
     "solve": ["solve"],
+    "handoff": ["handoff"],
     "material list": ["material", "list"],
     "material show": ["material", "show"],
     "material import": ["material", "import"],
