@@ -23,7 +23,7 @@ if TYPE_CHECKING:
     from optics.media.tail import Tail
     from optics.output.handoff import write_handoff
     from optics.output.result import write_result
-    from optics.output.transport import write_indepth, write_inplane
+    from optics.output.transport import write_indepth, write_inplane, write_receivers
     from optics.radiation import FromAbsorption, equilibrium_rate
     from optics.sample import NearField, PerWavelength, Sample
     from optics.spectrum import Gaussian, SpectrumTable
@@ -34,6 +34,7 @@ if TYPE_CHECKING:
     from optics.transport.guided import guided_modes
     from optics.transport.handover import Handover, hand_over
     from optics.transport.inplane import InPlane, inplane
+    from optics.transport.receivers import Receivers, receivers
 
     __version__: str
 
@@ -55,6 +56,7 @@ __all__ = [
     "Outer",
     "PerWavelength",
     "Pump",
+    "Receivers",
     "Result",
     "Sample",
     "Sampled",
@@ -75,11 +77,13 @@ __all__ = [
     "parse_stack",
     "read_stack",
     "read_table",
+    "receivers",
     "sampled",
     "solve",
     "write_handoff",
     "write_indepth",
     "write_inplane",
+    "write_receivers",
     "write_result",
     "write_stack",
     "yields_of",
@@ -103,6 +107,7 @@ _HOMES = {
     "Outer": "optics.stack:Outer",
     "PerWavelength": "optics.sample:PerWavelength",
     "Pump": "optics.depth:Pump",
+    "Receivers": "optics.transport.receivers:Receivers",
     "Result": "optics.fate.solve:Result",
     "Sample": "optics.sample:Sample",
     "Sampled": "optics.fate.sampled:Sampled",
@@ -123,11 +128,13 @@ _HOMES = {
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
     "read_table": "optics.media.labfile:read_table",
+    "receivers": "optics.transport.receivers:receivers",
     "sampled": "optics.fate.sampled:sampled",
     "solve": "optics.fate.solve:solve",
     "write_handoff": "optics.output.handoff:write_handoff",
     "write_indepth": "optics.output.transport:write_indepth",
     "write_inplane": "optics.output.transport:write_inplane",
+    "write_receivers": "optics.output.transport:write_receivers",
     "write_result": "optics.output.result:write_result",
     "write_stack": "optics.stackfile.writing:write_stack",
     "yields_of": "optics.fate.implied:yields_of",

@@ -18,6 +18,7 @@ def assumptions(stack: Stack) -> tuple[str, ...]:
     said = [_outer("above", stack.above), _outer("below", stack.below)]
     said += [sentence for layer in stack.layers if (sentence := _plate(layer))]
     said += [_births(stack), _seen(stack)]
+    said += [sentence] if (sentence := _several(stack)) else []
     said += spectrum_notes(stack.light.spectrum, stack.light.wavelengths_nm)
     said += _indices(stack)
     said += [sentence for layer in stack.layers for sentence in _tail(layer)]
@@ -66,6 +67,15 @@ def _alternatives(alternatives: Sequence[Alternatives]) -> list[str]:
         f"{', '.join(material.name for material in each.materials)}"
         for each in alternatives
     ]
+
+
+def _several(stack: Stack) -> str:
+    """Say which layers emit, where several do."""
+    emitting = [layer for layer in stack.layers if layer.emits]
+    if len(emitting) < 2:
+        return ""
+    shares = ", ".join(f"{layer.name} {layer.births_share:g}" for layer in emitting)
+    return f"births are shared out among layers that emit ({shares}), all with the same spectrum and depth"
 
 
 def _births(stack: Stack) -> str:

@@ -18,6 +18,8 @@ THICKNESS_TO_NM: dict[str, Callable[[float], Any]] = {
 THICKNESS_EXAMPLES = {"thickness_nm": 480, "thickness_um": 0.48, "thickness_mm": 1.1}
 LONGEST_NAME = 60  # characters that columns and figures have room for
 OUTER_NAMES = ("above", "below")
+SHARED_KEYS = ("births_share", "receives")  # of stacks with several emitting or receiving layers
+BIRTHS_SLACK = 1e-6  # shares written in decimals may miss one by that much
 MOST_UNEVEN = 1.0 / 6.0  # standard deviation over thickness: six of them stay inside the film
 
 Phases: TypeAlias = Literal["keep", "ignore"]
@@ -46,6 +48,10 @@ class Layer:
         For the emitting layer: standard deviation of its thickness within the spot [nm]; answers are the mean over it.
     tail
         What to put in the place of an absorption floor of its material; None leaves the material as it is.
+    births_share
+        Where several layers emit: the share of all photons that are born in this one.
+    receives
+        Whether what it absorbs of the film's light is asked for by name, as of a solar cell below or a second film.
     """
 
     name: str
@@ -56,6 +62,8 @@ class Layer:
     roughness_nm: float = 0.0
     varies_nm: float = 0.0
     tail: Tail | None = None
+    births_share: float | None = None
+    receives: bool = False
 
     def __post_init__(self) -> None:
         faults = Faults(layer_place(self.name))
@@ -63,6 +71,9 @@ class Layer:
         faults.settle()
         object.__setattr__(self, "thickness_nm", float(self.thickness_nm))
         object.__setattr__(self, "emits", bool(self.emits))
+        object.__setattr__(self, "receives", bool(self.receives))
+        if self.births_share is not None:
+            object.__setattr__(self, "births_share", float(self.births_share))
         object.__setattr__(self, "roughness_nm", float(self.roughness_nm))
         object.__setattr__(self, "varies_nm", float(self.varies_nm))
 
@@ -130,6 +141,8 @@ def check_layer(
     roughness_nm: object = 0.0,
     varies_nm: object = 0.0,
     tail: object = None,
+    births_share: object = None,
+    receives: object = False,
 ) -> None:
     """Note what is wrong with the parts of one layer."""
     faults.text("name", name, expected='a short text, for example "film"', longest=LONGEST_NAME)
@@ -142,6 +155,11 @@ def check_layer(
         faults.choice("phases", phases, ("keep", "ignore"))
     faults.number("roughness_nm", roughness_nm, unit="nm", at_least=0, example=5)
     _check_varies(faults, varies_nm, thickness_nm, emits)
+    faults.flag("receives", receives)
+    if births_share is not None:
+        faults.number("births_share", births_share, above=0, at_most=1, example=0.7)
+        if not emits:
+            faults.add("births_share", "found in a layer that does not emit; set emits = true in it")
     if tail is not None and not isinstance(tail, Tail):
         faults.add("tail", f"found {found(tail)}, expected a Tail")
     elif tail is not None and isinstance(material, Material):

@@ -11,10 +11,12 @@ from optics.byvalue import FloatArray
 from optics.collection import Collection
 from optics.depth import Depth, check_depth, check_depth_in_film, opposite, turned
 from optics.errors import InputError
-from optics.faults import Faults, cut
+from optics.faults import Faults, as_float, cut, is_number
+from optics.layer import BIRTHS_SLACK
 from optics.layer import LONGEST_NAME as LONGEST_NAME
 from optics.layer import OUTER_NAMES as OUTER_NAMES
 from optics.layer import PLATE_LIMIT_NM as PLATE_LIMIT_NM
+from optics.layer import SHARED_KEYS as SHARED_KEYS
 from optics.layer import THICKNESS_EXAMPLES as THICKNESS_EXAMPLES
 from optics.layer import THICKNESS_TO_NM as THICKNESS_TO_NM
 from optics.layer import CountsAs as CountsAs
@@ -77,7 +79,7 @@ class Stack:
     above, below
         The outer media.
     layers
-        From above to below; one of them emits.
+        From above to below; one of them emits, or several with a `births_share` each.
     light
         Wavelengths and birth spectrum.
     emission
@@ -122,7 +124,12 @@ class Stack:
             faults.kind("sample", self.sample, Sample)
         faults.settle()
         check_title(faults, self.title)
-        check_layers(faults, names=[layer.name for layer in self.layers], emits=[layer.emits for layer in self.layers])
+        check_layers(
+            faults,
+            names=[layer.name for layer in self.layers],
+            emits=[layer.emits for layer in self.layers],
+            births=[layer.births_share for layer in self.layers],
+        )
         check_media(faults, media=self.media, wavelengths_nm=self.light.wavelengths_nm)
         faults.settle()
         check_depth_in_film(
@@ -140,7 +147,7 @@ class Stack:
 
     @property
     def film_index(self) -> int:
-        """Place of the emitting layer, counted from above, the first being 0."""
+        """Place of the emitting layer (of several, the uppermost), counted from above, the first being 0."""
         return next(place for place, layer in enumerate(self.layers) if layer.emits)
 
     @property
@@ -171,7 +178,18 @@ class Stack:
             raise InputError(f"{layer_place(name)}: not in this stack, which has {', '.join(names)}")
         faults = Faults(layer_place(name))
         faults.known_keys(
-            changes, ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "varies_nm", "tail")
+            changes,
+            (
+                "name",
+                "material",
+                *THICKNESS_TO_NM,
+                "emits",
+                "phases",
+                "roughness_nm",
+                "varies_nm",
+                "tail",
+                *SHARED_KEYS,
+            ),
         )
         given = [key for key in THICKNESS_TO_NM if key in changes]
         if len(given) > 1:
@@ -195,7 +213,12 @@ class Stack:
             raise InputError(f"{layer_place(name)}: not in this stack")
         emitting = {layer.name: layer.name == name for layer in self.layers}
         layers = (
-            replace(layer, emits=emitting[layer.name], varies_nm=layer.varies_nm if emitting[layer.name] else 0.0)
+            replace(
+                layer,
+                emits=emitting[layer.name],
+                varies_nm=layer.varies_nm if emitting[layer.name] else 0.0,
+                births_share=None,
+            )
             for layer in self.layers
         )
         return replace(self, layers=tuple(layers))
@@ -263,7 +286,7 @@ def check_title(faults: Faults, title: object) -> None:
     faults.text("title", title, expected="a line of text", longest=LONGEST_TITLE, empty=True)
 
 
-def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool]) -> None:
+def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool], births: Sequence[object] = ()) -> None:
     """Note what is wrong with the layers taken together."""
     if not names:
         faults.add("layer", "found no layer, expected at least one; begin each with [[layer]]")
@@ -275,8 +298,20 @@ def check_layers(faults: Faults, *, names: Sequence[str], emits: Sequence[bool])
         faults.add(
             "layer", f"emits: no layer emits, expected one; set emits = true in one of {', '.join(map(cut, names))}"
         )
-    if len(emitting) > 1:
-        faults.add("layer", f"emits: {len(emitting)} layers emit ({', '.join(emitting)}), expected one")
+    shares = [births[place] for place, emit in enumerate(emits) if emit and place < len(births)]
+    _check_births(faults, emitting, [share for share in shares if share is not None])
+
+
+def _check_births(faults: Faults, emitting: Sequence[str], shares: Sequence[object]) -> None:
+    """Note several layers that emit without a share of the births each, or shares that do not add to one."""
+    if len(emitting) > 1 and len(shares) < len(emitting):
+        said = f"{len(emitting)} layers emit ({', '.join(emitting)}), expected one"
+        faults.add("layer", f"emits: {said}, or births_share in each of them")
+        return
+    numbers = [as_float(share) for share in shares if is_number(share)]
+    total = sum(numbers)
+    if numbers and len(numbers) == len(shares) and abs(total - 1.0) > BIRTHS_SLACK:
+        faults.add("layer", f"births_share: the shares add to {total:.6g}, expected 1 over the layers that emit")
 
 
 def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], wavelengths_nm: FloatArray) -> None:

@@ -19,6 +19,7 @@ COMMANDS = (  # in the order in which people meet them
     "audit",
     "inplane",
     "indepth",
+    "receivers",
     "handoff",
     "material",
 )

@@ -5,6 +5,7 @@ from dataclasses import replace
 import numpy as np
 
 from optics.depth import Decay, DepthTable, Pump, Sheet, in_film
+from optics.errors import InputError
 from optics.fate.pump import Pumped, pumped
 from optics.fate.scenes import Drawing
 from optics.fate.uneven import Rule, rules
@@ -50,8 +51,14 @@ def drawing_of(stack: Stack) -> Drawing:
     Raises
     ------
     InputError
-        Where a material's table does not reach, or a pump does not get to the film.
+        Where a material's table does not reach, a pump does not get to the film, or several layers emit.
     """
+    emitting = [layer.name for layer in stack.layers if layer.emits]
+    if len(emitting) > 1:
+        raise InputError(
+            f"layer: emits: {len(emitting)} layers emit ({', '.join(emitting)}), expected one here; the command "
+            "receivers (in Python: optics.receivers) follows each of them"
+        )
     return replace(drawn(stack, stack.light.wavelengths_nm), moments=profile_of(stack))
 
 

@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from optics.stack import Stack
     from optics.transport.depth import InDepth
     from optics.transport.inplane import InPlane
+    from optics.transport.receivers import Receivers
     from optics.waves.coherent import Real
 
 SUMMARY = "summary.json"
@@ -72,7 +73,16 @@ def write_indepth(
     )
 
 
-def _said(found: "InPlane | InDepth") -> dict[str, Any]:
+def write_receivers(
+    found: "Receivers", folder: str | Path, *, stack_file: str | Path | None = None, replace: bool = False
+) -> Path:
+    """Write a result folder of `optics.receivers`, whole or not at all; see `optics.write_result`."""
+    tables = {"receivers.csv": found.table, "receivers_by_wavelength.csv": found.by_wavelength}
+    summary = {"models": found.models, **_said(found)}
+    return _write(found.stack, Path(folder), "receivers", None, tables, summary, stack_file, replace=replace)
+
+
+def _said(found: "InPlane | InDepth | Receivers") -> dict[str, Any]:
     return {"title": found.stack.title, "warnings": found.warnings, "assumptions": found.assumptions}
 
 
@@ -80,7 +90,7 @@ def _write(
     stack: "Stack",
     folder: Path,
     command: str,
-    drawn: "Figure",
+    drawn: "Figure | None",
     tables: dict[str, Any],
     summary: dict[str, Any],
     stack_file: str | Path | None,
@@ -90,13 +100,14 @@ def _write(
     from optics.output.figures import save
 
     source = None if stack_file is None else Path(stack_file)
-    figures = tuple(f"{command}.{kind}" for kind in ("svg", "png"))
+    figures = () if drawn is None else tuple(f"{command}.{kind}" for kind in ("svg", "png"))
     with writing(folder, replace=replace) as part:
         for name, table in tables.items():
             write_table(table, part / name)
         write_json(summary, part / SUMMARY)
-        for name in figures:
-            save(drawn, part / name)
+        if drawn is not None:
+            for name in figures:
+                save(drawn, part / name)
         copy_inputs(stack, part, stack_file=source, taken=(*tables, *figures, SUMMARY, RECORD, STACK_FILE))
         write_record(part, command=command, inputs=inputs_of(stack, source), settings=settings_of(stack))
     return folder
@@ -167,7 +178,25 @@ def indepth_report(found: "InDepth", folder: Path) -> str:
     return "\n".join([*lines, "", f"Files: {folder}"])
 
 
-def _heading(found: "InPlane | InDepth") -> list[str]:
+def receivers_report(found: "Receivers", folder: Path) -> str:
+    """Return what the screen shows of several receivers: a column a source, a row an end."""
+    table = found.table.set_index("source")
+    if len(table) == 2:
+        table = table.iloc[:1]  # one source is all there is
+    wide = max(12, *(len(str(name)) + 2 for name in table.index))
+    lines = [
+        *_heading(found),
+        "Share of photons born in".ljust(26) + "".join(f"{name:>{wide}}" for name in table.index),
+    ]
+    for column in table.columns:
+        values = table[column].to_numpy()
+        if column in ("births_share", "rate_factor") or values.any():
+            name = column.replace("to:", "taken by ").replace("_", " ")
+            lines.append(name.ljust(26) + "".join(f"{value:>{wide}.4f}" for value in values))
+    return "\n".join([*lines, "", f"Files: {folder}"])
+
+
+def _heading(found: "InPlane | InDepth | Receivers") -> list[str]:
     lines = [found.stack.title] if found.stack.title else []
     lines += [stack_line(found.stack), ""]
     lines += [f"Warning: {line}" for line in found.warnings]

@@ -24,6 +24,7 @@ from optics.sample import Sample
 from optics.spectrum import Gaussian, Spectrum, given_per_nm
 from optics.stack import (
     OUTER_NAMES,
+    SHARED_KEYS,
     THICKNESS_TO_NM,
     Emission,
     Layer,
@@ -46,7 +47,18 @@ STACK_KEYS = ("title", "above", "below", "light", "emission", "collection", "sam
 EVEN_KEYS = ("from_nm", "to_nm", "step_nm")
 LIGHT_KEYS = (*EVEN_KEYS, "wavelengths_nm", "spectrum")
 EMISSION_KEYS = ("horizontal_share", "depth", "near_field")
-LAYER_KEYS = ("name", "material", *THICKNESS_TO_NM, "emits", "phases", "roughness_nm", "tail", "varies_nm", *INDEX_KEYS)
+LAYER_KEYS = (
+    "name",
+    "material",
+    *THICKNESS_TO_NM,
+    "emits",
+    "phases",
+    "roughness_nm",
+    "tail",
+    "varies_nm",
+    *SHARED_KEYS,
+    *INDEX_KEYS,
+)
 OUTER_KEYS = ("material", "counts_as", *INDEX_KEYS)
 SPEC_KEYS = ("n", "k", "published")
 GRID = "a number in nm (from_nm, to_nm and step_nm, or a list wavelengths_nm)"
@@ -63,6 +75,7 @@ class _Row(NamedTuple):
     material: Material
     emits: bool
     layer: Layer | None
+    births_share: object = None
 
 
 def build_stack(tables: Mapping[str, Any], *, folder: str | Path = ".") -> Stack:
@@ -144,7 +157,8 @@ def _layers(keys: Keys, home: Path) -> list[_Row]:
         return []
     rows = [_layer(keys.faults, table, number, home) for number, table in enumerate(tables, start=1)]
     if "layer" not in keys.meant:
-        check_layers(keys.faults, names=[row.name for row in rows], emits=[row.emits for row in rows])
+        births = [row.births_share for row in rows]
+        check_layers(keys.faults, names=[row.name for row in rows], emits=[row.emits for row in rows], births=births)
     return rows
 
 
@@ -170,12 +184,15 @@ def _layer(faults: Faults, table: Any, number: int, home: Path) -> _Row:
         "roughness_nm": keys.get("roughness_nm", 0.0),
         "varies_nm": keys.get("varies_nm", 0.0),
         "tail": _tail(own, keys.get("tail"), home),
+        "births_share": keys.get("births_share"),
+        "receives": keys.get("receives", False),
     }
     check_layer(own, **parts)
     faults.lines += own.lines
     layer = None if own.lines else Layer(**parts)
     material = layer.repaired if layer else parts["material"]
-    return _Row(name=label, material=material, emits=bool(parts["emits"]), layer=layer)
+    share = parts["births_share"]
+    return _Row(name=label, material=material, emits=bool(parts["emits"]), layer=layer, births_share=share)
 
 
 def _tail(faults: Faults, spec: Any, home: Path) -> Tail | None:

@@ -103,6 +103,10 @@ def _layer(layer: Layer, home: Path | None, known: Container[str]) -> dict[str, 
         table["thickness_nm"] = {"value": _number(layer.thickness_nm), "varies_nm": _number(layer.varies_nm)}
     if layer.emits:
         table["emits"] = True
+    if layer.births_share is not None:
+        table["births_share"] = _number(layer.births_share)
+    if layer.receives:
+        table["receives"] = True
     if layer.phases is not None:
         table["phases"] = layer.phases
     if layer.roughness_nm:

@@ -15,6 +15,7 @@ from optics.fate.drawing import drawing_of
 from optics.fate.ledger import Ledger
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
+from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
 from optics.transport import depthray, depthwave
@@ -128,12 +129,14 @@ def indepth(
         edges = even_edges_nm(stack.film.thickness_nm, slices)
     else:
         edges = checked_edges(np.asarray(edges_nm, dtype=float), stack)
-    drawing = replace(drawing_of(stack), moments=uniform)
+    smooth = graded(stack)  # its film is thinner by its rough faces, and so is every slice
+    drawing = replace(drawing_of(smooth), moments=uniform)
+    scale = smooth.film.thickness_nm / stack.film.thickness_nm
     models = ("ray",) if stack.film.plate else ("wave", "ray")
     ledgers = {model: ledger_of(drawing, settings, model=model) for model in models}
-    born = births.born_inside(stack, drawing, ledgers[models[0]], model=models[0], settings=settings).per_nm
+    born = births.born_inside(smooth, drawing, ledgers[models[0]], model=models[0], settings=settings).per_nm
     share = born * weights(drawing.wavelength_nm)
-    found = {model: _matrix(drawing, edges, ledgers[model], share, settings, model) for model in models}
+    found = {model: _matrix(drawing, edges * scale, ledgers[model], share, settings, model) for model in models}
     return InDepth(
         stack, edges, drawing.wavelength_nm, found.get("wave"), found["ray"], (), (*assumptions(stack), *CONVENTIONS)
     )

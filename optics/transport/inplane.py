@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -15,6 +15,7 @@ from optics.fate.drawing import drawing_of
 from optics.fate.ledger import Ledger
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
+from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
 from optics.transport import compact, flights, rings
@@ -130,14 +131,16 @@ def inplane(stack: Stack, *, model: str | None = None, settings: Settings | None
         As `optics.solve`.
     """
     settings = settings or Settings()
-    drawing = drawing_of(stack)
+    smooth = graded(stack)
+    drawing = drawing_of(smooth)
     model = "ray" if stack.film.plate else (model or "wave")
     ledger = ledger_of(drawing, settings, model=model)
-    born = births.born_inside(stack, drawing, ledger, model=model, settings=settings).per_nm
+    born = births.born_inside(smooth, drawing, ledger, model=model, settings=settings).per_nm
     births_nm = born * ledger.rate_factor
     births_nm = births_nm / (births_nm @ weights(drawing.wavelength_nm))
-    parts = taken_in_plane(stack, drawing, ledger, settings, model=model)
-    return _tables(stack, drawing, ledger, parts, births_nm, model)
+    parts = taken_in_plane(smooth, drawing, ledger, settings, model=model)
+    said = (*assumptions(stack), *CONVENTIONS, *compact.ASSUMPTIONS)
+    return replace(_tables(smooth, drawing, ledger, parts, births_nm, model), stack=stack, assumptions=said)
 
 
 def taken_in_plane(stack: Stack, drawing: Drawing, ledger: Ledger, settings: Settings, *, model: str) -> Parts:
@@ -229,7 +232,6 @@ def _tables(stack: Stack, drawing: Drawing, ledger: Ledger, parts: Parts, births
         exponentials=_terms(terms),
         averages=_averages(parts, kernel, weight) | compact.averages(drawing, parts, table, spectrum, weight),
         warnings=(RAY_WARNING,) if model == "ray" else (),
-        assumptions=(*assumptions(stack), *CONVENTIONS, *compact.ASSUMPTIONS),
     )
 
 
