@@ -12,7 +12,6 @@ from optics.fate import births
 from optics.fate.account import ledger_of
 from optics.fate.drawing import drawing_of
 from optics.fate.ledger import Ledger
-from optics.fate.scenes import Drawing
 from optics.fate.wave import Settings
 from optics.roughness import graded
 from optics.spectrum import weights
@@ -28,8 +27,8 @@ ALL = "all"
 """Name of the row of all photons born; no layer of that name is a source at the same time."""
 
 CONVENTIONS = (
-    "receivers: what a layer takes of light born in it is reabsorbed + guided_reabsorbed, of light born elsewhere all it "
-    "absorbs in every zone; births_share is of the photons born",
+    "receivers: what a layer takes of light born in it is reabsorbed + guided_reabsorbed, of light born elsewhere "
+    "all it absorbs in every zone; births_share is of the photons born",
 )
 
 
@@ -85,7 +84,7 @@ def receivers(stack: Stack, *, settings: Settings | None = None) -> Receivers:
         drawing = drawing_of(alone)
         model = models[source.name] = "ray" if source.plate else "wave"
         ledger = ledger_of(drawing, settings, model=model)
-        shares = _shares(alone, drawing, ledger, names)
+        shares = _shares(alone, ledger, names)
         born = births.born_inside(alone, drawing, ledger, model=model, settings=settings).per_nm
         weight = born * weights(drawing.wavelength_nm)
         by = weight * ledger.rate_factor / (weight @ ledger.rate_factor)
@@ -99,7 +98,7 @@ def receivers(stack: Stack, *, settings: Settings | None = None) -> Receivers:
     return Receivers(stack, table, pd.concat(tables, ignore_index=True), models, (), said)
 
 
-def _shares(stack: Stack, drawing: Drawing, ledger: Ledger, names: list[str]) -> dict[str, Real]:
+def _shares(stack: Stack, ledger: Ledger, names: list[str]) -> dict[str, Real]:
     """Return what each receiver, and every other end, takes of the light of the film."""
     place = {layer.name: number for number, layer in enumerate(stack.layers, start=1)}
     taken = ledger.taken.sum(axis=0)  # (medium, wavelength)

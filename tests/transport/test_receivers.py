@@ -67,7 +67,7 @@ def test_stacks_of_several_emitters_are_written_and_read_back_the_same(two):
 
 
 def test_what_needs_one_film_says_where_several_are_followed(two):
-    with pytest.raises(InputError, match="2 layers emit .* receivers"):
+    with pytest.raises(InputError, match=r"2 layers emit .* receivers"):
         solve(two)
 
 
@@ -77,9 +77,9 @@ def test_what_needs_one_film_says_where_several_are_followed(two):
 )
 def test_shares_of_births_that_do_not_add_up_are_refused(two, shares, said):
     layers = list(two.layers)
+    for place, share in zip((0, 2), shares, strict=True):
+        layers[place] = replace(layers[place], births_share=share)
     with pytest.raises(InputError, match=said):
-        for place, share in zip((0, 2), shares, strict=True):
-            layers[place] = replace(layers[place], births_share=share)
         replace(two, layers=tuple(layers))
 
 
