@@ -57,7 +57,7 @@ def _uneven(film: Layer) -> list[str]:
         return []
     return [
         f"{layer_place(film.name)}: uneven within the spot, {film.varies_nm:g} nm (one standard deviation, normal): "
-        "the answer is the mean over it, births weighted with the rate factor alone; reflection.csv is that of its value"
+        "the answer is the mean over it, births weighted with the rate factor alone; reflection.csv is for its value"
     ]
 
 

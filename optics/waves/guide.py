@@ -103,7 +103,7 @@ def mismatch(pile: Guide, q: Complex, roots: tuple[Complex, Complex]) -> tuple[C
 def _turn(eps: Complex, phase: Real, q: Complex) -> tuple[Complex, Complex, Complex, Complex]:
     """Return cos(kz d), sin(kz d)/kz, the slope of the latter in q^2, all times exp(i kz d), and kz^2."""
     squared = eps - q * q
-    root: Complex = np.sqrt(-squared)
+    root = np.sqrt(-squared)
     kz = 1j * np.where(root == 0.0, 1e-150, root)
     turn_less_one = np.expm1(2j * kz * phase)
     cosine: Complex = 1.0 + 0.5 * turn_less_one
