@@ -36,9 +36,6 @@ MISSED = 5e-5
 FEWEST_A_THREAD = 20
 """Wavelengths below which a thread is not worth its start."""
 
-ASIDE = 1e-13
-"""How far a node steps off a light line that it meets, relatively."""
-
 ORDER = 16
 SOURCES = ("births", "above", "below")
 """What enters the plates: light from births, and one unit scattered isotropically up or down from the film."""
@@ -149,7 +146,7 @@ def _density(
 ) -> Real:
     """Return the ends of every source per node, (quantity, row, node), Jacobian included."""
     points = curves.on_panel(rows, u, scene.film_index[rows.owner, None])
-    waves = Waves(scene.view(rows.owner), _off_the_lines(scene, rows, points.q), points.short_of_film)
+    waves = Waves(scene.view(rows.owner), points.q, points.short_of_film)
     leaving, responses = send(waves)
     network = Network(waves, responses)
     trips = network.trips()
@@ -169,15 +166,6 @@ def _density(
             out += [at_once.sum(axis=1), *((v + at_once).sum(axis=1) for v in variants)]
     whole: Real = np.concatenate(out) * points.slope
     return whole
-
-
-def _off_the_lines(scene: Scene, rows: Rows, q: Real) -> Real:
-    """Return nodes that meet no thin layer's light line exactly, where its wave stands still: zero over zero."""
-    for medium in scene.group:
-        met = q == scene.index[medium].real[rows.owner, None]
-        if met.any():
-            q = np.where(met, q * (1.0 - ASIDE), q)
-    return q
 
 
 def _scattered(waves: Waves, k: int, end: Real) -> Leaving:
