@@ -11,7 +11,7 @@ import click
 @click.option("--internal-sd", type=float, default=0.0, help="Its standard deviation.")
 @click.option("--external", type=float, help="Measured external yield, 0 to 1.")
 @click.option("--external-sd", type=float, default=0.0, help="Its standard deviation.")
-@click.option("--reading", default="sphere", show_default=True, help="faces, wide or sphere: what was measured.")
+@click.option("--reading", help='faces, wide or sphere: what was measured [default: sphere; "lost edges" if lost].')
 @click.option("--temperature-K", "kelvin", type=float, default=300.0, show_default=True, help="For the voltage.")
 @click.option("--output", type=click.Path(path_type=Path), help="Folder for the results [default: <STACK>-yields].")
 @click.option("--replace", is_flag=True, help="Write over a folder that is not an untouched result of this tool.")
@@ -21,7 +21,7 @@ def yields(
     internal_sd: float,
     external: float | None,
     external_sd: float,
-    reading: str,
+    reading: str | None,
     kelvin: float,
     output: Path | None,
     replace: bool,
@@ -34,7 +34,7 @@ def yields(
       photonfate yields my-film/stack.toml --internal 0.9
       photonfate yields my-film/stack.toml --external 0.15 --external-sd 0.02 --replace
     """
-    from optics.fate.implied import given, implied
+    from optics.fate.implied import default_reading, given, implied
     from optics.fate.sampled import sampled
     from optics.output.folder import check_target
     from optics.output.samples import sample_report, write_yields
@@ -45,6 +45,7 @@ def yields(
     folder = output or stack.with_name(f"{stack.stem}-yields")
     check_target(folder, replace=replace)
     found = sampled(loaded)
+    reading = reading or default_reading(found)
     rows = () if known is None else implied(found, known, reading=reading, temperature_K=kelvin)
     write_yields(found, rows, known, folder, stack_file=stack, reading=reading, temperature_K=kelvin, replace=replace)
     click.echo(sample_report(found, rows, known, temperature_K=kelvin, folder=folder))

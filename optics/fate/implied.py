@@ -4,13 +4,12 @@ from dataclasses import dataclass
 
 from optics.errors import InputError
 from optics.fate import yields
-from optics.fate.readings import Reading
+from optics.fate.readings import LOST_EDGES, SPHERE, Reading
 from optics.fate.sampled import Sampled
 from optics.fate.yields import Yields
 from optics.faults import Faults
 
 ROOM_K = 300.0
-DEFAULT_READING = "sphere"
 
 
 @dataclass(frozen=True)
@@ -109,6 +108,11 @@ def implied(sampled: Sampled, known: Given, *, reading: str, temperature_K: floa
     return tuple(_one(each, known, temperature_K) for each in sampled.readings)
 
 
+def default_reading(sampled: Sampled) -> str:
+    """Return the reading of the sample as it lies: its edges collected, or lost."""
+    return LOST_EDGES if sampled.sample.edges == "lost" else SPHERE
+
+
 def _one(reading: Reading, known: Given, temperature_K: float) -> Implied:
     shares = {"p_r": reading.p_r, "p_e": reading.p_e}
     top = yields.largest_external(**shares)
@@ -135,7 +139,7 @@ def yields_of(
     internal: float | None = None,
     external: float | None = None,
     sd: float = 0.0,
-    reading: str = DEFAULT_READING,
+    reading: str | None = None,
     temperature_K: float = ROOM_K,
 ) -> tuple[Implied, ...]:
     """Return what an internal or an external yield implies in every reading of a sample.
@@ -149,7 +153,7 @@ def yields_of(
     sd
         Its standard deviation.
     reading
-        The reading that has to allow a measured external yield.
+        The reading that has to allow a measured external yield; None: that of the sample's edges.
     temperature_K
         For the voltage [K].
 
@@ -161,4 +165,4 @@ def yields_of(
     known = given(internal=internal, external=external, sd=sd)
     if known is None:
         raise InputError("yields: found neither internal nor external, expected one of them")
-    return implied(sampled, known, reading=reading, temperature_K=temperature_K)
+    return implied(sampled, known, reading=reading or default_reading(sampled), temperature_K=temperature_K)

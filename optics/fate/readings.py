@@ -29,8 +29,8 @@ import numpy as np
 from optics.fate.ends import PLACES, SampleEnds
 from optics.waves.coherent import Real
 
-READINGS = ("faces", "wide", "sphere")
-LOST_EDGES = "lost edges"
+SPHERE, LOST_EDGES = "sphere", "lost edges"
+READINGS = ("faces", "wide", SPHERE)
 
 
 @dataclass(frozen=True)

@@ -74,6 +74,8 @@ def test_a_sample_in_the_file_is_used_by_yields_and_by_solve(stack_file):
     done = run(stack_file)
     assert "edge at 5 mm" in done.output
     assert "lost edges" in done.output
+    refused = run(stack_file, "--external", "0.9", "--replace")
+    assert 'reading "lost edges"' in refused.output
     solved = CliRunner().invoke(main, ["solve", str(stack_file)])
     assert solved.exit_code == 0, solved.output
     assert "lost edges" in solved.output
