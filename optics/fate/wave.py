@@ -21,7 +21,7 @@ from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
-from optics.waves.shelf import kept_for
+from optics.waves.shelf import Kept, kept_for
 
 SHARP_FROM_DEPTH = 25.0
 """Phase through the group from which leaky lines are looked for in the open zone."""
@@ -50,15 +50,16 @@ class Settings:
         return replace(self, tolerance=0.1 * self.tolerance, finer=2 * self.finer)
 
 
-def power_on_path(view: View, points: Points, *, flights: bool, dips: bool = False) -> Complex:
+def power_on_path(
+    view: View, points: Points, *, flights: bool, dips: bool = False, kept: Kept | None = None
+) -> Complex:
     """Return the complex power density on a path and, with ``flights``, it times the first-flight absorption.
 
     A path that ``dips`` below the real axis meets no cut of the half-spaces: the decaying root is the right one there.
+    ``kept`` is what these points have in common with those of other thicknesses.
     """
-    scene, film = view.scene, view.film
-    q = points.q
-    kept = kept_for(lambda: ("path", dips, scene.halves), view.owner, q)
-    kz, up, down = kept.get("halves", lambda: _halves_on_path(view, points, dips=dips))
+    film, q = view.film, points.q
+    kz, up, down = (kept or Kept()).get("halves", lambda: _halves_on_path(view, points, dips=dips))
     density = source.density(source.cavity(film, q, kz, up, down))
     density *= points.slope
     if not flights:
@@ -209,7 +210,9 @@ def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = Non
     def density(rows: Rows, u: Real) -> Real:
         view = scene.view(rows.owner)
         first = None if start is None else start[rows.owner, None]
-        return power_on_path(view, curves.on_dip(rows, u, view.film.index, first), flights=flights, dips=True).real
+        kept = kept_for(lambda: ("dip", scene.halves, u.shape), *rows.places, first)
+        points = kept.get("points", lambda: curves.on_dip(rows, u, view.film.index, first))
+        return power_on_path(view, points, flights=flights, dips=True, kept=kept).real
 
     owner = np.arange(scene.wavelengths) if start is None else np.flatnonzero(end - start > 1e-12)
     if not len(owner):
@@ -228,7 +231,9 @@ def riser(scene: Scene, end: Real, settings: Settings, *, flights: bool = False)
 
     def density(rows: Rows, u: Real) -> Real:
         view = scene.view(rows.owner)
-        return power_on_path(view, curves.on_riser(rows, u, view.film.index), flights=flights).real
+        kept = kept_for(lambda: ("riser", scene.halves, u.shape), *rows.places)
+        points = kept.get("points", lambda: curves.on_riser(rows, u, view.film.index))
+        return power_on_path(view, points, flights=flights, kept=kept).real
 
     owner = np.flatnonzero(scene.film_index.imag > 0.0)
     if not len(owner):

@@ -60,6 +60,11 @@ class Rows:
     def __len__(self) -> int:
         return len(self.owner)
 
+    @property
+    def places(self) -> tuple[Index, Real, Real, Real]:
+        """All that tells these rows from others."""
+        return self.owner, self.start, self.stop, self.shape
+
     def take(self, which: Index | NDArray[np.bool_] | slice) -> "Rows":
         """Return the chosen rows."""
         return Rows(self.owner[which], self.start[which], self.stop[which], self.shape[:, which])

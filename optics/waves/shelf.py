@@ -1,4 +1,4 @@
-"""A shelf for what many thicknesses of one film have in common: the halves of the thin group at equal wave numbers.
+"""A shelf for what many thicknesses of one film have in common: halves of the thin group at equal wave numbers.
 
 Reflections of both halves, admittances and plates do not depend on the film's thickness, and neither do the nodes that
 a quadrature begins with. Within ``with shelved():`` they are computed once and kept, read-only, as long as they are used
@@ -92,12 +92,12 @@ def shelved(room: int = ROOM_BYTES) -> Iterator[None]:
         shelf.clear()
 
 
-def kept_for(key: Callable[[], Hashable], owner: Any, q: Any) -> Kept:
-    """Return what is kept of one stack (``key`` tells which) at the wave numbers ``q`` of some wavelengths."""
+def kept_for(key: Callable[[], Hashable], *places: Any) -> Kept:
+    """Return what is kept of one stack, told by ``key``, at wave numbers told by arrays (None: no array)."""
     shelf = _SHELF.get()
     if shelf is None:
         return Kept()
-    return shelf.at((key(), digest(owner), digest(q)))
+    return shelf.at((key(), digest(*(place for place in places if place is not None))))
 
 
 def digest(*arrays: Any) -> bytes:
