@@ -7,7 +7,6 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from optics.assumptions import assumptions
 from optics.fate.account import ledger_of
 from optics.fate.drawing import drawing_of
 from optics.fate.ends import SampleEnds, follow
@@ -22,6 +21,7 @@ from optics.transport.depth import InDepth, indepth
 from optics.transport.depthtables import by_wavelength_table
 from optics.transport.inplane import InPlane, inplane
 from optics.transport.landing import ENDS
+from optics.transport.receivers import ALL, Receivers, receivers
 from optics.units import absorption_per_cm
 from optics.waves.coherent import Real
 
@@ -33,6 +33,9 @@ SLICES = 20
 
 WORTH_SAYING = 1e-5
 """Difference of kernel and ledger that deserves a warning; numerical errors are below it."""
+
+TO = "to:"
+"""How the columns of receivers begin that name a layer."""
 
 TAKEN = "taken:"
 """How the columns of modes begin that say what a layer absorbs."""
@@ -67,7 +70,8 @@ def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, setting
     Parameters
     ----------
     stack
-        The stack; without a sample of its own its readings are those of a sample of defaults.
+        The stack, with one layer that emits; without a sample of its own its readings are those of a sample of
+        defaults.
     slices
         Even slices of the film for its depth matrix.
     full
@@ -82,9 +86,9 @@ def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, setting
     """
     settings = settings or Settings()
     result = solve(stack, settings=settings)
-    smooth = graded(stack)
-    plane = inplane(smooth, settings=settings)
-    depth = indepth(smooth, slices=slices, settings=settings)
+    plane = inplane(stack, settings=settings)
+    depth = indepth(stack, slices=slices, settings=settings)
+    who = receivers(stack, settings=settings)
     read, by_wavelength = _readings(result, settings)
     tables = {} if result.table is None else {"outcomes": result.table}
     tables |= {
@@ -98,6 +102,7 @@ def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, setting
         **({} if result.depth is None else {"birth_depth": result.depth}),
         "index": index_table(result),
         "where": result.where,
+        "receivers": receivers_table(who),
         "spectra": result.spectra,
         "reading_spectra": by_wavelength,
         "guided_spectrum": plane.guided_spectrum,
@@ -108,15 +113,12 @@ def hand_over(stack: Stack, *, slices: int = SLICES, full: bool = False, setting
     tables["kernel_spectra"] = plane.by_wavelength
     if full:
         tables["depth_spectra"] = by_wavelength_table(depth)
-    # of a stack with rough faces, layers stand for them: what is said of those is no news
-    known = set(assumptions(smooth))
-    later = tuple(each for each in (*plane.assumptions, *depth.assumptions) if each not in known)
     return Handover(
         result,
         tables,
         numbers_of(result, read) | plane_numbers(plane),
         _once(result.warnings, plane.warnings, depth.warnings, _unkerneled(result, plane)),
-        _once(result.assumptions, later, (_sample_said(stack),)),
+        _once(result.assumptions, plane.assumptions, depth.assumptions, who.assumptions, (_sample_said(stack),)),
     )
 
 
@@ -167,6 +169,14 @@ def depth_tables(depth: InDepth) -> dict[str, pd.DataFrame]:
     head = {"birth_from_nm": edges[:-1], "birth_to_nm": edges[1:], "rate_factor": lead.rate_factor}
     ends = dict(zip(ENDS, lead.ends.T, strict=True))
     return {"depth_matrix": matrix, "depth_slices": pd.DataFrame(head | {"film": lead.matrix.sum(axis=1)} | ends)}
+
+
+def receivers_table(who: Receivers) -> pd.DataFrame:
+    """Return who takes the light of whom, tidy: source, receiver (a layer by name, or another end), share."""
+    sources = who.table[who.table["source"] != ALL]
+    wide = sources.drop(columns=["births_share", "rate_factor"])
+    tidy = wide.melt(id_vars="source", var_name="receiver", value_name="share")
+    return tidy.assign(receiver=tidy["receiver"].str.removeprefix(TO))
 
 
 def mode_tables(modes: pd.DataFrame) -> tuple[pd.DataFrame, pd.DataFrame]:

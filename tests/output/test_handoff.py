@@ -27,6 +27,7 @@ KINDS = tuple(FORMATS)
 LIMIT_BYTES = 5_000_000
 ROUNDED = 1e-11
 """Twelve digits are kept."""
+GAUSSIAN = 'kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30'
 STACK = """
 title = "Invented film under a clear contact, on glass"
 above = "air"
@@ -304,15 +305,37 @@ def test_a_pump_hands_over_its_births_over_depth_and_carriers(home):
 def test_a_kernel_that_lacks_light_is_warned_of_and_others_are_not(handed, tmp_path):
     assert not [line for line in handed.warnings if "kernel in the plane" in line]
     assert handed.numbers["inplane_taken_back"] == pytest.approx(handed.numbers["taken_back"], abs=1e-6)
-    stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
+    stack = read_stack_of(tmp_path, kind=GAUSSIAN)
     # a film of low index under a contact of high index: light bound by the contact alone
     found = hand_over(stack.with_layer("film", material=1.2 + 0.02j, thickness_nm=300.0))
     lacking = abs(found.numbers["inplane_taken_back"] - found.numbers["taken_back"]) > 1e-5
     assert lacking == any("kernel in the plane" in line for line in found.warnings)
 
 
+def test_a_layer_that_receives_stands_among_the_receivers_by_name(tmp_path):
+    stack = read_stack_of(tmp_path, kind=GAUSSIAN)
+    found = hand_over(stack.with_layer("=contact, clear | thin", receives=True))
+    shares = found.tables["receivers"].set_index("receiver")["share"]
+    assert shares.sum() == pytest.approx(1.0, abs=1e-9)  # every end is computed by itself
+    assert shares["film"] == pytest.approx(found.numbers["taken_back"], abs=1e-9)
+    assert 0.0 < shares["=contact, clear | thin"] <= found.numbers["elsewhere"] + found.numbers["guided_elsewhere"]
+
+
+def test_several_layers_that_emit_are_refused_in_a_line(home, tmp_path):
+    text = (home / "stack.toml").read_text("utf-8").replace('"own tables/film.csv"', "{ n = 2.4, k = 0.02 }")
+    text = text.replace("thickness_nm = 50", "thickness_nm = 50\nemits = true")
+    text = text.replace("emits = true", "emits = true\nbirths_share = 0.5")
+    text = text.replace('kind = "from-absorption"\nn_i_per_cm3 = 9e3', GAUSSIAN)
+    (tmp_path / "two.toml").write_text(text, encoding="utf-8")
+    done = run("handoff", tmp_path / "two.toml")
+    assert done.exit_code == 2
+    assert "2 layers emit" in done.stderr
+    assert done.stderr.count("\n") == 1
+    assert {path.name for path in tmp_path.iterdir()} == {"two.toml"}
+
+
 def test_a_stack_without_a_coefficient_still_hands_over_the_factors(tmp_path):
-    stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
+    stack = read_stack_of(tmp_path, kind=GAUSSIAN)
     table = hand_over(stack).tables["radiative"]
     assert (table["factor"] > 0.0).all()
     assert table["coefficient_cm3_per_s"].isna().all()
@@ -326,7 +349,7 @@ def read_stack_of(folder, *, kind, thick='"=contact, clear | thin"'):
 
 
 def test_a_film_of_rays_alone_hands_over_without_wave_outcomes_and_modes(tmp_path):
-    stack = read_stack_of(tmp_path, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
+    stack = read_stack_of(tmp_path, kind=GAUSSIAN)
     handed = hand_over(stack.with_layer("film", thickness_nm=30_000.0))
     folder = handoff.write_handoff(handed, tmp_path / "bundle")
     assert not {"outcomes.csv", "modes.csv"} & {path.name for path in (folder / "data").iterdir()}
@@ -477,7 +500,7 @@ def test_averages_handed_over_are_those_of_solve(home, handed):
 def studied(tmp_path_factory):
     """A stack at three wavelengths with its tolerance study beside it."""
     folder = tmp_path_factory.mktemp("studied")
-    read_stack_of(folder, kind='kind = "gaussian"\npeak_nm = 700\nfwhm_nm = 30')
+    read_stack_of(folder, kind=GAUSSIAN)
     assert run("tolerance", folder / "stack.toml", "--samples", 16).exit_code == 0
     return folder
 
