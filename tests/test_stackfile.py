@@ -24,6 +24,7 @@ from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, SpectrumTable
 from optics.stack import Emission, Layer, Outer, Stack
 from optics.stackfile import build_stack, parse_stack, read_stack, write_stack
+from optics.tolerances import Alternatives, Tolerance
 
 JACOBIAN = 1e-12  # relative: two roundings of a unit conversion
 
@@ -268,16 +269,30 @@ def stacks(draw: st.DrawFn) -> Stack:
             thickness_nm=draw(st.one_of(_positive(1, 3000), _positive(2e4, 5e6), st.sampled_from([1.1e6, 2e5 / 3]))),
             emits=place == film,
             phases=draw(st.sampled_from([None, "keep", "ignore"])),
+            receives=draw(st.booleans()),
         )
         for place, name in enumerate(names)
     ]
+    spectrum, share = draw(SPECTRA), draw(st.floats(0, 1))
+    known = [f"{layer.name}.{key}" for layer in layers for key in ("thickness_nm", "n_offset", "k_scale")]
+    known += ["emission.horizontal_share"] + (["light.spectrum.peak_nm"] if isinstance(spectrum, Gaussian) else [])
+    keys = draw(st.lists(st.sampled_from(known), max_size=3, unique=True))
+    others = draw(st.lists(st.sampled_from([layer.name for layer in layers]), max_size=1))
     return Stack(
         title=draw(st.one_of(st.just(""), NAMES)),
+        tolerances=tuple(
+            Tolerance(key=key, sd=draw(_positive(1e-3, 0.2)), shape=draw(st.sampled_from(["normal", "uniform"])))
+            for key in keys
+        ),
+        alternatives=tuple(
+            Alternatives(key=f"{name}.material", materials=tuple(draw(st.lists(MATERIALS, min_size=1, max_size=2))))
+            for name in others
+        ),
         above=draw(OUTERS),
         below=draw(OUTERS),
         layers=tuple(layers),
-        light=Light(wavelengths_nm=draw(GRIDS), spectrum=draw(SPECTRA)),
-        emission=Emission(horizontal_share=draw(st.floats(0, 1)), depth=draw(DEPTHS)),
+        light=Light(wavelengths_nm=draw(GRIDS), spectrum=spectrum),
+        emission=Emission(horizontal_share=share, depth=draw(DEPTHS)),
         collection=draw(COLLECTIONS),
     )
 

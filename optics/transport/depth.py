@@ -35,6 +35,9 @@ CONVENTIONS = (
 )
 
 
+UNEVEN = "over the depth: an uneven film's matrix has the shape of its mean thickness and the amounts of the whole spot"
+
+
 @dataclass(frozen=True)
 class DepthMatrix:
     """One model's answer over the depth.
@@ -137,9 +140,8 @@ def indepth(
     born = births.born_inside(smooth, drawing, ledgers[models[0]], model=models[0], settings=settings).per_nm
     share = born * weights(drawing.wavelength_nm)
     found = {model: _matrix(drawing, edges * scale, ledgers[model], share, settings, model) for model in models}
-    return InDepth(
-        stack, edges, drawing.wavelength_nm, found.get("wave"), found["ray"], (), (*assumptions(stack), *CONVENTIONS)
-    )
+    said = (*assumptions(stack), *CONVENTIONS, *((UNEVEN,) if stack.film.varies_nm else ()))
+    return InDepth(stack, edges, drawing.wavelength_nm, found.get("wave"), found["ray"], (), said)
 
 
 def checked_edges(edges: Real, stack: Stack, *, place: str = "mesh") -> Real:

@@ -53,6 +53,9 @@ CONVENTIONS = (
 )
 
 
+UNEVEN = "in the plane: an uneven film's kernel has the shape of its mean thickness and the amounts of the whole spot"
+
+
 @dataclass(frozen=True)
 class InPlane:
     """How far in the plane photons travel before the film takes them back.
@@ -139,7 +142,8 @@ def inplane(stack: Stack, *, model: str | None = None, settings: Settings | None
     births_nm = born * ledger.rate_factor
     births_nm = births_nm / (births_nm @ weights(drawing.wavelength_nm))
     parts = taken_in_plane(smooth, drawing, ledger, settings, model=model)
-    said = (*assumptions(stack), *CONVENTIONS, *compact.ASSUMPTIONS)
+    uneven = (UNEVEN,) if stack.film.varies_nm else ()
+    said = (*assumptions(stack), *CONVENTIONS, *uneven, *compact.ASSUMPTIONS)
     return replace(_tables(smooth, drawing, ledger, parts, births_nm, model), stack=stack, assumptions=said)
 
 

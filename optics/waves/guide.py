@@ -105,7 +105,7 @@ def _turn(eps: Complex, phase: Real, q: Complex) -> tuple[Complex, Complex, Comp
     squared = eps - q * q
     root = np.sqrt(-squared)
     kz = 1j * np.where(root == 0.0, 1e-150, root)
-    turn_less_one = np.expm1(2j * kz * phase)
+    turn_less_one: Complex = np.expm1(2j * kz * phase)
     cosine: Complex = 1.0 + 0.5 * turn_less_one
     sine: Complex = turn_less_one / (2j * kz)
     angle = squared * phase * phase
