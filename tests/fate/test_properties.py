@@ -184,10 +184,10 @@ def test_a_film_that_absorbs_next_to_nothing_is_a_clear_film(case, model):
     # how guided light ends is decided by the least absorber there is; that it is guided is not. Layers are too thin
     # here for light to tunnel more slowly than the film absorbs
     # light that grazes the film's faces meets the least of absorbers, a share of about the root of alpha d, or of k;
-    # several times that on a good mirror, which takes little of it
+    # many times that where a neighbour takes little of it: a good mirror, a weak absorber
     k = AS_GOOD_AS_CLEAR
     phase = 2.0 * np.pi * case.media[case.film][1] / case.wavelength_nm
-    grazing = 8.0 * (np.sqrt(2.0 * k * phase) + np.sqrt(2.0 * k))
+    grazing = 30.0 * (np.sqrt(2.0 * k * phase) + np.sqrt(2.0 * k))
     parts = ("guided_unfinished", "guided_reabsorbed", "guided_elsewhere")
     assert_alike(clear, almost, within=SHARES + grazing, but=parts)
 
