@@ -240,6 +240,7 @@ def _integrated(value: Value, scene: Scene, low: Real, high: Real, size: int, se
         scene=scene,
         order=ORDER * settings.finer,
         tolerance=settings.tolerance,
+        trust=0.5,
         panel=curves.on_crowded_panel,
     )
 

@@ -190,7 +190,7 @@ def _rows(owner: Index, end: Real) -> Rows:
 
 def path_order(scene: Scene, settings: Settings) -> int:
     """Return the order of the rule on dips: phases through the group set the pace."""
-    return settings.finer * int(np.clip(8 * np.ceil(7.0 + depth_of(scene) / 24.0), 64, 256))
+    return settings.finer * int(np.clip(8 * np.ceil(5.0 + depth_of(scene) / 24.0), 48, 256))
 
 
 def panel_order(scene: Scene, settings: Settings) -> int:

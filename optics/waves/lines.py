@@ -94,6 +94,7 @@ def integrate_with_lines(
     scene: Scene,
     order: int,
     tolerance: float,
+    trust: float = 1.0,
     panel: Panel = on_panel,
 ) -> Integral:
     """Integrate ``value`` over real-axis panels with ``lines`` taken out and added in closed form."""
@@ -110,7 +111,14 @@ def integrate_with_lines(
 
     cut: NDArray[np.bool_] = np.any(lines.cut, axis=1)
     parts = [
-        integrate(density, _cells(panels, lines, which), wavelengths=scene.wavelengths, order=rule, tolerance=tolerance)
+        integrate(
+            density,
+            _cells(panels, lines, which),
+            wavelengths=scene.wavelengths,
+            order=rule,
+            tolerance=tolerance,
+            trust=trust,
+        )
         for which, rule in ((cut, CELL_ORDER), (~cut, order))
         if which.any()
     ]

@@ -13,8 +13,8 @@ Index = NDArray[np.intp]
 BLOCK = 6000
 """Nodes evaluated at a time: enough to hide the cost of a call, few enough for the arrays to stay in cache."""
 
-HEAP_TO_KEEP = 32 << 20
-"""Bytes; see :func:`_keep_heap`."""
+HEAP_TO_KEEP = 24 << 20
+"""Bytes, below the 32 MB from which glibc no longer learns; see :func:`_keep_heap`."""
 
 
 @cache
@@ -110,14 +110,21 @@ Density = Callable[[Rows, Real], Real]
 
 
 def integrate(
-    density: Density, rows: Rows, *, wavelengths: int, order: int, tolerance: float, halvings: int = 30
+    density: Density,
+    rows: Rows,
+    *,
+    wavelengths: int,
+    order: int,
+    tolerance: float,
+    trust: float = 1.0,
+    halvings: int = 30,
 ) -> Integral:
     """Integrate ``density`` along every row; where nested rules disagree, double the order, then halve the row.
 
     With e1 the difference between the half and the quarter rule and e2 that between the full and the half rule, the
-    error of a row is taken as e2 min(1, e2/e1)^(1/2). A rule that converges by a factor with every doubling errs by
-    e2 times that factor, one that gains digits in proportion to its order by far less; the root leaves room for e2
-    being small by chance. Rows that still disagree after ``halvings`` are
+    error of a row is taken as e2 min(1, e2/e1)^trust. A rule that converges by a factor with every doubling errs by e2
+    times that factor, one that gains digits in proportion to its order by e2 times its square; less ``trust`` leaves
+    room for e2 being small by chance, where no other path tells. Rows that still disagree after ``halvings`` are
     counted with what they have.
     """
     _keep_heap()
@@ -126,7 +133,7 @@ def integrate(
     for left in range(halvings, -1, -1):
         if not len(rows):
             break
-        sums, guess = _evaluate(density, rows, order, tolerance)
+        sums, guess = _evaluate(density, rows, _Rule(order, tolerance, trust))
         if values is None:
             values = np.zeros((len(sums), wavelengths))
         if not np.isfinite(sums).all():
@@ -140,34 +147,41 @@ def integrate(
     return Integral(values, error)
 
 
-def _evaluate(density: Density, rows: Rows, order: int, tolerance: float) -> tuple[Real, Real]:
+@dataclass(frozen=True)
+class _Rule:
+    order: int
+    tolerance: float
+    trust: float
+
+    def judged(self, rows: Rows, total: Real) -> tuple[Real, Real]:
+        """Return integrals and errors from the sums of the full, the half and the quarter rule, (quantity, row, rule)."""
+        total *= (rows.stop - rows.start)[:, None]
+        last = np.abs(total[..., 0] - total[..., 1])
+        before = np.abs(total[..., 1] - total[..., 2])
+        last *= np.minimum(last / np.maximum(before, 1e-300), 1.0) ** self.trust
+        return total[..., 0], last.max(axis=0)
+
+
+def _evaluate(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
     """Return the integrals of all rows, (quantity, row), and their error estimates, (row,)."""
-    step = max(1, BLOCK // order)
-    blocks = [_block(density, rows.take(slice(at, at + step)), order, tolerance) for at in range(0, len(rows), step)]
+    step = max(1, BLOCK // rule.order)
+    blocks = [_block(density, rows.take(slice(at, at + step)), rule) for at in range(0, len(rows), step)]
     return np.concatenate([b[0] for b in blocks], axis=1), np.concatenate([b[1] for b in blocks])
 
 
-def _block(density: Density, rows: Rows, order: int, tolerance: float) -> tuple[Real, Real]:
-    nodes, weights = fejer(order)
+def _block(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
+    nodes, weights = fejer(rule.order)
     known = density(rows, _at(rows, nodes))
-    sums, guess = _judged(rows, known @ weights)
-    rough = np.flatnonzero(guess > tolerance)
+    sums, guess = rule.judged(rows, known @ weights)
+    rough = np.flatnonzero(guess > rule.tolerance)
     if len(rough):
         again = rows.take(rough)
-        nodes, weights = fejer(2 * order)
+        nodes, weights = fejer(2 * rule.order)
         fresh = density(again, _at(again, nodes[::2]))
-        sums[:, rough], guess[rough] = _judged(again, known[:, rough] @ weights[1::2] + fresh @ weights[::2])
+        both = known[:, rough] @ weights[1::2] + fresh @ weights[::2]
+        sums[:, rough], guess[rough] = rule.judged(again, both)
     return sums, guess
 
 
 def _at(rows: Rows, nodes: Real) -> Real:
     return rows.start[:, None] + (rows.stop - rows.start)[:, None] * nodes
-
-
-def _judged(rows: Rows, total: Real) -> tuple[Real, Real]:
-    """Return integrals and errors from the sums of the full, the half and the quarter rule, (quantity, row, rule)."""
-    total *= (rows.stop - rows.start)[:, None]
-    last = np.abs(total[..., 0] - total[..., 1])
-    before = np.abs(total[..., 1] - total[..., 2])
-    last *= np.sqrt(np.minimum(last / np.maximum(before, 1e-300), 1.0))
-    return total[..., 0], last.max(axis=0)
