@@ -16,7 +16,7 @@ from optics.fate.wave_account import THINNEST_ZONE, absorbers
 from optics.waves import curves
 from optics.waves.coherent import Real
 from optics.waves.curves import Points
-from optics.waves.lines import Resonator, Value, find, integrate_with_lines, resonators
+from optics.waves.lines import Resonator, Value, echoes, find, integrate_with_lines, resonators
 from optics.waves.paths import Index, Integral, Rows
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
@@ -229,23 +229,28 @@ def _shared_out(bound: Real, *, clear: bool) -> Real:
 
 
 def _integrated(value: Value, scene: Scene, low: Real, high: Real, size: int, settings: Settings) -> Integral:
-    owner, start, stop = split_panels(low, high, light_lines(scene))
+    guides = guides_of(scene)
+    # sharp lines crowd towards the light line of the layer that holds them
+    marks = np.vstack([light_lines(scene), scene.index[[guide.core for guide in guides]].real])
+    owner, start, stop = split_panels(low, high, marks)
     if not len(owner):
         return Integral(np.zeros((size, scene.wavelengths)), np.zeros(scene.wavelengths))
     panels = curves.panels(owner, start, stop)
     return integrate_with_lines(
         value,
         panels,
-        find(scene, panels, guides_of(scene)),
+        find(scene, panels, guides),
         scene=scene,
-        order=ORDER * settings.finer,
-        tolerance=settings.tolerance,
-        trust=0.5,
+        order=ORDER,
+        finer=settings.finer,
+        tolerance=settings.unchecked,
         panel=curves.on_crowded_panel,
     )
 
 
 def guides_of(scene: Scene) -> tuple[Resonator, ...]:
-    """Return the layers of both halves that can guide, the film being one of the media behind them."""
-    up = resonators(scene, scene.layers_up[::-1], scene.above.touching, scene.film)
-    return up + resonators(scene, scene.layers_down, scene.film, scene.below.touching)
+    """Return the layers of both halves that can guide or echo, the film being one of the media behind them."""
+    up = scene.layers_up[::-1], scene.above.touching, scene.film
+    down = scene.layers_down, scene.film, scene.below.touching
+    every = [*resonators(scene, *up), *echoes(scene, *up), *resonators(scene, *down), *echoes(scene, *down)]
+    return tuple(dict.fromkeys(every))

@@ -278,46 +278,44 @@ def _where(drawing: Drawing, names: list[str], ledger: Ledger) -> pd.DataFrame:
     """Return which layer takes what, by zone, without the pairs that take nothing anywhere."""
     import pandas as pd
 
-    parts = [
-        pd.DataFrame({"wavelength_nm": drawing.wavelength_nm, "layer": name, "zone": zone, "share": taken})
-        for zone, media in zip(ZONES, ledger.taken, strict=True)
-        for name, taken in zip(names, media, strict=True)
-        if taken.any()
-    ]
-    columns = ["wavelength_nm", "layer", "zone", "share"]
-    whole = pd.concat(parts, ignore_index=True) if parts else pd.DataFrame(columns=columns)
-    return whole.sort_values(["wavelength_nm"], kind="stable", ignore_index=True)
+    zone, medium = np.nonzero(ledger.taken.any(axis=2))
+    count = len(drawing.wavelength_nm)
+    return pd.DataFrame(
+        {
+            "wavelength_nm": np.repeat(drawing.wavelength_nm, len(zone)),
+            "layer": [names[each] for each in medium] * count,
+            "zone": [ZONES[each] for each in zone] * count,
+            "share": ledger.taken[zone, medium].T.ravel(),
+        }
+    )
 
 
 def _reflection(drawing: Drawing, names: list[str]) -> pd.DataFrame:
     import pandas as pd
 
-    tables = [_one_side(drawing, names, side) for side in (0, 1)]
-    return pd.concat([t for t in tables if t is not None], ignore_index=True)
+    sides = [_one_side(drawing, len(names), side) for side in (0, 1)]
+    whole = pd.DataFrame(np.hstack(sides).T, columns=["wavelength_nm", "R", "T", *(f"A:{name}" for name in names)])
+    whole.insert(1, "side", np.repeat(["above", "below"], len(drawing.wavelength_nm)))
+    return whole
 
 
-def _one_side(drawing: Drawing, names: list[str], side: int) -> pd.DataFrame:
-    """Return R, T and absorptances of light from one side; not a number where its outer medium is opaque."""
-    import pandas as pd
-
-    count = len(drawing.wavelength_nm)
-    whole = np.full((2 + len(names), count), np.nan)
+def _one_side(drawing: Drawing, media: int, side: int) -> Real:
+    """Return wavelength, R, T and absorptances of light from one side; NaN where its outer medium is opaque."""
+    whole = np.full((3 + media, len(drawing.wavelength_nm)), np.nan)
+    whole[0] = drawing.wavelength_nm
     for chosen, scene in scenes(drawing):
-        if scene.sides[side].absorbs:
-            continue
-        met: Reflection = at_normal(scene, side, film_is_plate=drawing.plate[drawing.film])
-        whole[:, chosen] = np.vstack([met.reflectance, met.transmittance, met.taken])
-    head = {"wavelength_nm": drawing.wavelength_nm, "side": ("above", "below")[side], "R": whole[0], "T": whole[1]}
-    return pd.DataFrame(head | {f"A:{name}": share for name, share in zip(names, whole[2:], strict=True)})
+        if not scene.sides[side].absorbs:
+            met: Reflection = at_normal(scene, side, film_is_plate=drawing.plate[drawing.film])
+            whole[1:, chosen] = np.vstack([met.reflectance, met.transmittance, met.taken])
+    return whole
 
 
 def _index(drawing: Drawing, names: list[str]) -> pd.DataFrame:
     import pandas as pd
 
-    columns = {"wavelength_nm": drawing.wavelength_nm}
-    for name, index in zip(names, drawing.index, strict=True):
-        columns |= {f"{name} n": index.real, f"{name} k": index.imag}
-    return pd.DataFrame(columns)
+    parts = np.stack([drawing.index.real, drawing.index.imag], axis=1).reshape(-1, len(drawing.wavelength_nm))
+    heads = ["wavelength_nm", *(f"{name} {part}" for name in names for part in "nk")]
+    return pd.DataFrame(np.vstack([drawing.wavelength_nm, parts]).T, columns=heads)
 
 
 def _near_field(stack: Stack, drawing: Drawing) -> str | None:

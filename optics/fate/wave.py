@@ -23,6 +23,9 @@ from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.shelf import Kept, kept_for
 
+CHECKED = 1.0
+"""Trust in the nested rules on paths whose sums must agree with each other: what one misses shows in the closure."""
+
 SHARP_FROM_DEPTH = 25.0
 """Phase through the group from which leaky lines are looked for in the open zone."""
 
@@ -37,12 +40,17 @@ class Settings:
 
     tolerance: float = 3e-8
     finer: int = 1
-    threads: int = 2
+    threads: int = 1
 
     @property
     def loose(self) -> float:
-        """Tolerance for what no other quantity is a difference of: rays, and what layers take of bound light."""
+        """Tolerance for what layers take of bound light: no other quantity is a difference of it."""
         return 3.0 * self.tolerance
+
+    @property
+    def unchecked(self) -> float:
+        """Tolerance for rays, which no other path checks."""
+        return self.tolerance / 3.0
 
     @property
     def strict(self) -> "Settings":
@@ -193,9 +201,9 @@ def path_order(scene: Scene, settings: Settings) -> int:
     return settings.finer * int(np.clip(8 * np.ceil(5.0 + depth_of(scene) / 24.0), 48, 256))
 
 
-def panel_order(scene: Scene, settings: Settings) -> int:
+def panel_order(scene: Scene) -> int:
     """Return the order of the rule on real-axis panels."""
-    return settings.finer * int(np.clip(8 * np.ceil(2.0 + depth_of(scene) / 16.0), 24, 128))
+    return int(np.clip(8 * np.ceil(2.0 + depth_of(scene) / 16.0), 24, 128))
 
 
 def depth_of(scene: Scene) -> float:
@@ -223,6 +231,7 @@ def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = Non
         wavelengths=scene.wavelengths,
         order=path_order(scene, settings),
         tolerance=settings.tolerance,
+        trust=CHECKED,
     )
 
 
@@ -296,6 +305,8 @@ def _on_axis(
         panels,
         find(scene, panels, guides),
         scene=scene,
-        order=panel_order(scene, settings),
+        order=panel_order(scene),
+        finer=settings.finer,
         tolerance=settings.tolerance,
+        trust=CHECKED,
     )

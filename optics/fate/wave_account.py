@@ -3,7 +3,7 @@
 import numpy as np
 
 from optics.fate import wave
-from optics.fate.exits import Layout
+from optics.fate.exits import COVER, FREE_ABOVE, FREE_BELOW, SUBSTRATE, Layout
 from optics.fate.ledger import Account, merge, replaced
 from optics.fate.wave import Settings
 from optics.waves.coherent import Real
@@ -13,6 +13,9 @@ from optics.waves.scene import Scene
 THINNEST_ZONE = 1e-12
 """A bound zone narrower than this, in units of k0, is none."""
 
+
+LINE_MISSED = 1e-7
+"""Power that the real axis lacks against other paths, from which a line has been missed there."""
 
 CLOSURE_MISSED = 4e-8
 SHARE_MISSED = 6e-7
@@ -70,9 +73,10 @@ def _unbounded(scene: Scene, settings: Settings) -> Account:
     no = np.zeros(scene.wavelengths, dtype=bool)
     miss = zone.values[Layout.power] - dip.values[0]
     # the power of the nodes that the fluxes come from: a clear film then keeps nothing, to the last digit
+    on_axis = np.where(np.abs(miss) > LINE_MISSED, dip.values[0], zone.values[Layout.power])
     return Account(
-        power=zone.values[Layout.power] + rise.values[0] - wave.exchange_with_itself(scene),
-        zone=zone.values,
+        power=on_axis + rise.values[0] - wave.exchange_with_itself(scene),
+        zone=_with_missed_lines(scene, zone.values, miss),
         bound_first_flight=nothing,
         bound_taken=np.zeros((scene.media, scene.wavelengths)),
         has_bound=no,
@@ -93,6 +97,7 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
     zone = wave.open_zone(scene, settings)
     power = dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene)
     miss = zone.values[Layout.power] + own.values[0] - dip.values[0]
+    booked = _with_missed_lines(scene, zone.values, miss)
     error = dip.error + rise.error + own.error + np.abs(miss)
     flown = np.zeros(scene.wavelengths)
     if absorbing and past_film:
@@ -101,11 +106,11 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
     elif absorbing:
         flown = own.values[1] + rise.values[1]
     near = rise.values[0] - wave.exchange_with_itself(scene)
-    taken, missed = _taken_while_bound(scene, settings, power - zone.values[Layout.power], near, own)
+    taken, missed = _taken_while_bound(scene, settings, power - booked[Layout.power], near, own)
     yes = np.ones(scene.wavelengths, dtype=bool)
     return Account(
         power=power,
-        zone=zone.values,
+        zone=booked,
         bound_first_flight=flown,
         bound_taken=taken,
         has_bound=yes,
@@ -115,6 +120,25 @@ def _bounded(scene: Scene, settings: Settings) -> Account:
         open_error=zone.error,
         guided_error=missed,
     )
+
+
+def _with_missed_lines(scene: Scene, zone: Real, miss: Real) -> Real:
+    """Return the open zone with the power of lines too narrow for any node given to the one outlet they have.
+
+    Such lines lie beyond the light line of the rarer side, so that what they hold leaves towards the denser one; only
+    where nothing in the group absorbs is that the whole story. ``miss`` stays in the closure and in the error.
+    """
+    layout = Layout(scene.media)
+    rarer, denser = np.sort([scene.index[side.touching].real for side in scene.sides], axis=0)
+    alone = (scene.film_index.imag == 0.0) & (absorbers(scene) == 0) & (denser > rarer)
+    lost = np.where(alone & (np.abs(miss) > LINE_MISSED), -miss, 0.0)
+    out = zone.copy()
+    out[layout.power] += lost
+    for k, side in enumerate(scene.sides):
+        held = bool(side.plates) or not side.free
+        end = ((FREE_ABOVE, COVER), (FREE_BELOW, SUBSTRATE))[k][held]
+        out[layout.end(end)] += np.where(scene.index[side.touching].real == denser, lost, 0.0)
+    return out
 
 
 def _flown_within_film(scene: Scene, settings: Settings) -> tuple[Real, Real]:

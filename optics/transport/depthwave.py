@@ -69,7 +69,7 @@ class Nodes:
 
 def _open_nodes(scene: Scene, settings: Settings) -> Iterator[Nodes]:
     owner, low, high = split_panels(np.zeros(scene.wavelengths), scene.open_end, light_lines(scene))
-    nodes, weights = gauss(settings.finer * max(16, wave.panel_order(scene, settings) // 2))
+    nodes, weights = gauss(settings.finer * max(16, wave.panel_order(scene) // 2))
     rows = curves.panels(owner, low, high)
     step = max(1, BLOCK // len(nodes))
     for first in range(0, len(rows), step):

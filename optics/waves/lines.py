@@ -27,7 +27,13 @@ NARROWEST = 1e-12
 SAME_LINE = 1e-3
 """Poles closer than this, in units of their half width, are one line."""
 
+ECHO_FROM_PHASE = 2.5
+"""Phase through a layer at normal incidence from which a sharp line fits between a mirror and a denser medium."""
+
 SECANTS = 4
+POLISHED = 1e-10
+"""Most steps towards a pole, and |log X| at which it is one."""
+
 CLEARANCE = 2.5
 """Lines nearer to another, or to an end of their panel, than this many half widths are not fitted: the ground under
 them is not smooth."""
@@ -93,11 +99,15 @@ def integrate_with_lines(
     *,
     scene: Scene,
     order: int,
+    finer: int,
     tolerance: float,
-    trust: float = 1.0,
+    trust: float = 0.5,
     panel: Panel = on_panel,
 ) -> Integral:
-    """Integrate ``value`` over real-axis panels with ``lines`` taken out and added in closed form."""
+    """Integrate ``value`` over real-axis panels with ``lines`` taken out and added in closed form.
+
+    ``order`` is that of the rule on panels that no line cuts; ``finer`` multiplies it and that of cells between lines.
+    """
     bell, odd = _amplitudes(value, panels, lines, scene)
     taken = replace(lines, centre=np.where(lines.fitted, lines.centre, 0.0))
 
@@ -119,7 +129,7 @@ def integrate_with_lines(
             tolerance=tolerance,
             trust=trust,
         )
-        for which, rule in ((cut, CELL_ORDER), (~cut, order))
+        for which, rule in ((cut, CELL_ORDER * finer), (~cut, order * finer))
         if which.any()
     ]
     values: Real = np.sum([part.values for part in parts], axis=0)
@@ -202,6 +212,16 @@ def resonators(scene: Scene, layers: tuple[int, ...], above: int, below: int) ->
     return tuple(Resonator(layers, above, below, core) for core in np.array(layers, dtype=int)[guides])
 
 
+def echoes(scene: Scene, layers: tuple[int, ...], above: int, below: int) -> tuple[Resonator, ...]:
+    """Return a resonator for every layer, metals apart, that is thick enough for light to fit in on its way."""
+    fits = [
+        core
+        for core in layers
+        if scene.eps[core].real.min() > 0.0 and (scene.index[core].real * scene.phase[core]).max() > ECHO_FROM_PHASE
+    ]
+    return tuple(Resonator(layers, above, below, core) for core in fits)
+
+
 def find(scene: Scene, panels: Rows, candidates: Sequence[Resonator]) -> Lines:
     """Find the sharp lines on ``panels``: the loop through a resonator's core closes, X = 1, at a complex q.
 
@@ -246,6 +266,8 @@ def _secants(
         pole = newer - log_newer * (newer - older) / step
         older, log_older = newer, log_newer
         newer, log_newer = pole, np.log(_round_trip(view, pole[:, None], resonator)[which, chosen, 0])
+        if not (np.abs(log_newer) > POLISHED).any():
+            break
     return newer, log_newer
 
 

@@ -116,7 +116,7 @@ def integrate(
     wavelengths: int,
     order: int,
     tolerance: float,
-    trust: float = 1.0,
+    trust: float = 0.5,
     halvings: int = 30,
 ) -> Integral:
     """Integrate ``density`` along every row; where nested rules disagree, double the order, then halve the row.
@@ -154,7 +154,7 @@ class _Rule:
     trust: float
 
     def judged(self, rows: Rows, total: Real) -> tuple[Real, Real]:
-        """Return integrals and errors from the sums of the full, the half and the quarter rule, (quantity, row, rule)."""
+        """Return integrals and errors from the sums of the full, half and quarter rule, (quantity, row, rule)."""
         total *= (rows.stop - rows.start)[:, None]
         last = np.abs(total[..., 0] - total[..., 1])
         before = np.abs(total[..., 1] - total[..., 2])

@@ -1,7 +1,7 @@
 """A shelf for what many thicknesses of one film have in common: halves of the thin group at equal wave numbers.
 
-Reflections of both halves, admittances and plates do not depend on the film's thickness, and neither do the nodes that
-a quadrature begins with. Within ``with shelved():`` they are computed once and kept, read-only, as long as they are used
+Reflections of both halves, admittances and plates do not depend on the film's thickness, nor do the nodes that a
+quadrature begins with. Within ``with shelved():`` they are computed once and kept, read-only, as long as they are used
 and there is room.
 """
 
