@@ -30,6 +30,12 @@ if TYPE_CHECKING:
     from optics.stack import Emission, Layer, Outer, Stack
     from optics.stackfile.reading import parse_stack, read_stack
     from optics.stackfile.writing import write_stack
+    from optics.study.audit import audit
+    from optics.study.compare import compare
+    from optics.study.inputs import input_uncertainty
+    from optics.study.spread import tolerance
+    from optics.study.sweep import sweep
+    from optics.tolerances import Alternatives, Tolerance
     from optics.transport.depth import InDepth, indepth
     from optics.transport.guided import guided_modes
     from optics.transport.handover import Handover, hand_over
@@ -39,6 +45,7 @@ if TYPE_CHECKING:
     __version__: str
 
 __all__ = [
+    "Alternatives",
     "Collection",
     "Decay",
     "DepthTable",
@@ -64,8 +71,11 @@ __all__ = [
     "SpectrumTable",
     "Stack",
     "Tail",
+    "Tolerance",
+    "audit",
     "bundled_names",
     "check_material",
+    "compare",
     "equilibrium_rate",
     "find_material",
     "guided_modes",
@@ -73,6 +83,7 @@ __all__ = [
     "import_table",
     "indepth",
     "inplane",
+    "input_uncertainty",
     "lay_over",
     "parse_stack",
     "read_stack",
@@ -80,6 +91,8 @@ __all__ = [
     "receivers",
     "sampled",
     "solve",
+    "sweep",
+    "tolerance",
     "write_handoff",
     "write_indepth",
     "write_inplane",
@@ -90,6 +103,7 @@ __all__ = [
 ]
 
 _HOMES = {
+    "Alternatives": "optics.tolerances:Alternatives",
     "Collection": "optics.collection:Collection",
     "Decay": "optics.depth:Decay",
     "DepthTable": "optics.depth:DepthTable",
@@ -115,8 +129,11 @@ _HOMES = {
     "SpectrumTable": "optics.spectrum:SpectrumTable",
     "Stack": "optics.stack:Stack",
     "Tail": "optics.media.tail:Tail",
+    "Tolerance": "optics.tolerances:Tolerance",
+    "audit": "optics.study.audit:audit",
     "bundled_names": "optics.media.cabinet:bundled_names",
     "check_material": "optics.media.fitness:fitness_of",
+    "compare": "optics.study.compare:compare",
     "equilibrium_rate": "optics.radiation:equilibrium_rate",
     "find_material": "optics.media.cabinet:find",
     "guided_modes": "optics.transport.guided:guided_modes",
@@ -124,6 +141,7 @@ _HOMES = {
     "import_table": "optics.media.importing:import_table",
     "indepth": "optics.transport.depth:indepth",
     "inplane": "optics.transport.inplane:inplane",
+    "input_uncertainty": "optics.study.inputs:input_uncertainty",
     "lay_over": "optics.fate.overlay:lay_over",
     "parse_stack": "optics.stackfile.reading:parse_stack",
     "read_stack": "optics.stackfile.reading:read_stack",
@@ -131,6 +149,8 @@ _HOMES = {
     "receivers": "optics.transport.receivers:receivers",
     "sampled": "optics.fate.sampled:sampled",
     "solve": "optics.fate.solve:solve",
+    "sweep": "optics.study.sweep:sweep",
+    "tolerance": "optics.study.spread:tolerance",
     "write_handoff": "optics.output.handoff:write_handoff",
     "write_indepth": "optics.output.transport:write_indepth",
     "write_inplane": "optics.output.transport:write_inplane",

@@ -111,8 +111,10 @@ class Stack:
     alternatives: tuple[Alternatives, ...] = ()
 
     def __post_init__(self) -> None:
-        for name in ("layers", "tolerances", "alternatives"):
-            object.__setattr__(self, name, tuple(getattr(self, name)))
+        object.__setattr__(self, "layers", tuple(self.layers))
+        for name in ("tolerances", "alternatives"):  # a file has no order of its own for these
+            ordered = sorted(getattr(self, name), key=lambda each: str(getattr(each, "key", "")))
+            object.__setattr__(self, name, tuple(ordered))
         faults = Faults()
         for key, kind in (("above", Outer), ("below", Outer), ("light", Light), ("emission", Emission)):
             faults.kind(key, getattr(self, key), kind)

@@ -184,7 +184,8 @@ def _moved(stack: Stack, tables: dict[str, Path]) -> Stack:
         light=replace(stack.light, spectrum=spectrum),
         emission=emission,
         alternatives=tuple(
-            replace(each, materials=tuple(moved(material) for material in each.materials)) for each in stack.alternatives
+            replace(each, materials=tuple(moved(material) for material in each.materials))
+            for each in stack.alternatives
         ),
     )
 

@@ -29,7 +29,7 @@ def test_what_the_file_says_stands_in_the_place_of_defaults():
         Tolerance(key="contact.thickness_nm", sd=2.0),
     )
     inputs = inputs_of(replace(small_stack(), tolerances=known))
-    assert [i.key for i in inputs] == ["film.thickness_nm", "film.material.k", "contact.thickness_nm", "film.n_offset"]
+    assert [i.key for i in inputs] == ["contact.thickness_nm", "film.material.k", "film.thickness_nm", "film.n_offset"]
     assert [i.stated for i in inputs] == [True, True, True, False]
 
 
