@@ -149,11 +149,9 @@ def test_a_quadrature_cut_to_few_nodes_fails_at_the_doubled_one(monkeypatch):
     from optics.fate.wave import Settings
 
     coarse = Settings(tolerance=1e3)  # takes whatever the first nodes give
-    orders = {name: getattr(wave, name) for name in ("panel_order", "path_order")}
-    for name, sound in orders.items():
-        # order 8 has a rule of 7 nodes, and its nested one 3
-        cut = lambda scene, settings, sound=sound, **asked: 8 if settings == coarse else sound(scene, settings, **asked)  # noqa: E731
-        monkeypatch.setattr(wave, name, cut)
+    sound = wave.path_order
+    # order 8 has a rule of 7 nodes, and its nested one 3
+    monkeypatch.setattr(wave, "path_order", lambda scene, settings: 8 if settings == coarse else sound(scene, settings))
     monkeypatch.setattr("optics.fate.wave_account.ROUNDS", 0)
     assert "doubled quadrature" in failed(audit(small_stack(), settings=coarse))
 

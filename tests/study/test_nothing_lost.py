@@ -16,8 +16,8 @@ from studied import STACK_FILE
 from optics.cli import main
 
 CALL = [sys.executable, "-c", "from optics.cli import main; main(prog_name='photonfate')"]
-VARY = ["--vary", "film.thickness_nm = 100 to 400 step 10", "--vary", "glass.material = float-glass, sapphire"]
-POINTS = 62
+VARY = ["--vary", "film.thickness_nm = 100 to 400 step 2", "--vary", "glass.material = float-glass, sapphire"]
+POINTS = 302
 ROUNDS = 3
 unix = pytest.mark.skipif(not Path("/proc/self/stat").exists(), reason="needs signals and a list of processes")
 
@@ -58,21 +58,23 @@ def wait_for(stack_file, count, run):
 @pytest.mark.parametrize("options", [(), ("--workers", "2")], ids=["one process", "two workers"])
 def test_killed_at_random_moments_and_run_again_the_table_is_the_same(options, stack_file, undisturbed):
     lots = random.Random(7)
-    kept = 0
+    kept = kills = 0
     for _ in range(ROUNDS):
         run = begun(stack_file, *options)
-        wait_for(stack_file, kept + lots.randint(1, POINTS // ROUNDS), run)
+        wait_for(stack_file, kept + lots.randint(1, POINTS // (3 * ROUNDS)), run)
         time.sleep(0.02 * lots.random())
         run.send_signal(signal.SIGKILL)
         run.communicate()
+        if run.returncode == 0:
+            break  # a fast machine was done before the signal came
+        kills += 1
         assert answers(stack_file) >= kept  # nothing that was there is lost
         kept = answers(stack_file)
-    assert kept > 0
+    assert kills > 0
     last = begun(stack_file, *options)
     _, said = last.communicate()
     assert last.returncode == 0, said
-    if kept < POINTS:
-        assert "going on" in said
+    assert kills < ROUNDS or "going on" in said
     assert (stack_file.parent / "stack-sweep" / "sweep.csv").read_bytes() == undisturbed
     assert not stack_file.with_name("stack-sweep.unfinished").exists()
 
@@ -130,7 +132,7 @@ def test_an_unfinished_study_of_something_else_is_refused_in_one_line_and_kept(w
     if what == "stack file":
         stack_file.write_text(STACK_FILE.replace("k = 0.02", "k = 0.03"), encoding="utf-8")
     else:
-        options[1] = options[1].replace("step 10", "step 20")
+        options[1] = options[1].replace("step 2", "step 4")
     refused = CliRunner().invoke(main, ["sweep", str(stack_file), *options])
     assert refused.exit_code == 2
     assert what in refused.stderr
@@ -200,5 +202,5 @@ def test_the_tables_of_a_sweep_are_what_the_notebook_finds(stack_file, undisturb
 
     table = pd.read_csv(io.BytesIO(undisturbed))
     assert len(table) == POINTS
-    own = sweep(optics.read_stack(stack_file), {"film.thickness_nm": [100.0, 110.0]}).table
+    own = sweep(optics.read_stack(stack_file), {"film.thickness_nm": [100.0, 102.0]}).table
     pd.testing.assert_series_equal(table["trapped"][[0, 2]], own["trapped"], check_index=False, rtol=0, atol=1e-11)
