@@ -269,10 +269,13 @@ def riser_rows(scene: Scene, owner: Index, end: Real) -> Rows:
 def open_zone(scene: Scene, settings: Settings) -> Integral:
     """Integrate fluxes, absorption and ends on the real axis, from 0 to the largest q that can leave the group."""
     ends = np.zeros(scene.wavelengths), scene.open_end
-    # leaky lines are sharp where many phases meet little loss, or where a guide leaks through a denser surrounding
-    guides = guides_of(scene)
-    sharp = guides if settings.finer > 1 or len(guides) > 1 or depth_of(scene) > SHARP_FROM_DEPTH else ()
+    sharp = guides_of(scene) if leaky_lines_matter(scene, settings) else ()
     return _on_axis(open_values, Layout(scene.media).size, scene, ends, settings, sharp)
+
+
+def leaky_lines_matter(scene: Scene, settings: Settings) -> bool:
+    """Tell whether leaky lines may be sharp: many phases meet little loss, or a guide leaks through denser media."""
+    return settings.finer > 1 or len(guides_of(scene)) > 1 or depth_of(scene) > SHARP_FROM_DEPTH
 
 
 def bound_zone(scene: Scene, settings: Settings) -> Integral:

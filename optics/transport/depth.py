@@ -26,6 +26,7 @@ from optics.waves.source import uniform
 
 SLICES = 50
 MOST_SLICES = 400
+ROUNDING = 1e-12
 
 CONVENTIONS = (
     "over the depth: births spread evenly in each slice; averages weigh wavelengths with the births in it, not slices",
@@ -178,7 +179,7 @@ def _matrix(
     matrix[clear] = 0.0
     own = power.T - ends.sum(axis=2) - matrix.sum(axis=2)
     ends, own = _unabsorbed(ends, own, clear, ledger)
-    mended = _mended(matrix, own, power)
+    mended = max(_mended(matrix, own, power), _closed(matrix, ends, power))
     spectrum = share @ power.T
     births_in = share[:, None] * power.T / spectrum
     matrix /= power.T[:, :, None]
@@ -241,6 +242,20 @@ def _unabsorbed(ends: Real, own: Real, clear: Real, ledger: Ledger) -> tuple[Rea
     rows = np.arange(len(ends))
     ends[rows, :, place] += rest
     return ends, own - rest
+
+
+def _closed(matrix: Real, ends: Real, power: Real) -> float:
+    """Close the rows in place where what was cut off at zero has opened them; return the largest share that moved."""
+    low = float((-ends.min(axis=2) / power.T).max())
+    np.maximum(ends, 0.0, out=ends)
+    film, other = matrix.sum(axis=2), ends.sum(axis=2)
+    off = power.T - film - other
+    # ends give or take what is missing; the film only where there is no end
+    part = np.where(other > 0.0, np.maximum(other + off, 0.0) / np.where(other > 0.0, other, 1.0), 1.0)
+    ends *= part[:, :, None]
+    rest = (power.T - ends.sum(axis=2)) / np.where(film > 0.0, film, 1.0)
+    matrix *= np.where(film > 0.0, rest, 1.0)[:, :, None]
+    return max(low, float(np.abs(off / power.T).max()), 0.0) if max(low, float(np.abs(off).max())) > ROUNDING else 0.0
 
 
 def _mended(matrix: Real, own: Real, power: Real) -> float:

@@ -18,6 +18,9 @@ PER_DECADE = 10
 LENGTHS_PER_DECADE = 8
 """Exponentials tried in a fit, a decade of lengths."""
 
+PATIENCE = 1000
+"""Steps of a fit for every length tried; few kernels need more than three."""
+
 SPREAD_NODES = 8
 """Nodes over the logarithm of the radius by which a ring is spread when it is projected."""
 
@@ -123,9 +126,9 @@ def fitted_exponentials(within: Real, radius: Real) -> tuple[Real, Real, float]:
     if not within[-1] > 0.0:
         return np.zeros(0), np.zeros(0), 0.0
     base = within_of_exponential(1.0 / tried, radius[:, None])
-    weights, _ = nnls(base, within)
+    weights, _ = nnls(base, within, maxiter=PATIENCE * len(tried))
     lengths, weights = _merged(tried, weights)
-    weights, _ = nnls(within_of_exponential(1.0 / lengths, radius[:, None]), within)
+    weights, _ = nnls(within_of_exponential(1.0 / lengths, radius[:, None]), within, maxiter=PATIENCE * len(tried))
     kept = weights > 1e-9 * within[-1]
     weights, lengths = weights[kept], lengths[kept]
     miss = np.abs(within_of_exponential(1.0 / lengths, radius[:, None]) @ weights - within).max()

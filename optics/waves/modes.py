@@ -30,6 +30,9 @@ PER_STEP = 0.05
 NUDGE = 1e-6
 """Rise of the absorption, in units of its own, that shows where a pole is heading."""
 
+GROWING = 1e-12
+"""Rounding that an effective index may leave the real axis by."""
+
 ROUNDS = 2
 """How often steps are halved where two modes ran into one."""
 
@@ -129,8 +132,9 @@ def find(scene: Scene) -> Found:
         rows = np.flatnonzero(np.isin(_key(start), _key(start)[bad]))
         index[rows], lost[rows] = _followed(scene, start.take(rows), _steps(scene) * 4**again)
     kept = ~(lost | _doubled(start, index)) & (index.real > scene.open_end[start.wavelength])
+    kept &= index.imag > -GROWING  # a pole below the axis belongs to no passive guide
     kept &= (index.real < scene.far_end[start.wavelength]) & (index.real > _outer_ends(scene)[start.wavelength])
-    whole = Found(start.wavelength, start.polarisation, start.order, index)
+    whole = Found(start.wavelength, start.polarisation, start.order, index.real + 1j * np.maximum(index.imag, 0.0))
     return whole.take(np.flatnonzero(kept))
 
 

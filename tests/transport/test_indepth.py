@@ -11,7 +11,7 @@ from scipy.special import expn
 from optics import Emission, InputError
 from optics.transport import depthray
 from optics.transport.depth import indepth
-from optics.transport.depthwave import bulk_flux, landing_end
+from optics.transport.nodes import bulk_flux, landing_end
 
 from .test_inplane import stack_of
 
