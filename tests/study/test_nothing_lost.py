@@ -38,9 +38,18 @@ def undisturbed(tmp_path_factory):
     return (folder / "stack-sweep" / "sweep.csv").read_bytes()
 
 
+def interruptible():
+    # A child of a shell's background job may ignore Ctrl-C; a person at a terminal does not.
+    signal.signal(signal.SIGINT, signal.default_int_handler)
+
+
 def begun(stack_file, *options):
     return subprocess.Popen(
-        [*CALL, "sweep", str(stack_file), *VARY, *options], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True
+        [*CALL, "sweep", str(stack_file), *VARY, *options],
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+        preexec_fn=interruptible if hasattr(os, "fork") else None,
     )
 
 
