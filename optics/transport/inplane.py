@@ -188,7 +188,8 @@ def _with_modes(stack: Stack, drawing: Drawing, ledger: Ledger, rays: Taken, bou
     guided = guided_modes(stack, drawing)
     modes = guided.modes
     share = modes.power / ledger.rate_factor[modes.wavelength]
-    film_share = share * modes.taken[drawing.film]
+    # lines that overlap may leave a mode less than nothing; no ring of a kernel holds that
+    film_share = np.maximum(share, 0.0) * modes.taken[drawing.film]
     bound = ledger.taken[2, drawing.film]
     found = modes.summed(film_share, count)
     # modes that overlap hold a little more than there is: they are cut to it
