@@ -19,6 +19,7 @@ from optics.waves import curves
 from optics.waves.coherent import Complex, Real
 from optics.waves.curves import Points
 from optics.waves.depth import SheetProfile
+from optics.waves.elementary import upper_root
 from optics.waves.paths import Density, Index, Integral, Rows, integrate
 from optics.waves.scene import Scene, View
 from optics.waves.source import Moments, Wave, uniform
@@ -124,7 +125,7 @@ def _integrated(density: Density, owner: Index, end: Real, scene: Scene, order: 
 def _excess(view: View, points: Points) -> Complex:
     """Return the power density less that of the bulk, Jacobian included."""
     film, q = view.film, points.q
-    kz = 1j * np.sqrt(-points.short_of_film * (film.index + q))
+    kz = upper_root(points.short_of_film * (film.index + q))
     h = film.in_plane
     bulk = (0.75 * h + 1.5 * (1.0 - h) * q * q / film.eps) / kz + 0.75 * h * kz / film.eps
     out: Complex = wave.power_on_path(view, points, flights=False)[0] - bulk * q / film.real_index * points.slope

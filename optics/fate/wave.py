@@ -17,6 +17,7 @@ from optics.waves.coherent import (
     reflection,
 )
 from optics.waves.curves import Points
+from optics.waves.elementary import turn, upper_root
 from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
@@ -78,7 +79,7 @@ def power_on_path(
 def _halves_on_path(view: View, points: Points, *, dips: bool) -> tuple[Complex, Complex, Complex]:
     """Return the film's normal wave number and the reflections of both halves: what its thickness does not touch."""
     scene, film, q = view.scene, view.film, points.q
-    kz = 1j * np.sqrt(-points.short_of_film * (film.index + q))
+    kz = upper_root(points.short_of_film * (film.index + q))
     own = admittances(kz, film.eps)
     up, down = (
         reflection(own, _face_on_path(view, q, layers, side.touching, dips=dips))
@@ -91,7 +92,7 @@ def _face_on_path(view: View, q: Complex, layers: tuple[int, ...], touching: int
     pile = []
     for j in layers:
         kz = normal_inside(view.eps[j], q)
-        pile.append((admittances(kz, view.eps[j]), np.exp(2j * view.phase[j] * kz)))
+        pile.append((admittances(kz, view.eps[j]), turn(view.phase[j], kz)))
     kz = normal_inside(view.eps[touching], q) if dips else normal_outside(view.index[touching], q)
     return fold(pile, admittances(kz, view.eps[touching]))
 

@@ -19,6 +19,7 @@ from optics.transport.slices import Standing, from_above, from_below, gauss, pat
 from optics.waves import curves
 from optics.waves.coherent import Complex, Real, admittances, reflection, squared
 from optics.waves.curves import Points
+from optics.waves.elementary import turn, upper_root
 from optics.waves.modes import faces
 from optics.waves.paths import Index, Rows
 from optics.waves.plates import Waves
@@ -72,10 +73,10 @@ def _power(scene: Scene, edges: Real, settings: Settings) -> Real:
 def _power_on_path(view: View, edges: Real, points: Points, weight: Real) -> Real:
     """Return the power of every slice from the nodes of some rows, (row, slice); see `optics.waves.source.density`."""
     film = view.film
-    kz = 1j * np.sqrt(-points.short_of_film * (film.index + points.q))
+    kz = upper_root(points.short_of_film * (film.index + points.q))
     own = admittances(kz, film.eps)
     up, down = (reflection(own, face) for face in faces(view, points.q))
-    loop = up * down * np.exp(2j * film.phase * kz)
+    loop = up * down * turn(film.phase, kz)
     scale = points.q / film.real_index * points.slope * weight / (1.0 - loop)
     h = film.in_plane
     s = 0.75 * h / kz * scale[0]
@@ -106,7 +107,7 @@ def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
     if nodes.bound:
         photons = nodes.points.q < scene.far_end[nodes.owner, None]
         ends = (ends[0] * photons, ends[1] * photons)
-    strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * np.exp(2j * film.phase * kz))
+    strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * turn(film.phase, kz))
     twice = np.exp(2j * film.phase * kz.real)
     for polarisation in nodes.polarisations:
         block = _Block(over, twice, *_weights(film, nodes.points.q, kz, polarisation))

@@ -21,11 +21,11 @@ from optics.waves.modes import find as find_modes
 from optics.waves.paths import Index, Rows
 from optics.waves.scene import Scene
 
-PER_LINE, PER_END = 12, 7
+PER_LINE, PER_END = 8, 7
 """Nodes on each side of a guided line, and towards an end of the bound zone."""
 
-MANY_WIDTHS = 7.0
-"""Logarithm of the cell over the line's width beyond which twice as many nodes are needed."""
+FEW_WIDTHS, MANY_WIDTHS = 3.0, 7.0
+"""Logarithms of the cell over the line's width beyond which twice and three times as many nodes are needed."""
 
 BLOCK = 500
 """Nodes done at a time: with fifty slices the arrays stay in cache."""
@@ -140,7 +140,8 @@ def bound_nodes(scene: Scene) -> Iterator[Nodes]:
 def _about_lines(line: Real, length: Real, width: Real) -> tuple[Real, Real]:
     """Return nodes and weights, (cell, node), from lines of half width ``width`` on, to a signed ``length`` away."""
     top = np.arcsinh(np.abs(length) / width)
-    nodes, weights = gauss(PER_LINE if top.max(initial=0.0) < MANY_WIDTHS else 2 * PER_LINE)
+    reach = float(top.max(initial=0.0))
+    nodes, weights = gauss(PER_LINE if reach < FEW_WIDTHS else 2 * PER_LINE if reach < MANY_WIDTHS else 3 * PER_LINE)
     turn, wide = top[:, None] * nodes, width[:, None]
     return line[:, None] + np.sign(length)[:, None] * wide * np.sinh(turn), wide * top[:, None] * np.cosh(
         turn

@@ -9,10 +9,8 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-Real = NDArray[np.float64]
-Complex = NDArray[np.complex128]
+from optics.waves.elementary import Complex, Real, root, upper_root
 
 
 def squared(z: Complex) -> Real:
@@ -28,14 +26,12 @@ admittance of what stands behind its layer."""
 def normal_on_axis(eps: Complex, q: Real) -> Complex:
     """Return the normal wave number sqrt(eps - q^2) for real ``q``, the root with Im >= 0.
 
-    The principal root is the right one because Im eps >= 0; its cut is never crossed on the real axis.
     """
     # a node may round to a layer's own light line, where the layer's admittance would be an exact zero over zero
     if eps.imag.any():
         gap = eps - q * q
         gap += OFF_THE_LINE
-        root: Complex = np.sqrt(gap)
-        return root
+        return upper_root(gap)
     height = eps.real - q * q
     height += OFF_THE_LINE
     clear = np.empty(height.shape, dtype=complex)
@@ -49,8 +45,7 @@ def normal_inside(eps: Complex, q: Complex) -> Complex:
 
     Results are even in it, so either root would serve; this one lets exp(2 i kz d) decay.
     """
-    root: Complex = 1j * np.sqrt(q * q - eps)
-    return root
+    return upper_root(eps - q * q)
 
 
 def normal_outside(index: Complex, q: Complex) -> Complex:
@@ -64,8 +59,10 @@ def normal_outside(index: Complex, q: Complex) -> Complex:
     turned.real = gap.imag
     # a riser that starts at the branch point runs along the cut: the shift puts it on the evanescent side
     turned.imag = 1e-300 - gap.real
-    root: Complex = np.exp(0.25j * np.pi) * np.sqrt(turned) * np.sqrt(index + q)
-    return root
+    out = root(turned)
+    out *= root(index + q)
+    out *= np.exp(0.25j * np.pi)
+    return out
 
 
 def admittances(kz: Complex, eps: Complex) -> Complex:

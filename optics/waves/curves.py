@@ -9,12 +9,9 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.waves.elementary import Complex, Crossing, Real
 from optics.waves.paths import Index, Rows
-
-Real = NDArray[np.float64]
-Complex = NDArray[np.complex128]
 
 DEPTH = 0.7
 """How far a dip leaves the real axis, in units of the angle it runs through over pi/2."""
@@ -47,10 +44,11 @@ def on_panel(rows: Rows, u: Real, film: Complex, left: Real | None = None) -> Po
     sine = np.sin(0.5 * np.pi * u)
     cosine = np.sin(0.5 * np.pi * (1.0 - u if left is None else left))
     width = high - low
-    short = np.empty(u.shape, dtype=complex)
-    short.real = (film.real - high) + width * (cosine * cosine)
+    q = low + width * (sine * sine)
+    short = np.empty(q.shape, dtype=complex)
+    np.add(film.real - high, width * (cosine * cosine), out=short.real)
     short.imag = film.imag
-    return Points(low + width * (sine * sine), (np.pi * width) * (sine * cosine), short)
+    return Points(q, (np.pi * width) * (sine * cosine), short)
 
 
 def on_crowded_panel(rows: Rows, u: Real, film: Complex) -> Points:
@@ -81,10 +79,19 @@ def on_dip(rows: Rows, u: Real, film: Complex, start: Real | None = None) -> Poi
         rest, step = np.cos(0.5 * np.pi * u) ** 2, 0.5 * np.pi * np.sin(np.pi * u)
     run = 0.5 * np.pi - first
     dip = DEPTH * run / (0.5 * np.pi)
-    to_go = run * rest + 1j * dip * np.sin(np.pi * rest)
-    q = end * np.cos(to_go)
-    slope = end * np.sin(to_go) * (run + 1j * np.pi * dip * np.cos(np.pi * rest)) * step
-    return Points(q, slope, (film - end) + 2.0 * end * np.sin(0.5 * to_go) ** 2)
+    half_angle, sag, sag_slope = 0.5 * run * rest, dip * np.sin(np.pi * rest), np.pi * dip * np.cos(np.pi * rest)
+    # to go are the angle 2 half_angle + i sag; its sine and 1 - cosine from exp(i angle) - 1, which keeps small ones
+    less_one = Crossing(half_angle, 0.5 * sag).turn_less_one()
+    over = 1.0 / (1.0 + less_one)
+    over *= less_one
+    drop = -0.5 * less_one
+    drop *= over
+    sine = -0.5j * (less_one + over)
+    speed = np.empty(sine.shape, dtype=complex)
+    speed.real, speed.imag = run * step, sag_slope * step
+    speed *= sine
+    fallen = end * drop
+    return Points(end - fallen, end * speed, (film - end) + fallen)
 
 
 def on_riser(rows: Rows, u: Real, film: Complex) -> Points:
@@ -96,10 +103,10 @@ def on_riser(rows: Rows, u: Real, film: Complex) -> Points:
     reach = end / film.real
     sine, cosine = np.sin(0.5 * np.pi * u), np.cos(0.5 * np.pi * u)
     height = reach * film.imag
-    q = np.empty(u.shape, dtype=complex)
+    q = np.empty((len(rows), u.shape[1]), dtype=complex)
     q.real = end
     q.imag = height * (sine * sine)
-    short = np.empty(u.shape, dtype=complex)
+    short = np.empty(q.shape, dtype=complex)
     short.real = film.real - end
     short.imag = film.imag * (1.0 - reach) + height * (cosine * cosine)
     return Points(q, 1j * np.pi * height * (sine * cosine), short)

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from optics.waves.coherent import Complex, Real, admittances, fold, normal_inside, normal_outside, reflection
 from optics.waves.curves import Points, on_panel
+from optics.waves.elementary import root, turn
 from optics.waves.paths import Index, Integral, Rows, integrate
 from optics.waves.scene import Scene, View
 
@@ -274,9 +275,9 @@ def _secants(
 def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:
     """Return X, the round trip through the core, (polarisation, row, node)."""
     core, place = resonator.core, resonator.layers.index(resonator.core)
-    kz = np.sqrt(view.eps[core] - q * q)
+    kz = root(view.eps[core] - q * q)
     own = admittances(kz, view.eps[core])
-    trip: Complex = np.exp(2j * view.phase[core] * kz)
+    trip = turn(view.phase[core], kz)
     piles = (resonator.layers[:place][::-1], resonator.above), (resonator.layers[place + 1 :], resonator.below)
     for layers, behind in piles:
         trip = trip * reflection(own, _face(view, q, layers, behind))
@@ -287,7 +288,7 @@ def _face(view: View, q: Complex, layers: tuple[int, ...], behind: int) -> Compl
     pile = []
     for j in layers:
         kz = normal_inside(view.eps[j], q)
-        pile.append((admittances(kz, view.eps[j]), np.exp(2j * view.phase[j] * kz)))
+        pile.append((admittances(kz, view.eps[j]), turn(view.phase[j], kz)))
     return fold(pile, admittances(normal_outside(view.index[behind], q), view.eps[behind]))
 
 

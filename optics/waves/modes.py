@@ -12,6 +12,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 
 from optics.waves.coherent import Complex, Real, admittances, fold, normal_inside, normal_outside, reflection
+from optics.waves.elementary import turn
 from optics.waves.guide import Guide, Mask, guide, lossless, mismatch, nodes_and_angle, outer_roots
 from optics.waves.modefields import absorbed_shares
 from optics.waves.scene import Index, Scene, View
@@ -341,12 +342,11 @@ def polarised_density(view: View, q: Complex, polarisation: Index) -> Complex:
     """Return one polarisation's part of the complex power density of `optics.waves.source`, (row, node)."""
     film = view.film
     kz = normal_inside(film.eps, q)
-    kz = np.where(kz == 0.0, 1e-150, kz)
     magnetic = (polarisation == 1)[:, None]
     own = admittances(kz, film.eps)
     up, down = (np.where(magnetic, r[1], r[0]) for r in (reflection(own, face) for face in faces(view, q)))
     mean_up, mean_down = film.moments(2j * film.phase * kz)
-    loop = up * down * np.exp(2j * film.phase * kz)
+    loop = up * down * turn(film.phase, kz)
     both, one_way = 1.0 + loop, up * mean_up + down * mean_down
     h = film.in_plane
     s = 0.75 * h / kz * (both + one_way)
@@ -363,7 +363,7 @@ def faces(view: View, q: Complex) -> tuple[Complex, Complex]:
         pile = []
         for j in layers:
             kz = normal_inside(view.eps[j], q)
-            pile.append((admittances(kz, view.eps[j]), np.exp(2j * view.phase[j] * kz)))
+            pile.append((admittances(kz, view.eps[j]), turn(view.phase[j], kz)))
         touching = side.touching
         out.append(fold(pile, admittances(normal_outside(view.index[touching], q), view.eps[touching])))
     return out[0], out[1]

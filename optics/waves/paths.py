@@ -106,7 +106,7 @@ def _keep_heap() -> None:
 
 
 Density = Callable[[Rows, Real], Real]
-"""Takes rows and curve parameters (row, node); returns (quantity, row, node), the Jacobian included."""
+"""Takes rows and curve parameters (row or 1, node); returns (quantity, row, node), the Jacobian included."""
 
 
 def integrate(
@@ -184,4 +184,8 @@ def _block(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
 
 
 def _at(rows: Rows, nodes: Real) -> Real:
-    return rows.start[:, None] + (rows.stop - rows.start)[:, None] * nodes
+    """Return the curve parameter at the nodes of every row; one row for all where their pieces agree."""
+    start, run = rows.start[:, None], (rows.stop - rows.start)[:, None]
+    if (start == start[0]).all() and (run == run[0]).all():
+        start, run = start[:1], run[:1]
+    return start + run * nodes

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from optics.waves.coherent import Complex, Outlook, Real, admittances, look, normal_on_axis, reflection, squared
 from optics.waves.curves import middle
+from optics.waves.elementary import turn, upper_root
 from optics.waves.scene import Side, View
 from optics.waves.shelf import kept_for
 
@@ -28,7 +29,7 @@ class Waves:
         self.kept = kept_for(lambda: view.scene.halves, view.owner, q)
         if short_of_film is not None:
             film = view.film.index
-            self.kept.get(("kz", view.scene.film), lambda: np.sqrt(short_of_film * (film + q)))
+            self.kept.get(("kz", view.scene.film), lambda: upper_root(short_of_film * (film + q)))
         self._film_turn: Complex | None = None
 
     def kz(self, medium: int) -> Complex:
@@ -48,8 +49,7 @@ class Waves:
         return self.own(medium), self._film_turn
 
     def _turn(self, medium: int) -> Complex:
-        turn: Complex = np.exp(2j * self.view.phase[medium] * self.kz(medium))
-        return turn
+        return turn(self.view.phase[medium], self.kz(medium))
 
     def look(self, layers: tuple[int, ...], behind: int) -> Outlook:
         """Look outwards through ``layers`` (nearest first) at the medium ``behind``."""

@@ -10,13 +10,11 @@ from dataclasses import dataclass
 from typing import Any, Protocol, TypeVar
 
 import numpy as np
-from numpy.typing import NDArray
 from scipy.special import exprel
 
 from optics.waves.coherent import squared
+from optics.waves.elementary import Complex, Crossing, Real, expm1
 
-Real = NDArray[np.float64]
-Complex = NDArray[np.complex128]
 Wave = TypeVar("Wave", Real, Complex)
 
 
@@ -39,7 +37,8 @@ def uniform(z: Wave) -> tuple[Wave, Wave]:
 
 def _complex_exprel(z: Complex) -> Complex:
     z = np.where(z == 0.0, 1e-300, z)
-    out: Complex = np.expm1(z) / z
+    out = expm1(z)
+    out /= z
     return out
 
 
@@ -90,37 +89,13 @@ class Cavity:
     turn_less_one: Complex
     loop: Complex
     gain: Complex  # 1/(1 - loop)
-    crossing: "Crossing | None"  # real q only
-
-
-@dataclass(frozen=True)
-class Crossing:
-    """One crossing of the film at real q: phase Re kz d, fading Im kz d, and functions of the two."""
-
-    angle: Real
-    fading: Real
-    sine: Real
-    cosine: Real
-    damping_less_one: Real  # exp(-2 fading) - 1
-
-    def turn_less_one(self) -> Complex:
-        """Return exp(2 i kz d) - 1 without cancellation, from real functions: quicker than complex ones."""
-        dip = -2.0 * self.sine * self.sine  # cos(2 angle) - 1
-        out = np.empty(self.angle.shape, dtype=complex)
-        out.real = self.damping_less_one * (1.0 + dip) + dip
-        out.imag = (1.0 + self.damping_less_one) * (2.0 * self.sine * self.cosine)
-        return out
-
-
-def _cross(film: Film, kz: Complex) -> Crossing:
-    angle, fading = film.phase * kz.real, film.phase * kz.imag
-    return Crossing(angle, fading, np.sin(angle), np.cos(angle), np.expm1(-2.0 * fading))
+    crossing: Crossing
 
 
 def cavity(film: Film, q: Any, kz: Complex, up: Complex, down: Complex) -> Cavity:
     """Close the round trip through the film."""
-    crossing = _cross(film, kz) if np.isrealobj(q) else None
-    turn_less_one = crossing.turn_less_one() if crossing else np.expm1(2j * film.phase * kz)
+    crossing = Crossing(film.phase * kz.real, film.phase * kz.imag)
+    turn_less_one = crossing.turn_less_one()
     loop = up * down
     loop *= 1.0 + turn_less_one
     gain = 1.0 - loop
@@ -174,7 +149,7 @@ class Handed:
 
 def handed(at: Cavity) -> Handed:
     """Return what the dipoles send towards either face, all passes summed; real ``q``."""
-    crossing = at.crossing or _cross(at.film, at.kz)
+    crossing = at.crossing
     damping = 1.0 + crossing.damping_less_one
     near_up, near_down, beat_up, beat_down = _intensities(at.film, crossing)
     weight = _weights(at)
@@ -192,9 +167,10 @@ def _intensities(film: Film, crossing: Crossing) -> tuple[Real, Real, Complex, C
         near = np.where(still, 1.0, crossing.damping_less_one / np.where(still, 1.0, -2.0 * fading))
         beat = np.empty(angle.shape, dtype=complex)
         # the mean of exp(2 i angle x) is exp(i angle) sin(angle)/angle
-        swing = crossing.sine / np.where(angle == 0.0, 1.0, angle)
-        np.multiply(swing, crossing.sine, out=beat.imag)
-        np.multiply(np.where(angle == 0.0, 1.0, swing), crossing.cosine, out=beat.real)
+        level = angle == 0.0
+        over = 1.0 / np.where(level, 1.0, angle)
+        np.multiply(crossing.sine_squared, over, out=beat.imag)
+        np.multiply(np.where(level, 1.0, crossing.sine_cosine), over, out=beat.real)
         return near, near, beat, beat
     fade_up, fade_down = moments(-2.0 * fading)
     turn: Complex = np.zeros(angle.shape, dtype=complex)
