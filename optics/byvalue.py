@@ -4,12 +4,12 @@ from dataclasses import fields
 from typing import Any
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-FloatArray = NDArray[np.float64]
+from optics.arrays import Real
 
 
-def read_only(values: ArrayLike) -> FloatArray:
+def read_only(values: ArrayLike) -> Real:
     """Return a copy of `values` as a float64 array that nobody can write into."""
     array = np.array(values, dtype=np.float64)
     array.flags.writeable = False

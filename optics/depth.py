@@ -5,7 +5,8 @@ from typing import Literal, TypeAlias
 
 import numpy as np
 
-from optics.byvalue import ByValue, FloatArray
+from optics.arrays import Real
+from optics.byvalue import ByValue
 from optics.faults import Faults, found
 from optics.spectrum import numbers
 
@@ -109,8 +110,8 @@ class DepthTable(ByValue):
         The file they were read from and that file's hash; no part of the value.
     """
 
-    depth_nm: FloatArray
-    births: FloatArray
+    depth_nm: Real
+    births: Real
     path: str = field(default="", compare=False)
     sha256: str = field(default="", compare=False)
 
@@ -167,14 +168,14 @@ def turned(depth: Depth, thickness_nm: float) -> Depth:
     return depth
 
 
-def in_film(table: DepthTable, thickness_nm: float) -> tuple[FloatArray, FloatArray]:
+def in_film(table: DepthTable, thickness_nm: float) -> tuple[Real, Real]:
     """Return depths [nm] and births of a table cut to a film that reaches from 0 to `thickness_nm`."""
     inside = (table.depth_nm > 0.0) & (table.depth_nm < thickness_nm)
     depth = np.concatenate([[0.0], table.depth_nm[inside], [thickness_nm]])
     return depth, np.interp(depth, table.depth_nm, table.births)
 
 
-def _check_rows(faults: Faults, depth: FloatArray, births: FloatArray) -> None:
+def _check_rows(faults: Faults, depth: Real, births: Real) -> None:
     if not 2 <= depth.size <= MOST_ROWS:
         faults.add("depth_nm", f"found {depth.size} rows, expected 2 to {MOST_ROWS}")
     if births.size != depth.size:

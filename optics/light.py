@@ -4,7 +4,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.byvalue import ByValue, FloatArray, read_only
+from optics.arrays import Real
+from optics.byvalue import ByValue, read_only
 from optics.faults import Faults
 from optics.radiation import FromAbsorption
 from optics.spectrum import Gaussian, Spectrum, SpectrumTable, ascending, given_per_nm
@@ -25,7 +26,7 @@ class Light(ByValue):
         What the film gives birth to, or what is seen of it outside.
     """
 
-    wavelengths_nm: FloatArray
+    wavelengths_nm: Real
     spectrum: Spectrum
 
     def __post_init__(self) -> None:
@@ -50,7 +51,7 @@ class Light(ByValue):
         return float(self.wavelengths_nm[0]), float(self.wavelengths_nm[-1])
 
 
-def checked_wavelengths(values: object) -> FloatArray:
+def checked_wavelengths(values: object) -> Real:
     """Return wavelengths [nm] as a read-only array, or refuse what is not ascending or not in nm."""
     faults = Faults("light")
     wavelengths = ascending(faults, "wavelengths_nm", values)
@@ -64,7 +65,7 @@ def checked_wavelengths(values: object) -> FloatArray:
     return wavelengths
 
 
-def even_wavelengths(*, from_nm: float, to_nm: float, step_nm: float) -> FloatArray:
+def even_wavelengths(*, from_nm: float, to_nm: float, step_nm: float) -> Real:
     """Return wavelengths [nm] from `from_nm` to `to_nm`, both included, a whole number of steps apart."""
     faults = Faults("light")
     first = faults.number("from_nm", from_nm, unit="nm", above=0, example=700)

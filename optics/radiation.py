@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 from scipy.constants import Boltzmann, c, e, h
 
-from optics.byvalue import FloatArray
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.faults import Faults
 from optics.units import absorption_per_cm, energy_eV
@@ -61,7 +61,7 @@ def emission_per_nm(
     k: ArrayLike,
     temperature_K: float = ROOM_K,
     splitting_eV: float | None = None,
-) -> FloatArray:
+) -> Real:
     """Return the photons that an absorber emits into itself, per volume, time and wavelength [1/(cm3 s nm)].
 
     Parameters
@@ -92,11 +92,11 @@ def emission_per_nm(
     lit = absorption > 0.0
     # 1/(exp(x) - 1) as exp(-x)/(1 - exp(-x)): no overflow; where nothing absorbs x may have either sign
     occupation = np.exp(-over, where=lit, out=np.zeros_like(over)) / -np.expm1(-np.where(lit, over, 1.0))
-    per_nm: FloatArray = modes * absorption * occupation * energy / wavelength  # |dE/dwavelength|
+    per_nm: Real = modes * absorption * occupation * energy / wavelength  # |dE/dwavelength|
     return per_nm
 
 
-def bleaching(over: ArrayLike) -> FloatArray:
+def bleaching(over: ArrayLike) -> Real:
     """Return tanh(x/4), the part of the absorption that carriers leave, at x = (E - splitting)/kT."""
     return np.asarray(np.tanh(0.25 * np.asarray(over, dtype=float)))
 
@@ -113,7 +113,7 @@ def equilibrium_rate(wavelength_nm: ArrayLike, *, n: ArrayLike, k: ArrayLike, te
     return float(trapezoid(rate, np.asarray(wavelength_nm, dtype=float)))
 
 
-def births_from_absorption(spectrum: FromAbsorption, wavelength_nm: FloatArray, index: np.ndarray) -> FloatArray:
+def births_from_absorption(spectrum: FromAbsorption, wavelength_nm: Real, index: np.ndarray) -> Real:
     """Return the births per nm, in no particular unit, or refuse what is no emission spectrum.
 
     Parameters
@@ -146,7 +146,7 @@ def births_from_absorption(spectrum: FromAbsorption, wavelength_nm: FloatArray, 
     return births
 
 
-def _refuse_gain(spectrum: FromAbsorption, wavelength: FloatArray, k: FloatArray) -> None:
+def _refuse_gain(spectrum: FromAbsorption, wavelength: Real, k: Real) -> None:
     if spectrum.splitting_eV is None:
         return
     gain = (k > 0.0) & (energy_eV(wavelength) <= spectrum.splitting_eV)
@@ -158,7 +158,7 @@ def _refuse_gain(spectrum: FromAbsorption, wavelength: FloatArray, k: FloatArray
         )
 
 
-def _refuse_floor(wavelength: FloatArray, k: FloatArray, births: FloatArray) -> None:
+def _refuse_floor(wavelength: Real, k: Real, births: Real) -> None:
     from scipy.integrate import trapezoid
 
     end = f"at the red end of the light, {wavelength[-1]:.6g} nm (k = {k[-1]:.2g})"

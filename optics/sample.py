@@ -5,7 +5,8 @@ from typing import Literal, TypeAlias
 
 import numpy as np
 
-from optics.byvalue import ByValue, FloatArray
+from optics.arrays import Real
+from optics.byvalue import ByValue
 from optics.errors import InputError
 from optics.faults import Faults, is_number
 from optics.spectrum import ascending, numbers
@@ -32,8 +33,8 @@ class PerWavelength(ByValue):
         The number at each.
     """
 
-    wavelength_nm: FloatArray
-    values: FloatArray
+    wavelength_nm: Real
+    values: Real
 
     def __post_init__(self) -> None:
         faults = Faults()
@@ -151,7 +152,7 @@ class NearField:
         object.__setattr__(self, "to_index", top)
 
 
-def at_wavelengths(key: str, amount: Amount, wavelengths_nm: FloatArray) -> FloatArray:
+def at_wavelengths(key: str, amount: Amount, wavelengths_nm: Real) -> Real:
     """Return an amount of the sample at each wavelength; refused where its table does not reach."""
     if not isinstance(amount, PerWavelength):
         return np.full(wavelengths_nm.shape, float(amount))
@@ -164,7 +165,7 @@ def at_wavelengths(key: str, amount: Amount, wavelengths_nm: FloatArray) -> Floa
     return np.interp(wavelengths_nm, amount.wavelength_nm, amount.values)
 
 
-def check_reach(faults: Faults, *, sample: Sample, wavelengths_nm: FloatArray) -> None:
+def check_reach(faults: Faults, *, sample: Sample, wavelengths_nm: Real) -> None:
     """Note tables of a sample that do not reach over the light's wavelengths."""
     for key in ("guided_scatter_per_cm", "recycling_share"):
         with faults.taking_over():

@@ -7,7 +7,8 @@ from typing import TypeAlias
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from optics.byvalue import ByValue, FloatArray, read_only
+from optics.arrays import Real
+from optics.byvalue import ByValue, read_only
 from optics.errors import InputError
 from optics.faults import Faults, as_float, found, is_number
 from optics.radiation import PLACE, FromAbsorption, births_from_absorption
@@ -71,8 +72,8 @@ class SpectrumTable(ByValue):
         The file it was read from and that file's hash; no part of the value.
     """
 
-    wavelength_nm: FloatArray
-    per_nm: FloatArray
+    wavelength_nm: Real
+    per_nm: Real
     seen: str = "inside"
     na: float | None = None
     path: str = field(default="", compare=False)
@@ -100,9 +101,7 @@ class SpectrumTable(ByValue):
 Spectrum: TypeAlias = Gaussian | SpectrumTable | FromAbsorption
 
 
-def births_per_nm(
-    spectrum: Spectrum, wavelengths_nm: ArrayLike, *, film_index: ComplexArray | None = None
-) -> FloatArray:
+def births_per_nm(spectrum: Spectrum, wavelengths_nm: ArrayLike, *, film_index: ComplexArray | None = None) -> Real:
     """Return the births per nm [1/nm], scaled so that they integrate to 1 by the trapezoid rule.
 
     Parameters
@@ -126,9 +125,7 @@ def births_per_nm(
     return given_per_nm(spectrum, wavelengths_nm, film_index=film_index)
 
 
-def given_per_nm(
-    spectrum: Spectrum, wavelengths_nm: ArrayLike, *, film_index: ComplexArray | None = None
-) -> FloatArray:
+def given_per_nm(spectrum: Spectrum, wavelengths_nm: ArrayLike, *, film_index: ComplexArray | None = None) -> Real:
     """Return a spectrum as it is given, wherever it is seen; parameters, scale and refusals of `births_per_nm`."""
     wavelength = np.asarray(wavelengths_nm, dtype=np.float64)
     _check_reach(spectrum, wavelength)
@@ -141,7 +138,7 @@ def given_per_nm(
     return raw / total
 
 
-def weights(wavelengths_nm: ArrayLike) -> FloatArray:
+def weights(wavelengths_nm: ArrayLike) -> Real:
     """Return the trapezoid rule's step [nm] that belongs to each of the ascending wavelengths [nm].
 
     One wavelength alone counts as a step of 1 nm.
@@ -182,7 +179,7 @@ def _absorption_notes(spectrum: FromAbsorption) -> tuple[str, ...]:
     )
 
 
-def ascending(faults: Faults, key: str, values: object) -> FloatArray:
+def ascending(faults: Faults, key: str, values: object) -> Real:
     """Return wavelengths as a read-only ascending array, or note why they are none and return an empty one."""
     array = numbers(faults, key, values)
     if not array.size:
@@ -202,7 +199,7 @@ def ascending(faults: Faults, key: str, values: object) -> FloatArray:
     return array
 
 
-def numbers(faults: Faults, key: str, values: object) -> FloatArray:
+def numbers(faults: Faults, key: str, values: object) -> Real:
     """Return finite numbers as a read-only array, or note why they are none and return an empty one."""
     nothing = read_only([])
     if isinstance(values, np.ndarray):
@@ -222,7 +219,7 @@ def check_na(faults: Faults, na: object) -> float:
     return faults.number("na", na, above=0, at_most=LARGEST_NA, example=0.9)
 
 
-def _raw(spectrum: Spectrum, wavelength: FloatArray, film_index: ComplexArray | None) -> FloatArray:
+def _raw(spectrum: Spectrum, wavelength: Real, film_index: ComplexArray | None) -> Real:
     if isinstance(spectrum, FromAbsorption):
         if film_index is None:
             raise InputError(f'{PLACE}: kind "from-absorption" needs the index of the film')
@@ -231,7 +228,7 @@ def _raw(spectrum: Spectrum, wavelength: FloatArray, film_index: ComplexArray | 
         return np.interp(wavelength, spectrum.wavelength_nm, spectrum.per_nm)
     sigma = spectrum.fwhm_nm / FWHM_PER_SIGMA
     with np.errstate(over="ignore"):  # a peak out of all reach: its births are zero
-        births: FloatArray = np.exp(-0.5 * ((wavelength - spectrum.peak_nm) / sigma) ** 2)
+        births: Real = np.exp(-0.5 * ((wavelength - spectrum.peak_nm) / sigma) ** 2)
     return births
 
 
@@ -240,7 +237,7 @@ def _cumulative(spectrum: Gaussian, wavelength: float) -> float:
     return 0.5 * math.erfc((spectrum.peak_nm - wavelength) / (sigma * math.sqrt(2.0)))
 
 
-def _check_reach(spectrum: Spectrum, wavelength: FloatArray) -> None:
+def _check_reach(spectrum: Spectrum, wavelength: Real) -> None:
     if not isinstance(spectrum, SpectrumTable):
         return
     first, last = float(spectrum.wavelength_nm[0]), float(spectrum.wavelength_nm[-1])

@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 
 from optics.agreement import check_apertures, check_pump, check_spectrum
-from optics.byvalue import FloatArray
+from optics.arrays import Real
 from optics.collection import Collection
 from optics.depth import Depth, check_depth, check_depth_in_film, opposite, turned
 from optics.errors import InputError
@@ -316,7 +316,7 @@ def _check_births(faults: Faults, emitting: Sequence[str], shares: Sequence[obje
         faults.add("layer", f"births_share: the shares add to {total:.6g}, expected 1 over the layers that emit")
 
 
-def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], wavelengths_nm: FloatArray) -> None:
+def check_media(faults: Faults, *, media: Iterable[tuple[str, Material, bool]], wavelengths_nm: Real) -> None:
     """Note materials that do not cover the light, and an emitting one without a positive refractive index."""
     first, last = float(wavelengths_nm[0]), float(wavelengths_nm[-1])
     for place, material, emits in media:

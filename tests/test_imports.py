@@ -12,7 +12,7 @@ import optics
 
 PACKAGE = Path(optics.__file__).parent
 LEVELS = (
-    ("errors", "faults", "byvalue", "units"),
+    ("arrays", "errors", "faults", "byvalue", "units"),
     ("media", "radiation"),
     (
         "agreement",

@@ -5,12 +5,12 @@ from dataclasses import replace
 
 import numpy as np
 
+from optics.arrays import Index
 from optics.fate import ray, wave_account
 from optics.fate.ledger import Account, Ledger, draw_up, merge
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.uneven import doubted, evened, mean_of
 from optics.fate.wave import Settings
-from optics.waves.paths import Index
 
 FEWEST_A_THREAD = 40
 """Wavelengths below which a thread is not worth its start."""

@@ -4,8 +4,8 @@ import math
 
 import numpy as np
 
+from optics.arrays import Complex, Real
 from optics.fate.nearfield import FURTHER, Transfer
-from optics.waves.coherent import Complex, Real
 from optics.waves.scattering import specular_loss
 
 NEAR_METAL_NM = 50.0

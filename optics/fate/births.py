@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.fate.collection import gathered_power
 from optics.fate.ledger import Ledger
@@ -13,7 +14,6 @@ from optics.radiation import EV_PER_K, PLACE, FromAbsorption, bleaching, equilib
 from optics.spectrum import given_per_nm, weights
 from optics.stack import Stack
 from optics.units import energy_eV
-from optics.waves.coherent import Real
 
 SIDES = ("above", "below")
 

@@ -8,14 +8,14 @@ from collections.abc import Callable
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate import ray, wave
 from optics.fate.exits import COVER, FREE_ABOVE, FREE_BELOW, SUBSTRATE, Layout, light_lines, split_panels
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
 from optics.waves import curves
-from optics.waves.coherent import Real
 from optics.waves.curves import Points
-from optics.waves.paths import Index, Integral, Rows, integrate
+from optics.waves.paths import Integral, Rows, integrate
 from optics.waves.scene import Scene
 
 ORDER = 32

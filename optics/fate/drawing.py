@@ -4,13 +4,13 @@ from dataclasses import replace
 
 import numpy as np
 
+from optics.arrays import Complex, Real
 from optics.depth import Decay, DepthTable, Pump, Sheet, in_film
 from optics.errors import InputError
 from optics.fate.pump import Pumped, pumped
 from optics.fate.scenes import Drawing
 from optics.fate.uneven import Rule, rules
 from optics.stack import Stack
-from optics.waves.coherent import Complex, Real
 from optics.waves.depth import SheetProfile, decay, pieces
 from optics.waves.source import Moments, uniform
 

@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate import held
 from optics.fate.guided import VARIANTS, Along, Scatter, follow_modes, follow_rays
 from optics.fate.held import Held
@@ -13,8 +14,6 @@ from optics.fate.trips import Ends
 from optics.fate.uneven import evened
 from optics.fate.wave import Settings
 from optics.sample import Sample, at_wavelengths
-from optics.waves.coherent import Real
-from optics.waves.paths import Index
 from optics.waves.scene import Scene
 
 PLACES = ("to_film", "to_layers", "to_free", "to_outer", "at_edge", "unfinished")

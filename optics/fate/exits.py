@@ -8,9 +8,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.waves.coherent import Real
-from optics.waves.paths import Index
-from optics.waves.plates import Mask, Shell, Waves, is_sink, shell
+from optics.arrays import Index, Mask, Real
+from optics.waves.plates import Shell, Waves, is_sink, shell
 from optics.waves.scene import Scene, Side
 
 FREE_ABOVE, FREE_BELOW, COVER, SUBSTRATE = range(4)

@@ -9,11 +9,11 @@ from dataclasses import dataclass, fields
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate import ray
 from optics.fate.exits import light_lines, split_panels
 from optics.fate.wave import Settings
 from optics.waves import curves
-from optics.waves.coherent import Real
 from optics.waves.modes import bound_modes
 from optics.waves.paths import Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet

@@ -11,13 +11,13 @@ from itertools import pairwise
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate import ray, wave
 from optics.fate.exits import Response, light_lines, split_panels
 from optics.fate.trips import MOST_COUNTED, Ends, Leaving, Network, endless, to_edge
 from optics.fate.wave import Settings
 from optics.waves import curves
-from optics.waves.coherent import Real
-from optics.waves.paths import Index, Integral, Rows, integrate
+from optics.waves.paths import Integral, Rows, integrate
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene, Side
 

@@ -4,13 +4,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Index, Mask, Real
 from optics.fate.exits import COVER, FREE_ABOVE, FREE_BELOW, SUBSTRATE, Layout
-from optics.waves.coherent import Real
-from optics.waves.paths import Index
-
-Mask = NDArray[np.bool_]
 
 ENDS = ("reabsorbed", "waveguided", "substrate", "cover", "free_below", "free_above", "elsewhere")
 """The ends a photon can meet; their shares add to one."""

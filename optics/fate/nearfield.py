@@ -10,17 +10,17 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from optics.arrays import Complex, Index, Real
 from optics.errors import InputError
 from optics.fate import wave
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.wave import Settings
 from optics.sample import NearField
 from optics.waves import curves
-from optics.waves.coherent import Complex, Real
 from optics.waves.curves import Points
 from optics.waves.depth import SheetProfile
 from optics.waves.elementary import upper_root
-from optics.waves.paths import Density, Index, Integral, Rows, integrate
+from optics.waves.paths import Density, Integral, Rows, integrate
 from optics.waves.scene import Scene, View
 from optics.waves.source import Moments, Wave, uniform
 

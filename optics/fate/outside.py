@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.depth import Decay, DepthTable, Pump
 from optics.fate.births import SIDES, Born
 from optics.fate.collection import gathered_power, pattern
@@ -15,7 +16,6 @@ from optics.fate.pump import Pumped
 from optics.fate.scenes import Drawing
 from optics.fate.wave import Settings
 from optics.stack import Stack
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

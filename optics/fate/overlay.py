@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import ArrayLike
 
+from optics.arrays import Real
 from optics.errors import InputError
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     from optics.fate.solve import Result

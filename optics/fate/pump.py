@@ -9,10 +9,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 from scipy.constants import c, h
 
+from optics.arrays import Complex
 from optics.depth import PLACE, Births
 from optics.errors import InputError
 from optics.fate.scenes import Drawing, scenes
-from optics.waves.coherent import Complex, reflection
 from optics.waves.depth import Exponentials, gathered
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene
@@ -161,7 +161,7 @@ def _standing(waves: Waves, absorbed: float, *, from_below: bool) -> Exponential
     """
     scene = waves.view.scene
     layers, behind = (scene.layers_up, scene.above) if from_below else (scene.layers_down, scene.below)
-    amplitude = complex(reflection(waves.own(scene.film), waves.look(layers, behind.touching).face)[0, 0, 0])
+    amplitude = complex(waves.mirror(layers, behind.touching).reflection[0, 0, 0])
     phase = complex(scene.index[scene.film, 0] * scene.phase[scene.film, 0])
     fade = 2.0 * phase.imag
     far: Complex = np.array([-fade, -fade, -fade, -fade], dtype=complex)

@@ -9,15 +9,15 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate.exits import Layout, Response, emerge, light_lines, split_panels
 from optics.fate.ledger import Account, merge
 from optics.fate.wave import Settings
 from optics.fate.wave_account import THINNEST_ZONE, absorbers
 from optics.waves import curves
-from optics.waves.coherent import Real
 from optics.waves.curves import Points
 from optics.waves.lines import Resonator, Value, echoes, find, integrate_with_lines, resonators
-from optics.waves.paths import Index, Integral, Rows
+from optics.waves.paths import Integral, Rows
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.source import first_flight

@@ -26,8 +26,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.ends import PLACES, SampleEnds
-from optics.waves.coherent import Real
 
 SPHERE, LOST_EDGES = "sphere", "lost edges"
 READINGS = ("faces", "wide", SPHERE)

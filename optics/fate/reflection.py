@@ -4,7 +4,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from optics.waves.coherent import Real
+from optics.arrays import Real
 from optics.waves.plates import Waves, shell
 from optics.waves.scene import Scene, Side
 

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.account import ledger_of
 from optics.fate.births import born_inside
 from optics.fate.drawing import drawing_of
@@ -20,7 +21,6 @@ from optics.roughness import graded
 from optics.sample import Sample, at_wavelengths
 from optics.spectrum import weights
 from optics.stack import Stack
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

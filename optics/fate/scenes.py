@@ -5,9 +5,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.waves.coherent import Complex, Real
-from optics.waves.plates import Mask
-from optics.waves.scene import Index, Scene, Side
+from optics.arrays import Complex, Index, Mask, Real
+from optics.waves.scene import Scene, Side
 from optics.waves.source import Moments, uniform
 
 SWALLOWED_WITHIN_NM = 20_000.0

@@ -10,8 +10,8 @@ from itertools import pairwise
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.scenes import Drawing, scenes
-from optics.waves.coherent import Real
 from optics.waves.plates import Waves, meet
 from optics.waves.scene import Scene, Side
 

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.assumptions import assumptions
 from optics.fate import advice, births, nearfield, outside
 from optics.fate.account import ledger_of
@@ -23,7 +24,6 @@ from optics.roughness import graded
 from optics.spectrum import SpectrumTable, weights
 from optics.stack import Stack
 from optics.units import energy_eV
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

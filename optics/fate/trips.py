@@ -9,15 +9,12 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Index, Mask, Real
 from optics.fate.exits import Response, coupled
-from optics.waves.coherent import Real
 from optics.waves.plates import Shell, Waves, is_sink, shell
 
 Leaving = tuple[Real, Real]
-Mask = NDArray[np.bool_]
-Index = NDArray[np.intp]
 
 MOST_COUNTED = 40
 """Round trips counted one by one; where more fit before the edge, their whole number is averaged over one trip."""

@@ -5,9 +5,9 @@ from dataclasses import replace
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.ledger import Ledger
 from optics.fate.scenes import Drawing
-from optics.waves.coherent import Real
 
 FEWEST, MOST = 12, 40
 NODES_PER_PHASE = 12.0

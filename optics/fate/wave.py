@@ -5,21 +5,14 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from optics.arrays import Complex, Index, Real
 from optics.fate.exits import Layout, Response, emerge, light_lines, split_panels
 from optics.waves import curves, source
-from optics.waves.coherent import (
-    Complex,
-    Real,
-    admittances,
-    fold,
-    normal_inside,
-    normal_outside,
-    reflection,
-)
+from optics.waves.coherent import Pair, admittances, fold, normal_inside, normal_outside
 from optics.waves.curves import Points
 from optics.waves.elementary import turn, upper_root
 from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
-from optics.waves.paths import Index, Integral, Rows, integrate
+from optics.waves.paths import Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.shelf import Kept, kept_for
@@ -82,13 +75,13 @@ def _halves_on_path(view: View, points: Points, *, dips: bool) -> tuple[Complex,
     kz = upper_root(points.short_of_film * (film.index + q))
     own = admittances(kz, film.eps)
     up, down = (
-        reflection(own, _face_on_path(view, q, layers, side.touching, dips=dips))
+        _pair_on_path(view, q, layers, side.touching, dips=dips).reflection(own)
         for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True)
     )
     return kz, up, down
 
 
-def _face_on_path(view: View, q: Complex, layers: tuple[int, ...], touching: int, *, dips: bool) -> Complex:
+def _pair_on_path(view: View, q: Complex, layers: tuple[int, ...], touching: int, *, dips: bool) -> Pair:
     pile = []
     for j in layers:
         kz = normal_inside(view.eps[j], q)
@@ -109,15 +102,11 @@ class Emission:
 def emission(waves: Waves) -> Emission:
     """Return what the dipoles radiate into both halves at real ``q``."""
     scene, film = waves.view.scene, waves.view.film
-    above, up, field_up = waves.mirror(scene.layers_up, scene.above.touching)
-    below, down, field_down = waves.mirror(scene.layers_down, scene.below.touching)
-    cavity = source.cavity(film, waves.q, waves.kz(scene.film), up, down)
-    sent = source.handed(cavity)
-    return Emission(
-        source.density(cavity),
-        above.fluxes(sent.up * field_up),
-        below.fluxes(sent.down * field_down),
-    )
+    up = waves.mirror(scene.layers_up, scene.above.touching)
+    down = waves.mirror(scene.layers_down, scene.below.touching)
+    cavity = source.cavity(film, waves.q, waves.kz(scene.film), up.reflection, down.reflection)
+    handed = source.handed(cavity)
+    return Emission(source.density(cavity), up.sent(handed.up), down.sent(handed.down))
 
 
 def open_density(scene: Scene, rows: Rows, u: Real) -> Real:

@@ -2,12 +2,12 @@
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate import wave
 from optics.fate.exits import COVER, FREE_ABOVE, FREE_BELOW, SUBSTRATE, Layout
 from optics.fate.ledger import Account, merge, replaced
 from optics.fate.wave import Settings
-from optics.waves.coherent import Real
-from optics.waves.paths import Index, Integral
+from optics.waves.paths import Integral
 from optics.waves.scene import Scene
 
 THINNEST_ZONE = 1e-12

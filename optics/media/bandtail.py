@@ -5,12 +5,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from optics.arrays import Real
 from optics.media.dispersion import Joined, Medium, Tabulated
 from optics.units import absorption_per_cm, energy_eV, wavelength_nm
 
 __all__ = ["DEEPEST_FLOOR", "SLOWEST_TAIL_EV", "Floor", "find_floor", "log_slope", "rows_of"]
 
-Real = NDArray[np.float64]
 
 SLOWEST_TAIL_EV = 0.1
 """A band tail falls by a factor e within this energy or less (common practice, no source: Urbach energies of usable

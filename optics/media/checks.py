@@ -3,15 +3,14 @@
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Real
 from optics.media.bandtail import DEEPEST_FLOOR, Floor, find_floor, rows_of
 from optics.media.kramers import METHOD, Consistency, kramers_kronig
 from optics.media.material import Material
 
 __all__ = ["Finding", "Fitness", "examine", "floor_warning"]
 
-Real = NDArray[np.float64]
 
 SHARE_WORTH_A_WORD = 0.01
 """Share of the births that must lie on the floor before a warning is given."""

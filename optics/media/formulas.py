@@ -14,6 +14,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.media.domain import checked_range, wavelengths_inside
 from optics.units import um_from_nm
@@ -30,7 +31,6 @@ __all__ = [
     "Sellmeier",
 ]
 
-Floats = NDArray[np.float64]
 Pairs = tuple[tuple[float, float], ...]
 Quads = tuple[tuple[float, float, float, float], ...]
 
@@ -71,7 +71,7 @@ class Formula(ABC):
         return n.astype(np.complex128)
 
     @abstractmethod
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         """Real index at wavelengths [um]."""
 
 
@@ -84,7 +84,7 @@ def _coefficients(name: str, value: object) -> object:
     return float(value)
 
 
-def _powers(terms: Pairs, um: Floats) -> Floats:
+def _powers(terms: Pairs, um: Real) -> Real:
     return sum((c * um**power for c, power in terms), np.zeros_like(um))
 
 
@@ -103,7 +103,7 @@ class Sellmeier(Formula):
     terms: Pairs
     constant: float = 1.0
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         square = um**2
         return np.sqrt(self.constant + sum((b * square / (square - c) for b, c in self.terms), np.zeros_like(um)))
 
@@ -115,7 +115,7 @@ class Cauchy(Formula):
     constant: float
     terms: Pairs = ()
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         return self.constant + _powers(self.terms, um)
 
 
@@ -126,7 +126,7 @@ class Polynomial(Formula):
     constant: float
     terms: Pairs
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         return np.sqrt(self.constant + _powers(self.terms, um))
 
 
@@ -146,7 +146,7 @@ class Mixed(Formula):
     poles: Quads
     terms: Pairs = ()
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         poles = sum((b * um**p / (um**2 - c**q) for b, p, c, q in self.poles), np.zeros_like(um))
         return np.sqrt(self.constant + poles + _powers(self.terms, um))
 
@@ -158,7 +158,7 @@ class Gas(Formula):
     terms: Pairs
     constant: float = 0.0
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         return 1.0 + self.constant + sum((b / (c - um**-2) for b, c in self.terms), np.zeros_like(um))
 
 
@@ -168,7 +168,7 @@ class Herzberger(Formula):
 
     coefficients: tuple[float, float, float, float, float, float]
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         c1, c2, c3, c4, c5, c6 = self.coefficients
         h = 1.0 / (um**2 - 0.028)
         return c1 + c2 * h + c3 * h**2 + c4 * um**2 + c5 * um**4 + c6 * um**6
@@ -180,7 +180,7 @@ class Retro(Formula):
 
     coefficients: tuple[float, float, float, float]
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         c1, c2, c3, c4 = self.coefficients
         ratio = c1 + c2 * um**2 / (um**2 - c3) + c4 * um**2
         return np.sqrt((1.0 + 2.0 * ratio) / (1.0 - ratio))
@@ -192,7 +192,7 @@ class Exotic(Formula):
 
     coefficients: tuple[float, float, float, float, float, float]
 
-    def _n(self, um: Floats) -> Floats:
+    def _n(self, um: Real) -> Real:
         c1, c2, c3, c4, c5, c6 = self.coefficients
         away = um - c5
         return np.sqrt(c1 + c2 / (um**2 - c3) + c4 * away / (away**2 + c6))

@@ -4,13 +4,12 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Real
 from optics.units import energy_eV, wavelength_nm
 
 __all__ = ["METHOD", "Consistency", "kramers_kronig", "transform"]
 
-Real = NDArray[np.float64]
 
 METHOD = "multiply subtractive Kramers-Kronig (Palmer, Williams & Budde, Appl. Opt. 37, 2660, 1998), 3 anchors"
 ANCHORS = 3

@@ -12,8 +12,8 @@ from difflib import get_close_matches
 from pathlib import Path
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.media.dialects import COMMENT, DECIMALS, SEPARATORS, Grid, grid_of_cells, grid_of_text, text_of
 from optics.media.dispersion import Tabulated
@@ -25,7 +25,6 @@ from optics.units import energy_eV
 
 __all__ = ["Hints", "LabTable", "is_workbook", "parse_lab", "read_hashed", "read_lab", "read_table"]
 
-Real = NDArray[np.float64]
 
 _NUMBER_WITHIN = re.compile(r"(^|[\s;,\"'])[+-]?[.,]?\d")  # a cell that begins as a number does
 WORKBOOKS = (".xlsx", ".xlsm")

@@ -8,6 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.constants import c as LIGHT_SPEED
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.media.sheet import shortened, shown
 from optics.units import k_from_absorption, nm_from_um, wavelength_nm
@@ -17,7 +18,6 @@ if TYPE_CHECKING:
 
 __all__ = ["Values", "index_from", "nm_of", "ordered", "value_faults"]
 
-Real = NDArray[np.float64]
 
 PLAUSIBLE_NM = (150.0, 1e5)
 """A table that lies wholly outside is taken for one whose unit is wrong: no film emits below 150 nm or above 0.1 mm."""

@@ -11,6 +11,7 @@ from functools import lru_cache
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.faults import Faults
 from optics.media.bandtail import find_floor, log_slope, rows_of
@@ -21,7 +22,6 @@ from optics.units import absorption_per_cm, energy_eV, k_from_absorption, wavele
 
 __all__ = ["Grafted", "MeasuredTail", "Repair", "Tail", "UrbachTail", "repair"]
 
-Real = NDArray[np.float64]
 
 JOIN_WINDOW_EV = 0.004  # slopes are compared over a few rows, well below the energy of a tail
 ROOM_MEV = 25.85  # kT at 300 K: births that follow from a slower tail's absorption rise without end to the red

@@ -11,7 +11,8 @@ from matplotlib.figure import Figure
 from matplotlib.patheffects import withStroke
 from matplotlib.ticker import MaxNLocator
 
-from optics.output.labels import Real, Spot, anchor, spot_inside, spread
+from optics.arrays import Real
+from optics.output.labels import Spot, anchor, spot_inside, spread
 from optics.output.palette import DARK, ENDS, LIGHT, End
 from optics.units import energy_eV, wavelength_nm
 

@@ -4,9 +4,9 @@ from collections.abc import Sequence
 from typing import NamedTuple
 
 import numpy as np
-from numpy.typing import NDArray
 
-Real = NDArray[np.float64]
+from optics.arrays import Real
+
 CANDIDATES = 401  # places along the plot that are tried; at one pixel in two nothing better is missed
 
 

@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.output.folder import writing
 from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
@@ -20,7 +21,6 @@ if TYPE_CHECKING:
     from optics.transport.depth import InDepth
     from optics.transport.inplane import InPlane
     from optics.transport.receivers import Receivers
-    from optics.waves.coherent import Real
 
 SUMMARY = "summary.json"
 

@@ -8,7 +8,8 @@ from typing import Any
 
 import numpy as np
 
-from optics.byvalue import FloatArray, read_only
+from optics.arrays import Real
+from optics.byvalue import read_only
 from optics.errors import InputError
 from optics.faults import Faults, closest, found, quoted
 from optics.media.labtable import AXES
@@ -43,7 +44,7 @@ def spectrum_from(table: Mapping[str, Any], *, home: Path) -> Spectrum:
     raise InputError(f"{PLACE}: kind: found {found(kind)}, expected one of {words}{cure}")
 
 
-def read_births(path: Path, *, place: str) -> tuple[FloatArray, FloatArray, str]:
+def read_births(path: Path, *, place: str) -> tuple[Real, Real, str]:
     """Read a table of births.
 
     Parameters
@@ -131,7 +132,7 @@ def _file(keys: Keys, home: Path) -> dict[str, Any]:
     return {}
 
 
-def _per_nm(births: str, wavelength: FloatArray) -> FloatArray:
+def _per_nm(births: str, wavelength: Real) -> Real:
     """Return what turns a density per the column's unit into one per nm."""
     if births.endswith("_per_eV"):
         return energy_eV(wavelength) / wavelength  # |dE/dwavelength|

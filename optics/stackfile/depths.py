@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 
-from optics.byvalue import FloatArray
+from optics.arrays import Real
 from optics.collection import PLACE as COLLECTION
 from optics.collection import Collection
 from optics.depth import EXAMPLE, PLACE, Decay, Depth, DepthTable, Pump, Sheet
@@ -69,7 +69,7 @@ def _table(name: Any, home: Path) -> DepthTable:
     raise InputError(faults.lines)
 
 
-def read_profile(path: Path, *, place: str) -> tuple[FloatArray, FloatArray, str]:
+def read_profile(path: Path, *, place: str) -> tuple[Real, Real, str]:
     """Read births against depth.
 
     Parameters

@@ -10,7 +10,8 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Any, NamedTuple
 
-from optics.byvalue import FloatArray, read_only
+from optics.arrays import Real
+from optics.byvalue import read_only
 from optics.collection import Collection
 from optics.faults import Faults, found
 from optics.light import Light, checked_wavelengths, even_wavelengths
@@ -203,7 +204,7 @@ def _tail(faults: Faults, spec: Any, home: Path) -> Tail | None:
     return None
 
 
-def _light(keys: Keys, home: Path) -> tuple[FloatArray, Spectrum]:
+def _light(keys: Keys, home: Path) -> tuple[Real, Spectrum]:
     """Return wavelengths, none when they were refused, and the spectrum."""
     faults = keys.faults
     light = keys.table("light")
@@ -221,7 +222,7 @@ def _light(keys: Keys, home: Path) -> tuple[FloatArray, Spectrum]:
     return wavelengths, spectrum
 
 
-def _wavelengths(light: Keys) -> FloatArray:
+def _wavelengths(light: Keys) -> Real:
     """Return the wavelengths asked for, none when they were refused."""
     some = [key for key in EVEN_KEYS if key in light.given]
     with light.faults.taking_over():

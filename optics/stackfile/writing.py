@@ -6,7 +6,7 @@ from dataclasses import fields
 from pathlib import Path
 from typing import Any
 
-from optics.byvalue import FloatArray
+from optics.arrays import Real
 from optics.depth import Decay, Depth, DepthTable, Pump, Sheet
 from optics.errors import InputError
 from optics.light import Light, even_wavelengths
@@ -165,7 +165,7 @@ def _light(light: Light, home: Path | None) -> dict[str, Any]:
     return _grid(light.wavelengths_nm) | {"spectrum": _spectrum(light.spectrum, home)}
 
 
-def _grid(wavelengths: FloatArray) -> dict[str, Any]:
+def _grid(wavelengths: Real) -> dict[str, Any]:
     """Return first, last and step when these give back the very same wavelengths, else the list."""
     if wavelengths.size > 1:
         span = float(wavelengths[-1] - wavelengths[0])

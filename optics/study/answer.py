@@ -4,6 +4,7 @@ from typing import Any
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.account import ledger_of
 from optics.fate.advice import advise
 from optics.fate.births import born_inside
@@ -13,7 +14,6 @@ from optics.fate.wave import Settings
 from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
-from optics.waves.coherent import Real
 
 ONE_THREAD = Settings(threads=1)
 RAY = "ray_"

@@ -8,6 +8,7 @@ from typing import Any
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.fate.account import ledger_of
 from optics.fate.advice import coherence_length_nm, linewidth
@@ -21,7 +22,6 @@ from optics.stack import Stack
 from optics.study.chance import follow
 from optics.study.keypath import without_doubts
 from optics.study.planewaves import LEAST_K, against_tmm, exchange, plain, reciprocity
-from optics.waves.coherent import Real
 
 PASS, FAIL, NOTE = "pass", "FAIL", "note"
 

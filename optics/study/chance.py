@@ -7,16 +7,12 @@ lot, until each has met its end. What faces do to a ray (power reflected, passed
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Index, Mask, Real
 from optics.fate.ledger import ENDS
 from optics.fate.ray import real_film
-from optics.waves.coherent import Real
 from optics.waves.plates import Waves, meet
 from optics.waves.scene import Scene, Side
-
-Ints = NDArray[np.intp]
-Flags = NDArray[np.bool_]
 
 MOST_STEPS = 100_000
 GOING = -1
@@ -68,7 +64,7 @@ class _Walk:
         self.sink = [self._sink(side) for side in scene.sides]
         self.bound = self.q > scene.open_end[0]
 
-    def _born(self) -> tuple[Real, Ints, Flags]:
+    def _born(self) -> tuple[Real, Index, Mask]:
         """Return cosines, polarisations (s 0, p 1) and ways of rays from dipoles of the film's share in the plane."""
         h, kept = self.scene.in_plane, np.zeros(0)
         pol = np.zeros(0, dtype=np.intp)
@@ -111,11 +107,11 @@ class _Walk:
         own: Real = both[self.pol, 0, np.arange(self.count)]
         return own
 
-    def _sink(self, side: Side) -> Flags:
+    def _sink(self, side: Side) -> Mask:
         least = min((self.scene.index[m, 0].real for m in side.clear), default=np.inf)
         return (self.q > least) & bool(side.plates)
 
-    def ends(self) -> Ints:
+    def ends(self) -> Index:
         """Return the end of every ray, by its place in ``ENDS``."""
         end = np.full(self.count, GOING)
         room = np.full(self.count, self.home)
@@ -133,7 +129,7 @@ class _Walk:
         end[end == GOING] = WAVEGUIDED
         return end
 
-    def _fly(self, go: Ints, end: Ints, room: Ints, left: Real, first: Flags) -> None:
+    def _fly(self, go: Index, end: Index, room: Index, left: Real, first: Mask) -> None:
         lost = self.lots.random(len(go)) < -np.expm1(-self.depth[room[go], go] * left[go])
         at_home = room[go] == self.home
         later_bound = self.bound[go] & ~first[go]
@@ -143,7 +139,7 @@ class _Walk:
         if not any(side.absorbs and not side.plates for side in self.scene.sides):
             end[go[~lost & self.bound[go]]] = WAVEGUIDED  # nothing but the group can take it any more
 
-    def _meet(self, go: Ints, end: Ints, room: Ints, down: Flags) -> None:
+    def _meet(self, go: Index, end: Index, room: Index, down: Mask) -> None:
         """Let rays meet the wall ahead: back, on, or swallowed by its layers."""
         lot = self.lots.random(len(go))
         back, on = np.zeros(len(go)), np.zeros(len(go))
@@ -161,14 +157,14 @@ class _Walk:
         room[moved] += np.where(down[moved], 1, -1)
         self._out(moved, end, room)
 
-    def _held(self, go: Ints, end: Ints, room: Ints, down: Flags) -> None:
+    def _held(self, go: Index, end: Index, room: Index, down: Mask) -> None:
         """End rays that come back to the group through plates which they cannot leave."""
         for side, sink in enumerate(self.sink):
             nearest = self.home + (-1 if side == 0 else 1)
             back = (room[go] == nearest) & (down[go] == (side == 0)) & sink[go]
             end[go[back]] = (COVER, SUBSTRATE)[side]
 
-    def _out(self, moved: Ints, end: Ints, room: Ints) -> None:
+    def _out(self, moved: Index, end: Index, room: Index) -> None:
         for side, outside in enumerate((-1, len(self.rooms))):
             given = self.scene.sides[side]
             kind = (FREE_ABOVE, FREE_BELOW)[side] if given.free else (COVER, SUBSTRATE)[side]

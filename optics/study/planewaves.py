@@ -7,6 +7,7 @@ from itertools import combinations, pairwise
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.account import ledger_of
 from optics.fate.drawing import drawn
 from optics.fate.ledger import Ledger
@@ -14,7 +15,6 @@ from optics.fate.reflection import PlaneWaves, plane_waves
 from optics.fate.scenes import Drawing, scenes, swallows
 from optics.fate.wave import Settings
 from optics.stack import Stack
-from optics.waves.coherent import Real
 from optics.waves.source import uniform
 
 ANGLES_DEG = (0.0, 35.0, 65.0)

@@ -8,8 +8,8 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Real
 from optics.errors import InputError
 from optics.fate.ledger import SHARES
 from optics.media.material import Material
@@ -25,7 +25,6 @@ from optics.tolerances import HALF_WIDTH_PER_SD
 if TYPE_CHECKING:
     import pandas as pd
 
-Real = NDArray[np.float64]
 
 FEWEST_SAMPLES = 16
 QUANTILES = {"low_95": 0.025, "low_68": 0.16, "median": 0.5, "high_68": 0.84, "high_95": 0.975}

@@ -12,9 +12,9 @@ from typing import TYPE_CHECKING
 import numpy as np
 from scipy.constants import c
 
+from optics.arrays import Real
 from optics.fate.scenes import Drawing
 from optics.transport import rings
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.assumptions import assumptions
 from optics.errors import InputError
 from optics.fate import births
@@ -20,8 +21,6 @@ from optics.spectrum import weights
 from optics.stack import Stack
 from optics.transport import depthray, depthwave
 from optics.transport.landing import AT, ENDS, Landed
-from optics.waves.coherent import Real
-from optics.waves.paths import Index
 from optics.waves.source import uniform
 
 SLICES = 50

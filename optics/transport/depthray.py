@@ -5,14 +5,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate import ray
 from optics.fate.exits import Response, light_lines, split_panels
 from optics.fate.trips import Network
 from optics.transport.landing import AT, ENDS, SEEN_FROM, Landed, Landing, gather, leave_group
 from optics.transport.slices import MOST_FADING, gauss
 from optics.waves import curves
-from optics.waves.coherent import Real
-from optics.waves.paths import Index
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene
 

@@ -7,9 +7,9 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.transport.depth import DepthMatrix, InDepth
 from optics.transport.landing import ENDS
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -11,17 +11,18 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Complex, Index, Real
 from optics.fate import wave
 from optics.fate.wave import Settings
 from optics.transport.landing import ENDS, SEEN_FROM, Landed, Landing, end_amounts, gather
 from optics.transport.nodes import BLOCK, Nodes, bound_nodes, open_nodes
 from optics.transport.slices import Standing, from_above, from_below, gauss, path_means, standing
 from optics.waves import curves
-from optics.waves.coherent import Complex, Real, admittances, reflection, squared
+from optics.waves.coherent import admittances, squared
 from optics.waves.curves import Points
 from optics.waves.elementary import turn, upper_root
-from optics.waves.modes import faces
-from optics.waves.paths import Index, Rows
+from optics.waves.modes import pairs
+from optics.waves.paths import Rows
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene, View
 from optics.waves.source import Film
@@ -75,7 +76,7 @@ def _power_on_path(view: View, edges: Real, points: Points, weight: Real) -> Rea
     film = view.film
     kz = upper_root(points.short_of_film * (film.index + points.q))
     own = admittances(kz, film.eps)
-    up, down = (reflection(own, face) for face in faces(view, points.q))
+    up, down = (pair.reflection(own) for pair in pairs(view, points.q))
     loop = up * down * turn(film.phase, kz)
     scale = points.q / film.real_index * points.slope * weight / (1.0 - loop)
     h = film.in_plane
@@ -95,15 +96,15 @@ def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
     """Add what the nodes of one block say about every pair of slices and every end."""
     waves = Waves(scene.view(nodes.owner), nodes.points.q, nodes.points.short_of_film)
     film = waves.view.film
-    kz, own = waves.kz(scene.film), waves.own(scene.film)
-    looks = (
-        waves.look(scene.layers_up, scene.above.touching),
-        waves.look(scene.layers_down, scene.below.touching),
+    kz = waves.kz(scene.film)
+    halves = (
+        waves.mirror(scene.layers_up, scene.above.touching),
+        waves.mirror(scene.layers_down, scene.below.touching),
     )
-    mirrors = (reflection(own, looks[0].face), reflection(own, looks[1].face))
+    mirrors = (halves[0].reflection, halves[1].reflection)
     over = standing(edges[nodes.owner], kz)
     responses = [wave.response(waves, k) if s.plates and not nodes.bound else None for k, s in enumerate(scene.sides)]
-    ends = end_amounts(waves, responses, looks, mirrors, over.whole[:, 0], bound=nodes.bound)
+    ends = end_amounts(waves, responses, halves, over.whole[:, 0], bound=nodes.bound)
     if nodes.bound:
         photons = nodes.points.q < scene.far_end[nodes.owner, None]
         ends = (ends[0] * photons, ends[1] * photons)

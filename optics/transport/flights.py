@@ -11,11 +11,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate import ray, wave
 from optics.fate.exits import Response, light_lines, split_panels
 from optics.fate.trips import Network, way
 from optics.waves import curves
-from optics.waves.coherent import Real
 from optics.waves.paths import Rows, fejer
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene

@@ -7,12 +7,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Complex, Real
 from optics.fate.drawing import drawing_of
 from optics.fate.scenes import Drawing, scenes
 from optics.fate.solve import medium_names
 from optics.stack import Stack
 from optics.units import absorption_per_cm
-from optics.waves.coherent import Complex, Real
 from optics.waves.modes import POLARISATIONS, Modes, bound_modes, neighbours
 
 if TYPE_CHECKING:

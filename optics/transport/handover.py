@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.account import ledger_of
 from optics.fate.drawing import drawing_of
 from optics.fate.ends import SampleEnds, follow
@@ -23,7 +24,6 @@ from optics.transport.inplane import InPlane, inplane
 from optics.transport.landing import ENDS
 from optics.transport.receivers import ALL, Receivers, receivers
 from optics.units import absorption_per_cm
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.assumptions import assumptions
 from optics.fate import births
 from optics.fate.account import ledger_of
@@ -21,8 +22,6 @@ from optics.stack import Stack
 from optics.transport import compact, flights, rings
 from optics.transport.flights import Taken
 from optics.transport.guided import Guided, guided_modes, modes_table
-from optics.waves.coherent import Real
-from optics.waves.scene import Index
 
 if TYPE_CHECKING:
     import pandas as pd

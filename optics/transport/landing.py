@@ -5,10 +5,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Index, Real
 from optics.fate.exits import Response
 from optics.fate.trips import Network
-from optics.waves.coherent import Complex, Outlook, Real, squared
-from optics.waves.paths import Index
+from optics.waves.coherent import Mirror
 from optics.waves.plates import Waves
 from optics.waves.scene import Scene
 
@@ -95,8 +95,7 @@ class Landed:
 def end_amounts(
     waves: Waves,
     responses: Sequence[Response | None],
-    looks: tuple[Outlook, Outlook],
-    mirrors: tuple[Complex, Complex],
+    halves: tuple[Mirror, Mirror],
     whole: Real,
     *,
     bound: bool,
@@ -107,12 +106,11 @@ def end_amounts(
     ends, ``SEEN_FROM``.
     """
     scene = waves.view.scene
-    up = looks[0].fluxes(squared(1.0 + mirrors[0]))
-    down = looks[1].fluxes(squared(1.0 + mirrors[1]) * whole)
+    up, down = halves[0].sent(1.0), halves[1].sent(whole)
     out = []
     net = None if bound else Network(waves, responses)
     for k, (layers, flux) in enumerate(((scene.layers_up, up), (scene.layers_down, down))):
-        amounts = np.zeros((len(ENDS) + 2, *mirrors[0].shape))
+        amounts = np.zeros((len(ENDS) + 2, *up[0].shape))
         place = AT["guided_elsewhere"] if bound else AT["elsewhere"]
         for i, medium in enumerate(layers):
             if scene.index[medium].imag.any():

@@ -8,17 +8,16 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.arrays import Index, Mask, Real
 from optics.fate import wave
 from optics.fate.exits import light_lines, split_panels
 from optics.fate.wave import Settings
 from optics.transport.slices import gauss
 from optics.waves import curves
-from optics.waves.coherent import Real
 from optics.waves.curves import Points
-from optics.waves.guide import Mask
 from optics.waves.lines import Resonator, echoes, find, no_lines, resonators
 from optics.waves.modes import find as find_modes
-from optics.waves.paths import Index, Rows
+from optics.waves.paths import Rows
 from optics.waves.scene import Scene
 
 PER_LINE, PER_END = 8, 7

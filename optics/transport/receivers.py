@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.assumptions import assumptions
 from optics.fate import births
 from optics.fate.account import ledger_of
@@ -16,7 +17,6 @@ from optics.fate.wave import Settings
 from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
-from optics.waves.coherent import Real
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -8,7 +8,7 @@ from functools import cache
 
 import numpy as np
 
-from optics.waves.coherent import Real
+from optics.arrays import Real
 
 FIRST_NM, LAST_NM = 10.0, 1e8
 """The grid runs from 10 nm to 10 cm."""

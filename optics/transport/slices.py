@@ -11,7 +11,8 @@ from typing import Any
 
 import numpy as np
 
-from optics.waves.coherent import Complex, Real, squared
+from optics.arrays import Complex, Real
+from optics.waves.coherent import squared
 
 MOST_FADING = 690.0
 """Exponents beyond which exp overflows; films this dark pass nothing from slice to slice."""

@@ -1,8 +1,9 @@
 """Plane waves in a pile of thin layers: admittances looking outwards and the net flux at every interface.
 
-The tangential field (electric for s, magnetic for p) and its admittance are continuous across interfaces, so a
-pile is folded into the one admittance Z that its inner face shows (Yeh, Optical Waves in Layered Media, ch. 5).
-With the tangential field F of a face the net flux through it is Re(Z) |F|^2, whatever stands behind.
+The tangential field F (electric for s, magnetic for p) and its partner G, the admittance that stands there times F,
+are continuous across interfaces, so a pile is folded from its far side into the pair at its inner face (Yeh, Optical
+Waves in Layered Media, ch. 5). The net flux through a face is Re(F* G). Pairs are free to a common factor, which is
+never divided out before the end.
 """
 
 from collections.abc import Sequence
@@ -10,12 +11,20 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.waves.elementary import Complex, Real, root, upper_root
+from optics.arrays import Complex, Real
+from optics.waves.elementary import root, upper_root
 
 
 def squared(z: Complex) -> Real:
     """Return the squared modulus, without the square root that ``abs`` would take."""
     return z.real * z.real + z.imag * z.imag
+
+
+def along(one: Complex, other: Complex) -> Real:
+    """Return Re(one* other)."""
+    out: Real = one.real * other.real
+    out += one.imag * other.imag
+    return out
 
 
 OFF_THE_LINE = 1e-16
@@ -24,9 +33,7 @@ admittance of what stands behind its layer."""
 
 
 def normal_on_axis(eps: Complex, q: Real) -> Complex:
-    """Return the normal wave number sqrt(eps - q^2) for real ``q``, the root with Im >= 0.
-
-    """
+    """Return the normal wave number sqrt(eps - q^2) for real ``q``, the root with Im >= 0."""
     # a node may round to a layer's own light line, where the layer's admittance would be an exact zero over zero
     if eps.imag.any():
         gap = eps - q * q
@@ -74,62 +81,119 @@ def admittances(kz: Complex, eps: Complex) -> Complex:
 
 
 @dataclass(frozen=True)
-class Outlook:
-    """What a face sees when it looks outwards through thin layers.
+class Pair:
+    """Field and partner at a face, up to a common factor; what a wave of admittance ``own`` meets there."""
 
-    ``faces[j]`` is the admittance at the inner face of layer j, the last one that of the medium behind them all;
-    ``gains[j]`` is |F|^2 at the outer face of layer j over |F|^2 at its inner face.
-    """
+    field: Complex | float
+    partner: Complex
 
-    faces: tuple[Complex, ...]
-    gains: tuple[Real, ...]
+    def behind(self, own: Complex, turn: Complex) -> "Pair":
+        """Return the pair at the inner face of a layer (admittance, exp(2 i kz d)) that has this one at its outer."""
+        there = own * self.field
+        back = there - self.partner
+        back *= turn
+        there += self.partner
+        partner = there - back
+        partner *= own
+        there += back
+        return Pair(there, partner)
+
+    def eased(self) -> "Pair":
+        """Return the pair with a field of modulus one."""
+        field = np.asarray(self.field, dtype=complex)
+        ease = 1.0 / np.abs(field)
+        return Pair(field * ease, self.partner * ease)
 
     @property
-    def face(self) -> Complex:
-        """Admittance at the innermost face."""
-        return self.faces[0]
+    def flux(self) -> Real:
+        """Net flux outwards."""
+        if isinstance(self.field, float):
+            return self.field * self.partner.real
+        return along(self.field, self.partner)
 
-    def fluxes(self, field: Real) -> list[Real]:
-        """Return the net flux at each face, inner to outer, for the squared field ``field`` at the innermost."""
-        flux = [self.faces[0].real * field]
-        for face, gain in zip(self.faces[1:], self.gains, strict=True):
-            field = field * gain
-            flux.append(face.real * field)
-        return flux
-
-
-def fold(layers: Sequence[tuple[Complex, Complex]], behind: Complex) -> Complex:
-    """Return the admittance that layers (admittance, exp(2 i kz d)), inner to outer, show before ``behind``."""
-    face = behind
-    for own, turn in reversed(layers):
-        onward = own + face
-        back = own - face
-        back *= turn
-        face = onward - back
-        onward += back
-        face /= onward
-        face *= own
-    return face
+    def reflection(self, own: Complex) -> Complex:
+        """Return the amplitude reflection met from a medium of admittance ``own``."""
+        there = own * self.field
+        amplitude = there - self.partner
+        there += self.partner
+        amplitude /= there
+        return amplitude
 
 
-def look(layers: Sequence[tuple[Complex, Complex]], behind: Complex) -> Outlook:
-    """Fold as :func:`fold` does and keep what the fluxes at every face need."""
-    faces, gains = [behind], []
-    for own, turn in reversed(layers):
-        onward = own + faces[-1]
-        back = own - faces[-1]
-        back *= turn
-        face = onward - back
-        onward += back
-        face /= onward
-        face *= own
-        faces.append(face)
-        gains.append((4.0 * np.abs(turn)) * squared(own) / squared(onward))
-    return Outlook(tuple(reversed(faces)), tuple(reversed(gains)))
+EASE_EVERY = 16
+"""Layers after which a pair is scaled back, lest a tall pile overflow."""
 
 
-def reflection(own: Complex, face: Complex) -> Complex:
-    """Return the amplitude reflection at a face of admittance ``face`` met from a medium of admittance ``own``."""
-    amplitude: Complex = own - face
-    amplitude /= own + face
-    return amplitude
+def fold(layers: Sequence[tuple[Complex, Complex]], behind: Complex) -> Pair:
+    """Return the pair that layers (admittance, exp(2 i kz d)), inner to outer, show before ``behind``."""
+    pair = Pair(1.0, behind)
+    for count, (own, turn) in enumerate(reversed(layers), 1):
+        pair = pair.behind(own, turn)
+        if not count % EASE_EVERY:
+            pair = pair.eased()
+    return pair
+
+
+@dataclass(frozen=True)
+class Outlook:
+    """What a face sees when it looks outwards through thin layers: the pair there and the net flux at each face.
+
+    Fluxes run from the inner to the outer face, in units of the pair's.
+    """
+
+    pair: Pair
+    fluxes: tuple[Real, ...]
+
+    def through(self, own: Complex, turn: Complex) -> "Outlook":
+        """Return the outlook from the inner face of a layer more."""
+        pair = self.pair.behind(own, turn)
+        loss = squared(own)
+        loss *= 4.0 * np.abs(turn)
+        return Outlook(pair, (pair.flux, *(flux * loss for flux in self.fluxes)))
+
+    def eased(self) -> "Outlook":
+        """Return the outlook with a field of modulus one."""
+        ease = 1.0 / squared(np.asarray(self.pair.field, dtype=complex))
+        return Outlook(self.pair.eased(), tuple(flux * ease for flux in self.fluxes))
+
+    def mirror(self, own: Complex) -> "Mirror":
+        """Return what a wave from a medium of admittance ``own`` meets."""
+        there = own * self.pair.field
+        amplitude = there - self.pair.partner
+        there += self.pair.partner
+        amplitude /= there
+        per_wave = 4.0 * squared(own)
+        per_wave /= squared(there)
+        return Mirror(amplitude, per_wave, self.fluxes)
+
+
+@dataclass(frozen=True)
+class Mirror:
+    """One half as a wave meets it: its amplitude reflection, and the fluxes that the wave sends through its faces.
+
+    ``per_wave`` turns ``fluxes``, those of an outlook, into those of a wave of amplitude one.
+    """
+
+    reflection: Complex
+    per_wave: Real
+    fluxes: tuple[Real, ...]
+
+    def sent(self, power: Real | float) -> list[Real]:
+        """Return the net flux at each face, inner to outer, for a wave of squared amplitude ``power``."""
+        scale = self.per_wave * power
+        return [flux * scale for flux in self.fluxes]
+
+
+def outlook_at(behind: Complex) -> Outlook:
+    """Return what is seen at the face of a medium without end."""
+    pair = Pair(1.0, behind)
+    return Outlook(pair, (pair.flux,))
+
+
+def look(layers: Sequence[tuple[Complex, Complex]], beyond: Outlook) -> Outlook:
+    """Look through layers (admittance, exp(2 i kz d)), inner to outer, at what is ``beyond``."""
+    for count, (own, turn) in enumerate(reversed(layers), 1):
+        beyond = beyond.through(own, turn)
+        if not count % EASE_EVERY:
+            beyond = beyond.eased()
+    return beyond

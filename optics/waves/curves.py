@@ -10,8 +10,9 @@ from typing import Any
 
 import numpy as np
 
-from optics.waves.elementary import Complex, Crossing, Real
-from optics.waves.paths import Index, Rows
+from optics.arrays import Complex, Index, Real
+from optics.waves.elementary import Crossing
+from optics.waves.paths import Rows
 
 DEPTH = 0.7
 """How far a dip leaves the real axis, in units of the angle it runs through over pi/2."""

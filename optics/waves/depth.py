@@ -10,12 +10,10 @@ from functools import cached_property
 from itertools import product
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
+from optics.arrays import Complex, Real
 from optics.waves.source import Wave
-
-Real = NDArray[np.float64]
-Complex = NDArray[np.complex128]
 
 NEAR = 0.3
 """Below this size of an exponent (e^w - 1)/w is taken by expm1: beyond it the plain form loses a digit at most."""

@@ -5,11 +5,8 @@ same digits come in a third of the time.
 """
 
 import numpy as np
-from numpy.typing import NDArray
 
-Real = NDArray[np.float64]
-Complex = NDArray[np.complex128]
-
+from optics.arrays import Complex, Real
 
 NO_ROOT = 1e-300
 """Keeps the root of zero from being zero, which is divided by."""

@@ -8,12 +8,10 @@ continuous across interfaces (Yeh, Optical Waves in Layered Media, ch. 5 and 11)
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
-from optics.waves.coherent import Complex, Real, normal_outside
-from optics.waves.scene import Index, Scene
-
-Mask = NDArray[np.bool_]
+from optics.arrays import Complex, Index, Mask, Real
+from optics.waves.coherent import normal_outside
+from optics.waves.scene import Scene
 
 SMALL_TURN = 1e-2
 """Phase of a layer below which the slope of sin(kz d)/kz comes from its series, exact to 1e-14 there."""

@@ -12,10 +12,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from optics.waves.coherent import Complex, Real, admittances, fold, normal_inside, normal_outside, reflection
+from optics.arrays import Complex, Index, Real
+from optics.waves.coherent import Pair, admittances, fold, normal_inside, normal_outside
 from optics.waves.curves import Points, on_panel
 from optics.waves.elementary import root, turn
-from optics.waves.paths import Index, Integral, Rows, integrate
+from optics.waves.paths import Integral, Rows, integrate
 from optics.waves.scene import Scene, View
 
 FEWEST_NODES = 16.0
@@ -280,11 +281,11 @@ def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:
     trip = turn(view.phase[core], kz)
     piles = (resonator.layers[:place][::-1], resonator.above), (resonator.layers[place + 1 :], resonator.below)
     for layers, behind in piles:
-        trip = trip * reflection(own, _face(view, q, layers, behind))
+        trip = trip * _pair(view, q, layers, behind).reflection(own)
     return trip
 
 
-def _face(view: View, q: Complex, layers: tuple[int, ...], behind: int) -> Complex:
+def _pair(view: View, q: Complex, layers: tuple[int, ...], behind: int) -> Pair:
     pile = []
     for j in layers:
         kz = normal_inside(view.eps[j], q)

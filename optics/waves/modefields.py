@@ -9,9 +9,10 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from optics.waves.coherent import Complex, Real, normal_inside, normal_outside, squared
-from optics.waves.guide import Guide, Mask, guide, media_of
-from optics.waves.scene import Index, Scene
+from optics.arrays import Complex, Index, Mask, Real
+from optics.waves.coherent import normal_inside, normal_outside, squared
+from optics.waves.guide import Guide, guide, media_of
+from optics.waves.scene import Scene
 
 
 def absorbed_shares(scene: Scene, owner: Index, polarisation: Index, q: Complex) -> Real:

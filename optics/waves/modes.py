@@ -11,11 +11,12 @@ from dataclasses import dataclass, fields
 
 import numpy as np
 
-from optics.waves.coherent import Complex, Real, admittances, fold, normal_inside, normal_outside, reflection
+from optics.arrays import Complex, Index, Mask, Real
+from optics.waves.coherent import Pair, admittances, fold, normal_inside, normal_outside
 from optics.waves.elementary import turn
-from optics.waves.guide import Guide, Mask, guide, lossless, mismatch, nodes_and_angle, outer_roots
+from optics.waves.guide import Guide, guide, lossless, mismatch, nodes_and_angle, outer_roots
 from optics.waves.modefields import absorbed_shares
-from optics.waves.scene import Index, Scene, View
+from optics.waves.scene import Scene, View
 
 POLARISATIONS = ("s", "p")
 
@@ -344,7 +345,7 @@ def polarised_density(view: View, q: Complex, polarisation: Index) -> Complex:
     kz = normal_inside(film.eps, q)
     magnetic = (polarisation == 1)[:, None]
     own = admittances(kz, film.eps)
-    up, down = (np.where(magnetic, r[1], r[0]) for r in (reflection(own, face) for face in faces(view, q)))
+    up, down = (np.where(magnetic, r[1], r[0]) for r in (pair.reflection(own) for pair in pairs(view, q)))
     mean_up, mean_down = film.moments(2j * film.phase * kz)
     loop = up * down * turn(film.phase, kz)
     both, one_way = 1.0 + loop, up * mean_up + down * mean_down
@@ -355,8 +356,8 @@ def polarised_density(view: View, q: Complex, polarisation: Index) -> Complex:
     return out
 
 
-def faces(view: View, q: Complex) -> tuple[Complex, Complex]:
-    """Return the admittances that the film sees above and below at complex q, (polarisation, row, node)."""
+def pairs(view: View, q: Complex) -> tuple[Pair, Pair]:
+    """Return what the film sees above and below at complex q."""
     scene = view.scene
     out = []
     for layers, side in zip((scene.layers_up, scene.layers_down), scene.sides, strict=True):

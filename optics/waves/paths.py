@@ -7,10 +7,9 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 
-Real = NDArray[np.float64]
-Index = NDArray[np.intp]
+from optics.arrays import Index, Real
 
-BLOCK = 6000
+BLOCK = 12000
 """Nodes evaluated at a time: enough to hide the cost of a call, few enough for the arrays to stay in cache."""
 
 HEAP_TO_KEEP = 24 << 20

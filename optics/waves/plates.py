@@ -7,15 +7,13 @@ transmittance; multiple passes are summed as geometric series from the outermost
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-from optics.waves.coherent import Complex, Outlook, Real, admittances, look, normal_on_axis, reflection, squared
+from optics.arrays import Complex, Mask, Real
+from optics.waves.coherent import Mirror, Outlook, admittances, look, normal_on_axis, outlook_at, squared
 from optics.waves.curves import middle
 from optics.waves.elementary import turn, upper_root
 from optics.waves.scene import Side, View
 from optics.waves.shelf import kept_for
-
-Mask = NDArray[np.bool_]
 
 
 class Waves:
@@ -56,20 +54,17 @@ class Waves:
         film = self.view.scene.film
         if film not in layers:
             return self.kept.get(
-                ("look", layers, behind), lambda: look([self.layer(j) for j in layers], self.own(behind))
+                ("look", layers, behind),
+                lambda: look([self.layer(j) for j in layers], outlook_at(self.own(behind))),
             )
         at = layers.index(film) + 1
-        beyond = self.look(layers[at:], behind)
-        before = look([self.layer(j) for j in layers[:at]], beyond.face)
-        return Outlook((*before.faces[:-1], *beyond.faces), (*before.gains, *beyond.gains))
+        return look([self.layer(j) for j in layers[:at]], self.look(layers[at:], behind))
 
-    def mirror(self, layers: tuple[int, ...], behind: int) -> tuple[Outlook, Complex, Real]:
-        """Return the film's outlook through ``layers``, its reflection r there, and |1 + r|^2."""
-        outlook = self.look(layers, behind)
-        amplitude = self.kept.get(
-            ("mirror", layers, behind), lambda: reflection(self.own(self.view.scene.film), outlook.face)
+    def mirror(self, layers: tuple[int, ...], behind: int) -> Mirror:
+        """Return what the film meets behind one of its faces: ``layers``, then the medium ``behind``."""
+        return self.kept.get(
+            ("mirror", layers, behind), lambda: self.look(layers, behind).mirror(self.own(self.view.scene.film))
         )
-        return outlook, amplitude, self.kept.get(("field", layers, behind), lambda: squared(1.0 + amplitude))
 
 
 @dataclass(frozen=True)
@@ -89,14 +84,12 @@ def meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Mee
 
 
 def _meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Meeting:
-    outlook = waves.look(layers, behind)
     own = waves.own(origin)
-    amplitude = reflection(own, outlook.face)
+    mirror = waves.look(layers, behind).mirror(own)
     incoming = own.real
-    unit = squared(1.0 + amplitude) / np.where(incoming > 0.0, incoming, 1.0)
-    fluxes = outlook.fluxes(unit)
+    fluxes = mirror.sent(1.0 / np.where(incoming > 0.0, incoming, 1.0))
     taken = {j: fluxes[i] - fluxes[i + 1] for i, j in enumerate(layers) if waves.view.eps[j].imag.any()}
-    return Meeting(squared(amplitude), fluxes[-1], taken)
+    return Meeting(squared(mirror.reflection), fluxes[-1], taken)
 
 
 @dataclass(frozen=True)

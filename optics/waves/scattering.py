@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from optics.waves.coherent import Real
+from optics.arrays import Real
 
 
 def guided_loss(

@@ -9,14 +9,10 @@ from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
-from numpy.typing import NDArray
 
+from optics.arrays import Complex, Index, Real
 from optics.waves.shelf import digest
 from optics.waves.source import Film, Moments
-
-Real = NDArray[np.float64]
-Complex = NDArray[np.complex128]
-Index = NDArray[np.intp]
 
 
 @dataclass(frozen=True)

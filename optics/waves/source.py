@@ -12,8 +12,9 @@ from typing import Any, Protocol, TypeVar
 import numpy as np
 from scipy.special import exprel
 
+from optics.arrays import Complex, Real
 from optics.waves.coherent import squared
-from optics.waves.elementary import Complex, Crossing, Real, expm1
+from optics.waves.elementary import Crossing, expm1
 
 Wave = TypeVar("Wave", Real, Complex)
 
