@@ -77,8 +77,8 @@ def open_at(scene, q):
 
 
 def bound_at(scene, q):
-    """Return power and what each medium takes of bound light at some q, (1 + medium, node)."""
-    return wave.bound_values(scene, *_points(scene, q))[:, 0]
+    """Return power, first flights and what each medium takes of bound light at some q, (2 + medium, node)."""
+    return np.delete(wave.bound_values(scene, *_points(scene, q))[:, 0], 1, axis=0)
 
 
 def end_at(scene, q, end):

@@ -8,7 +8,7 @@ import numpy as np
 from optics.arrays import Complex, Index, Real
 from optics.fate.exits import Layout, Response, emerge, light_lines, split_panels
 from optics.waves import curves, source
-from optics.waves.coherent import Pair, admittances, fold, normal_inside, normal_outside
+from optics.waves.coherent import Pair, admittances, along, fold, normal_inside, normal_outside
 from optics.waves.curves import Points
 from optics.waves.elementary import turn, upper_root
 from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
@@ -35,11 +35,6 @@ class Settings:
     tolerance: float = 3e-8
     finer: int = 1
     threads: int = 1
-
-    @property
-    def loose(self) -> float:
-        """Tolerance for what layers take of bound light: no other quantity is a difference of it."""
-        return 3.0 * self.tolerance
 
     @property
     def unchecked(self) -> float:
@@ -151,19 +146,25 @@ def response(waves: Waves, k: int) -> Response:
 
 
 def bound_values(scene: Scene, owner: Index, points: Points) -> Real:
-    """Return power and what each medium takes per unit q of the bound zone, (1 + medium, row, node)."""
+    """Return what the bound zone needs per unit q, (quantity, row, node).
+
+    Power, first-flight absorption (an absorbing film's, up to its own light line) and what each medium takes.
+    """
     waves = Waves(scene.view(owner), points.q, points.short_of_film)
     sent = emission(waves)
-    out = np.zeros((1 + scene.media, *points.q.shape))
+    film = waves.view.film
+    out = np.zeros((2 + scene.media, *points.q.shape))
     out[0] = sent.power.real
+    if flies_to_the_end(scene):
+        out[1] = along(source.first_flight(film.slant(waves.kz(scene.film)), film.moments).conj(), sent.power)
     for layers, fluxes, side in zip(
         (scene.layers_up, scene.layers_down), (sent.fluxes_up, sent.fluxes_down), scene.sides, strict=True
     ):
         for i, medium in enumerate(layers):
             if scene.index[medium].imag.any():
-                out[1 + medium] += (fluxes[i] - fluxes[i + 1]).sum(axis=0)
+                out[2 + medium] += (fluxes[i] - fluxes[i + 1]).sum(axis=0)
         if side.absorbs and not side.plates:
-            out[1 + side.outer] += fluxes[-1].sum(axis=0)
+            out[2 + side.outer] += fluxes[-1].sum(axis=0)
     return out
 
 
@@ -269,10 +270,14 @@ def leaky_lines_matter(scene: Scene, settings: Settings) -> bool:
 
 
 def bound_zone(scene: Scene, settings: Settings) -> Integral:
-    """Integrate what each medium takes of the light that cannot leave the group, on the real axis."""
+    """Integrate power and what becomes of it where light cannot leave the group, on the real axis."""
     ends = scene.open_end, scene.far_end
-    loose = replace(settings, tolerance=settings.loose)
-    return _on_axis(bound_values, 1 + scene.media, scene, ends, loose, guides_of(scene))
+    return _on_axis(bound_values, 2 + scene.media, scene, ends, settings, guides_of(scene))
+
+
+def flies_to_the_end(scene: Scene) -> bool:
+    """Tell whether the film absorbs and bound light ends at its own light line: first flights then fill the zone."""
+    return bool(scene.film_index[0].imag > 0.0) and bool(scene.far_end[0] <= scene.film_index[0].real)
 
 
 def guides_of(scene: Scene) -> tuple[Resonator, ...]:

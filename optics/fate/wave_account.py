@@ -7,7 +7,6 @@ from optics.fate import wave
 from optics.fate.exits import COVER, FREE_ABOVE, FREE_BELOW, SUBSTRATE, Layout
 from optics.fate.ledger import Account, merge, replaced
 from optics.fate.wave import Settings
-from optics.waves.paths import Integral
 from optics.waves.scene import Scene
 
 THINNEST_ZONE = 1e-12
@@ -17,7 +16,7 @@ THINNEST_ZONE = 1e-12
 LINE_MISSED = 1e-7
 """Power that the real axis lacks against other paths, from which a line has been missed there."""
 
-CLOSURE_MISSED = 4e-8
+CLOSURE_MISSED = 6e-8
 SHARE_MISSED = 6e-7
 """Beyond these a wavelength is done again, finer: a sharp line slipped between the nodes."""
 
@@ -47,12 +46,15 @@ def _once(scene: Scene, settings: Settings) -> Account:
     """Integrate everything, wavelengths that need the same integrals together."""
     film = scene.film_index
     bound = scene.far_end - scene.open_end > THINNEST_ZONE
-    kinds = np.stack([film.imag > 0.0, scene.far_end > film.real, bound, absorbers(scene) > 0])
+    others = absorbers(scene)
+    shared = bound & (others > 0) & ~((film.imag == 0.0) & (others == 1))
+    kinds = np.stack([film.imag > 0.0, scene.far_end > film.real, others > 0, bound, shared])
     parts = []
     for kind in np.unique(kinds, axis=1).T:
         chosen = np.flatnonzero((kinds == kind[:, None]).all(axis=0))
         alike = scene.at(chosen)
-        parts.append((chosen, _bounded(alike, settings) if kind[2] else _unbounded(alike, settings)))
+        account = _bounded(alike, settings, shared=bool(kind[4])) if kind[3] else _unbounded(alike, settings)
+        parts.append((chosen, account))
     return merge(parts, scene.wavelengths)
 
 
@@ -88,37 +90,45 @@ def _unbounded(scene: Scene, settings: Settings) -> Account:
     )
 
 
-def _bounded(scene: Scene, settings: Settings) -> Account:
-    absorbing = bool(scene.film_index[0].imag > 0.0)
-    past_film = bool(scene.far_end[0] > scene.film_index[0].real)
+def _bounded(scene: Scene, settings: Settings, *, shared: bool) -> Account:
+    """Some light cannot leave; what several absorbing media take of it (``shared``) is integrated on the real axis.
+
+    Its power is what the whole path has beyond the open zone; scaling what they take to it lets a nearly clear film
+    keep its few digits.
+    """
+    flies = wave.flies_to_the_end(scene)
     dip = wave.dip(scene, scene.far_end, settings)
-    own = wave.dip(scene, scene.far_end, settings, start=scene.open_end, flights=absorbing and not past_film)
-    rise = wave.riser(scene, scene.far_end, settings, flights=absorbing and not past_film)
+    rise = wave.riser(scene, scene.far_end, settings, flights=flies)
     zone = wave.open_zone(scene, settings)
-    power = dip.values[0] + rise.values[0] - wave.exchange_with_itself(scene)
+    own = (
+        wave.bound_zone(scene, settings)
+        if shared
+        else wave.dip(scene, scene.far_end, settings, start=scene.open_end, flights=flies)
+    )
+    # the part of the power that does not lie on the real axis is the film's own
+    near = rise.values[0] - wave.exchange_with_itself(scene)
     miss = zone.values[Layout.power] + own.values[0] - dip.values[0]
     booked = _with_missed_lines(scene, zone.values, miss)
-    error = dip.error + rise.error + own.error + np.abs(miss)
+    bound = dip.values[0] - booked[Layout.power]
+    error = dip.error + rise.error + np.abs(miss) + (0.0 if shared else own.error)
     flown = np.zeros(scene.wavelengths)
-    if absorbing and past_film:
+    if flies:
+        flown = own.values[1] * (bound / own.values[0] if shared else 1.0) + rise.values[1]
+    elif scene.film_index[0].imag > 0.0:
         flown, missed = _flown_within_film(scene, settings)
         error = error + missed
-    elif absorbing:
-        flown = own.values[1] + rise.values[1]
-    near = rise.values[0] - wave.exchange_with_itself(scene)
-    taken, missed = _taken_while_bound(scene, settings, power - booked[Layout.power], near, own)
     yes = np.ones(scene.wavelengths, dtype=bool)
     return Account(
-        power=power,
+        power=dip.values[0] + near,
         zone=booked,
         bound_first_flight=flown,
-        bound_taken=taken,
+        bound_taken=own.values[2:] * (bound / own.values[0]) if shared else _taken_by_one(scene, bound + near),
         has_bound=yes,
-        unfinished=yes & (absorbers(scene) == 0) & (not absorbing),
+        unfinished=yes & (absorbers(scene) == 0) & (scene.film_index.imag == 0.0),
         miss=miss,
         path_error=error,
         open_error=zone.error,
-        guided_error=missed,
+        guided_error=own.error + np.abs(miss) if shared else np.zeros(scene.wavelengths),
     )
 
 
@@ -149,27 +159,13 @@ def _flown_within_film(scene: Scene, settings: Settings) -> tuple[Real, Real]:
     return own.values[1] + rise.values[1], own.error + rise.error
 
 
-def _taken_while_bound(scene: Scene, settings: Settings, power: Real, near: Real, own: Integral) -> tuple[Real, Real]:
-    """Return what each medium but the film takes of bound light, and the error made.
-
-    Exact cases first: nobody but the film absorbs, or a clear film has one absorbing neighbour. Elsewhere fluxes are
-    integrated on the real axis; the power integrated at the same nodes, against the same on its own path, tells
-    what the nodes missed, and scaling by it lets a nearly clear film keep its few digits. ``near`` is the part of
-    ``power`` that does not lie on the real axis: the film's own.
-    """
+def _taken_by_one(scene: Scene, power: Real) -> Real:
+    """Return what each medium but the film takes of bound light where one alone, or none, takes any."""
     taken = np.zeros((scene.media, scene.wavelengths))
-    missed = np.zeros(scene.wavelengths)
     clear = scene.film_index.imag == 0.0
-    count = absorbers(scene)
-    takers = [m for m in scene.group if scene.index[m].imag.any()]
-    takers += [s.outer for s in scene.sides if s.absorbs and not s.plates]
-    alone = clear & (count == 1)
-    for medium in takers:
-        wall = medium not in scene.group
-        taken[medium] = np.where(alone & (wall | (scene.index[medium].imag > 0.0)), power, 0.0)
-    shared = np.flatnonzero((count > 0) & ~alone)
-    if len(shared):
-        zone = wave.bound_zone(scene.at(shared), settings)
-        taken[:, shared] = zone.values[1:] * (power - near)[shared] / zone.values[0]
-        missed[shared] = zone.error + np.abs(zone.values[0] - own.values[0, shared])
-    return taken, missed
+    for medium in scene.group:
+        taken[medium] = np.where(clear & (scene.index[medium].imag > 0.0), power, 0.0)
+    for side in scene.sides:
+        if side.absorbs and not side.plates:
+            taken[side.outer] = np.where(clear, power, 0.0)
+    return taken
