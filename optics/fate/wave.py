@@ -194,7 +194,7 @@ def path_order(scene: Scene, settings: Settings) -> int:
 
 def panel_order(scene: Scene) -> int:
     """Return the order of the rule on real-axis panels."""
-    return int(np.clip(8 * np.ceil(2.0 + depth_of(scene) / 16.0), 24, 128))
+    return int(np.clip(8 * np.ceil(3.0 + depth_of(scene) / 16.0), 24, 128))
 
 
 def depth_of(scene: Scene) -> float:

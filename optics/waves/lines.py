@@ -19,8 +19,8 @@ from optics.waves.elementary import root, turn
 from optics.waves.paths import Integral, Rows, integrate
 from optics.waves.scene import Scene, View
 
-FEWEST_NODES = 16.0
-NODES_PER_PHASE = 1.3
+FEWEST_NODES = 12.0
+NODES_PER_PHASE = 1.0
 """Grid nodes, and more per radian of phase through a resonator; a line takes pi: none hides between two nodes."""
 
 NARROWEST = 1e-12
@@ -33,8 +33,8 @@ ECHO_FROM_PHASE = 2.5
 """Phase through a layer at normal incidence from which a sharp line fits between a mirror and a denser medium."""
 
 SECANTS = 4
-POLISHED = 1e-10
-"""Most steps towards a pole, and |log X| at which it is one."""
+POLISHED = 1e-2
+"""Most steps towards a pole, and what may be missing before the last, in half widths: that step leaves its square."""
 
 CLEARANCE = 2.5
 """Lines nearer to another, or to an end of their panel, than this many half widths are not fitted: the ground under
@@ -175,10 +175,17 @@ def _fit(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, 
 
 
 def _profile(q: Real, lines: Lines, bell: Real, odd: Real, panel: Index) -> Real:
-    offset = (q[:, None, :] - lines.centre[panel, :, None]) / lines.width[panel, :, None]
-    shape = 1.0 / (1.0 + offset * offset)
-    out: Real = np.matmul(bell[:, panel, None, :], shape)[:, :, 0]
-    out += np.matmul(odd[:, panel, None, :], offset * shape)[:, :, 0]
+    """Return the lines of each row's panel, (quantity, row, node)."""
+    count = lines.centre.shape[1]
+    shape = np.empty((len(q), 2 * count, q.shape[1]))
+    offset = np.subtract(q[:, None, :], lines.centre[panel, :, None], out=shape[:, count:])
+    offset *= (1.0 / lines.width)[panel, :, None]
+    np.multiply(offset, offset, out=shape[:, :count])
+    shape[:, :count] += 1.0
+    np.reciprocal(shape[:, :count], out=shape[:, :count])
+    offset *= shape[:, :count]
+    amplitude = np.concatenate([bell, odd], axis=2).transpose(1, 0, 2)[panel]
+    out: Real = np.matmul(amplitude, shape).transpose(1, 0, 2)
     return out
 
 
@@ -244,13 +251,13 @@ def _lines_of(scene: Scene, panels: Rows, resonator: Resonator) -> tuple[Index, 
     count = int(np.ceil(FEWEST_NODES + NODES_PER_PHASE * depth))
     u = np.broadcast_to((np.arange(count) + 0.5) / count, (len(panels), count))
     grid = on_panel(panels, u, scene.film_index[panels.owner, None]).q
-    log = np.log(_round_trip(scene.view(panels.owner), grid + 0j, resonator))
-    phase = log.imag
+    trip = _round_trip(scene.view(panels.owner), grid + 0j, resonator)
+    phase = np.arctan2(trip.imag, trip.real)
     closes = (phase[..., 1:] * phase[..., :-1] <= 0.0) & (np.abs(np.diff(phase, axis=2)) < np.pi)
     which, panel, node = np.nonzero(closes)
     view = scene.view(panels.owner[panel])
     ends = (grid[panel, node] + 0j, grid[panel, node + 1] + 0j)
-    logs = (log[which, panel, node], log[which, panel, node + 1])
+    logs = (np.log(trip[which, panel, node]), np.log(trip[which, panel, node + 1]))
     pole, mismatch = _secants(view, resonator, which, ends, logs)
     inside = (pole.real > panels.shape[0][panel]) & (pole.real < panels.shape[1][panel])
     found = inside & (pole.imag > NARROWEST) & (np.abs(mismatch) < 1e-3)
@@ -264,13 +271,13 @@ def _secants(
     (older, newer), (log_older, log_newer) = ends, logs
     for _ in range(SECANTS):
         step = log_newer - log_older
-        step = np.where(step == 0.0, 1.0, step)
-        pole = newer - log_newer * (newer - older) / step
+        per_log = (newer - older) / np.where(step == 0.0, 1.0, step)
+        pole = newer - log_newer * per_log
         older, log_older = newer, log_newer
         newer, log_newer = pole, np.log(_round_trip(view, pole[:, None], resonator)[which, chosen, 0])
-        if not (np.abs(log_newer) > POLISHED).any():
+        if not (np.abs(log_newer * per_log) > POLISHED * np.abs(newer.imag)).any():
             break
-    return newer, log_newer
+    return newer - log_newer * per_log, log_newer
 
 
 def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:

@@ -1,6 +1,6 @@
 """Quadrature over the in-plane wave number: nested rules, curves in the complex plane, refinement row by row."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from functools import cache
 
@@ -11,6 +11,12 @@ from optics.arrays import Index, Real
 
 BLOCK = 12000
 """Nodes evaluated at a time: enough to hide the cost of a call, few enough for the arrays to stay in cache."""
+
+BLOCKS = 6
+"""Blocks whose rough rows are done again together."""
+
+DOUBLINGS = 2
+"""How often the order is doubled before a row is halved."""
 
 HEAP_TO_KEEP = 24 << 20
 """Bytes, below the 32 MB from which glibc no longer learns; see :func:`_keep_heap`."""
@@ -118,7 +124,7 @@ def integrate(
     trust: float = 0.5,
     halvings: int = 30,
 ) -> Integral:
-    """Integrate ``density`` along every row; where nested rules disagree, double the order, then halve the row.
+    """Integrate ``density`` along every row; where nested rules disagree, double the order, twice at most, then halve the row.
 
     With e1 the difference between the half and the quarter rule and e2 that between the full and the half rule, the
     error of a row is taken as e2 min(1, e2/e1)^trust. A rule that converges by a factor with every doubling errs by e2
@@ -163,23 +169,40 @@ class _Rule:
 
 def _evaluate(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
     """Return the integrals of all rows, (quantity, row), and their error estimates, (row,)."""
-    step = max(1, BLOCK // rule.order)
-    blocks = [_block(density, rows.take(slice(at, at + step)), rule) for at in range(0, len(rows), step)]
-    return np.concatenate([b[0] for b in blocks], axis=1), np.concatenate([b[1] for b in blocks])
+    step = max(1, BLOCKS * BLOCK // rule.order)
+    parts = [_refined(density, rows.take(slice(at, at + step)), rule) for at in range(0, len(rows), step)]
+    return np.concatenate([p[0] for p in parts], axis=1), np.concatenate([p[1] for p in parts])
 
 
-def _block(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
+def _refined(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
+    """Double the order for those rows whose nested rules disagree."""
     nodes, weights = fejer(rule.order)
-    known = density(rows, _at(rows, nodes))
-    sums, guess = rule.judged(rows, known @ weights)
+    blocks, values = [], []
+    for part in _blocks(rows, rule.order):
+        value = density(part, _at(part, nodes))
+        blocks.append(rule.judged(part, value @ weights))
+        values.append(value[:, blocks[-1][1] > rule.tolerance])
+    sums, guess = np.concatenate([b[0] for b in blocks], axis=1), np.concatenate([b[1] for b in blocks])
+    known = np.concatenate(values, axis=1)
     rough = np.flatnonzero(guess > rule.tolerance)
-    if len(rough):
-        again = rows.take(rough)
-        nodes, weights = fejer(2 * rule.order)
-        fresh = density(again, _at(again, nodes[::2]))
-        both = known[:, rough] @ weights[1::2] + fresh @ weights[::2]
-        sums[:, rough], guess[rough] = rule.judged(again, both)
+    for doubling in range(1, DOUBLINGS + 1):
+        if not len(rough):
+            break
+        again, order = rows.take(rough), rule.order << doubling
+        nodes, weights = fejer(order)
+        fresh = [density(part, _at(part, nodes[::2])) for part in _blocks(again, order // 2)]
+        both = np.empty((len(known), len(rough), order - 1))
+        both[..., 1::2], both[..., ::2] = known, np.concatenate(fresh, axis=1)
+        sums[:, rough], guess[rough] = rule.judged(again, both @ weights)
+        still = guess[rough] > rule.tolerance
+        rough, known = rough[still], both[:, still]
     return sums, guess
+
+
+def _blocks(rows: Rows, nodes: int) -> Iterator[Rows]:
+    step = max(1, BLOCK // nodes)
+    for at in range(0, len(rows), step):
+        yield rows.take(slice(at, at + step))
 
 
 def _at(rows: Rows, nodes: Real) -> Real:
