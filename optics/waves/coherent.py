@@ -161,10 +161,12 @@ class Outlook:
         there = own * self.pair.field
         amplitude = there - self.pair.partner
         there += self.pair.partner
-        amplitude /= there
-        per_wave = 4.0 * squared(own)
-        per_wave /= squared(there)
-        return Mirror(amplitude, per_wave, self.fluxes)
+        scale = 1.0 / squared(there)
+        amplitude *= np.conj(there, out=there)
+        amplitude *= scale
+        scale *= 4.0
+        scale *= squared(own)
+        return Mirror(amplitude, scale, self.fluxes)
 
 
 @dataclass(frozen=True)

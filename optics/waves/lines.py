@@ -7,7 +7,7 @@ refinement.
 """
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,6 +26,9 @@ NODES_PER_PHASE = 1.0
 NARROWEST = 1e-12
 """Half width below which the flux of a line drowns in rounding; what such a line holds shows as error."""
 
+FAINTEST = 2.0
+"""Fading over a round trip, -log |X| on the real axis, beyond which there is no line to speak of."""
+
 SAME_LINE = 1e-3
 """Poles closer than this, in units of their half width, are one line."""
 
@@ -37,8 +40,10 @@ POLISHED = 1e-2
 """Most steps towards a pole, and what may be missing before the last, in half widths: that step leaves its square."""
 
 CLEARANCE = 2.5
-"""Lines nearer to another, or to an end of their panel, than this many half widths are not fitted: the ground under
-them is not smooth."""
+"""Lines nearer to an end of their panel than this many half widths are not fitted: the ground there is not smooth."""
+
+APART = 0.5
+"""Lines that follow another by less than this many half widths are not fitted: they can hardly be told apart."""
 
 CUT_FROM = 0.1
 """Half width, in units of the room around a line, from which a panel is cut there: a fit leaves too much of it."""
@@ -51,9 +56,6 @@ CELL_ORDER = 24
 
 MOST_PAIRS = 50_000
 """Pairs of lines of one panel held in memory at a time."""
-
-FITS = 2
-"""Rounds of fitting, each with the other lines of the panel taken off as they were fitted before."""
 
 _OFFSETS = np.array([-2.0, -1.0, 0.0, 1.0, 2.0])
 _BELL = 1.0 / (1.0 + _OFFSETS**2)
@@ -71,22 +73,24 @@ Panel = Callable[[Rows, Real, Complex], Points]
 class Lines:
     """Lines of every panel, (panel, line), in the order of their centres; places without a line hold NaN centres.
 
-    ``room`` is the distance to the next line or end of the panel, ``before`` that to the one at smaller q.
+    ``room`` is the distance to the next line or end of the panel, ``before`` that to the one at smaller q, ``inside``
+    that to an end.
     """
 
     centre: Real
     width: Real
     room: Real
     before: Real
+    inside: Real
 
     def take(self, which: slice) -> "Lines":
         """Return the lines of some panels."""
-        return Lines(self.centre[which], self.width[which], self.room[which], self.before[which])
+        return Lines(*(getattr(self, field.name)[which] for field in fields(self)))
 
     @property
     def fitted(self) -> NDArray[np.bool_]:
         """Which lines are taken out of what is integrated."""
-        return self.room > CLEARANCE * self.width
+        return (self.inside > CLEARANCE * self.width) & (self.before > APART * self.width)
 
     @property
     def cut(self) -> NDArray[np.bool_]:
@@ -156,22 +160,27 @@ def _amplitudes(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple
 
 
 def _fit(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, Real]:
-    """Fit the lines of some panels; one quantity of zeros where there is nothing to fit."""
+    """Fit the lines of some panels together; one quantity of zeros where there is nothing to fit."""
     panel, line = np.nonzero(lines.fitted)
     if not len(panel):
         return np.zeros((1, *lines.centre.shape)), np.zeros((1, *lines.centre.shape))
     q = lines.centre[panel, line, None] + lines.width[panel, line, None] * _OFFSETS
     owner = panels.owner[panel]
     near = value(owner, Points(q, np.ones_like(q), scene.film_index[owner, None] - q))
-    bell = np.zeros((len(near), *lines.centre.shape))
-    odd = np.zeros_like(bell)
-    whole = replace(lines, centre=np.where(lines.fitted, lines.centre, 0.0))
-    for _ in range(FITS):
-        others = _profile(q, whole, bell, odd, panel) if bell.any() else np.zeros_like(near)
-        others -= bell[:, panel, line, None] * _BELL + odd[:, panel, line, None] * (_OFFSETS * _BELL)
-        fitted = (near - others) @ _FIT.T
-        bell[:, panel, line], odd[:, panel, line] = fitted[..., 0], fitted[..., 1]
-    return bell, odd
+    # each line's five values, the parabola taken off, see all lines of the panel
+    used = np.where(lines.fitted, lines.centre, 0.0)[panel, None, :], lines.width[panel, None, :]
+    offset = (q[:, :, None] - used[0]) / used[1]
+    seen = 1.0 / (1.0 + offset * offset)
+    seen = np.stack([_FIT @ seen, _FIT @ (offset * seen)], axis=3)  # (line, amplitude, line, amplitude)
+    count = lines.centre.shape[1]
+    system = np.broadcast_to(np.eye(2 * count).reshape(count, 2, count, 2), (len(panels), count, 2, count, 2)).copy()
+    system[panel, line] = np.where(lines.fitted[panel, None, :, None], seen, 0.0)
+    given = np.zeros((len(panels), count, 2, len(near)))
+    given[panel, line] = np.moveaxis(near @ _FIT.T, 0, 2)
+    size = (len(panels), 2 * count)
+    found = np.linalg.solve(system.reshape(*size, 2 * count), given.reshape(*size, len(near)))
+    amplitudes = found.reshape(given.shape).transpose(2, 3, 0, 1)
+    return amplitudes[0], amplitudes[1]
 
 
 def _profile(q: Real, lines: Lines, bell: Real, odd: Real, panel: Index) -> Real:
@@ -200,7 +209,7 @@ def _areas(panels: Rows, lines: Lines, bell: Real, odd: Real) -> Real:
 
 def no_lines(panels: Rows) -> Lines:
     """Return lines of panels that have none."""
-    return Lines(*np.zeros((4, len(panels), 0)))
+    return Lines(*np.zeros((5, len(panels), 0)))
 
 
 @dataclass(frozen=True)
@@ -258,15 +267,17 @@ def _lines_of(scene: Scene, panels: Rows, resonator: Resonator) -> tuple[Index, 
     view = scene.view(panels.owner[panel])
     ends = (grid[panel, node] + 0j, grid[panel, node + 1] + 0j)
     logs = (np.log(trip[which, panel, node]), np.log(trip[which, panel, node + 1]))
-    pole, mismatch = _secants(view, resonator, which, ends, logs)
+    pole, per_log, mismatch = _secants(view, resonator, which, ends, logs)
     inside = (pole.real > panels.shape[0][panel]) & (pole.real < panels.shape[1][panel])
-    found = inside & (pole.imag > NARROWEST) & (np.abs(mismatch) < 1e-3)
+    sharp = (pole.imag > NARROWEST) & (pole.imag < FAINTEST * np.abs(per_log))
+    found = inside & sharp & (np.abs(mismatch) < 1e-3)
     return panel[found], pole[found]
 
 
 def _secants(
     view: View, resonator: Resonator, which: Index, ends: tuple[Complex, Complex], logs: tuple[Complex, Complex]
-) -> tuple[Complex, Complex]:
+) -> tuple[Complex, Complex, Complex]:
+    """Return poles, the step in q per unit of log X there, and log X just before the last step."""
     chosen = np.arange(len(which))
     (older, newer), (log_older, log_newer) = ends, logs
     for _ in range(SECANTS):
@@ -277,7 +288,7 @@ def _secants(
         newer, log_newer = pole, np.log(_round_trip(view, pole[:, None], resonator)[which, chosen, 0])
         if not (np.abs(log_newer * per_log) > POLISHED * np.abs(newer.imag)).any():
             break
-    return newer - log_newer * per_log, log_newer
+    return newer - log_newer * per_log, per_log, log_newer
 
 
 def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:
@@ -311,13 +322,15 @@ def _packed(panel: Index, pole: Complex, panels: Rows) -> Lines:
     counts = np.bincount(panel, minlength=len(panels))
     place = np.arange(len(panel)) - np.repeat(np.cumsum(counts) - counts, counts)
     shape = (len(panels), int(counts.max(initial=0)))
-    centre, width, room, before = np.full(shape, np.nan), np.ones(shape), np.zeros(shape), np.zeros(shape)
+    centre, width = np.full(shape, np.nan), np.ones(shape)
+    room, before, inside = np.zeros((3, *shape))
     centre[panel, place], width[panel, place] = pole.real, pole.imag
     low, high = panels.shape[0][:, None], panels.shape[1][:, None]
     gaps = np.diff(np.hstack([low, np.where(np.isnan(centre), high, centre), high]))
     before[panel, place] = gaps[panel, place]
     room[panel, place] = np.minimum(gaps[panel, place], gaps[panel, place + 1])
-    return Lines(centre, width, room, before)
+    inside[panel, place] = np.minimum(pole.real - low[panel, 0], high[panel, 0] - pole.real)
+    return Lines(centre, width, room, before, inside)
 
 
 def _cells(panels: Rows, lines: Lines, which: NDArray[np.bool_]) -> Rows:

@@ -124,7 +124,7 @@ def integrate(
     trust: float = 0.5,
     halvings: int = 30,
 ) -> Integral:
-    """Integrate ``density`` along every row; where nested rules disagree, double the order, twice at most, then halve the row.
+    """Integrate ``density`` along every row; where nested rules disagree, double the order, then halve the row.
 
     With e1 the difference between the half and the quarter rule and e2 that between the full and the half rule, the
     error of a row is taken as e2 min(1, e2/e1)^trust. A rule that converges by a factor with every doubling errs by e2

@@ -37,8 +37,10 @@ def uniform(z: Wave) -> tuple[Wave, Wave]:
 
 
 def _complex_exprel(z: Complex) -> Complex:
-    z = np.where(z == 0.0, 1e-300, z)
     out = expm1(z)
+    still = z == 0.0
+    if still.any():
+        z, out = np.where(still, 1.0, z), np.where(still, 1.0, out)
     out /= z
     return out
 
@@ -50,7 +52,9 @@ def first_flight(slant: Wave, moments: Moments) -> Wave:
     to complex angles (for even births S = (1 - exp(-slant))/slant; Case, de Hoffmann & Placzek 1953).
     """
     up, down = moments(-slant)
-    return 1.0 - 0.5 * (up + down)
+    mean = up if up is down else 0.5 * (up + down)
+    out: Wave = 1.0 - mean
+    return out
 
 
 @dataclass(frozen=True)
