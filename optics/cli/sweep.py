@@ -58,7 +58,7 @@ def sweep(
     check_target(folder, replace=replace)
     rests_on = basis(stack, stack_file=study.stack_file, points=plan.points, spectra=plan.spectra)
     with go_on(folder, rests_on, len(plan.points), restart=restart) as journal:
-        journal.fill(work, plan.pack, Place(workers, cluster), progress(journal.done))
+        journal.fill(work, plan.pack, Place(workers, cluster), progress(journal.done), units=plan.units)
         table, found = write_sweep(
             plan, journal.answers(), folder, stack_file=study.stack_file, goals=goals, replace=replace
         )

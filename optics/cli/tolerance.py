@@ -51,7 +51,7 @@ def tolerance(
     check_target(folder, replace=replace)
     rests_on = basis(loaded, stack_file=stack, samples=samples, seed=seed)
     with go_on(folder, rests_on, len(draws.plan.points), restart=restart) as journal:
-        journal.fill(work, draws.plan.pack, Place(workers, cluster), progress(journal.done))
+        journal.fill(work, draws.plan.pack, Place(workers, cluster), progress(journal.done), units=draws.plan.units)
         found = spread(draws, journal.answers())
         write_spread(found, loaded, folder, stack_file=stack, seed=seed, replace=replace)
         journal.remove()

@@ -5,7 +5,6 @@ on one of its returns, absorbed in a plate, out through the other side where tha
 """
 
 from collections.abc import Callable
-from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -32,9 +31,6 @@ FEW_JUMPS = 8
 
 MISSED = 5e-5
 """What the jumps between nodes may add up to where light changes sides (found by refining; 5e-6 in the mean)."""
-
-FEWEST_A_THREAD = 20
-"""Wavelengths below which a thread is not worth its start."""
 
 ORDER = 16
 SOURCES = ("births", "above", "below")
@@ -76,20 +72,6 @@ def follow(scene: Scene, settings: Settings, reach: Real, *, model: str, scatter
     scattered
         Whether scattered light is asked for too.
     """
-    threads = max(1, min(settings.threads, scene.wavelengths // FEWEST_A_THREAD))
-    if threads == 1:
-        return _follow(scene, settings, reach, model=model, scattered=scattered)
-    # every n-th wavelength: hard ones come in rows and are shared out alike
-    shares = [np.arange(first, scene.wavelengths, threads) for first in range(threads)]
-
-    def part(share: Index) -> tuple[Index, Held]:
-        return share, _follow(scene.at(share), settings, reach[share], model=model, scattered=scattered)
-
-    with ThreadPoolExecutor(threads) as pool:
-        return added(list(pool.map(part, shares)), scene.wavelengths)
-
-
-def _follow(scene: Scene, settings: Settings, reach: Real, *, model: str, scattered: bool) -> Held:
     seen = ray.real_film(scene) if model == "ray" else scene
     end = ray.edge_of_open(seen) if model == "ray" else seen.open_end
     send = {"wave": _from_waves, "ray": _from_rays}[model]

@@ -56,6 +56,10 @@ class Account:
     open_error: Real
     guided_error: Real
 
+    def at(self, which: Index) -> "Account":
+        """Return the account of some wavelengths."""
+        return Account(**{name: getattr(self, name)[..., which] for name in Account.__dataclass_fields__})
+
 
 def merge(parts: Sequence[tuple[Index, Account]], wavelengths: int) -> Account:
     """Join accounts of some wavelengths each into one of all."""

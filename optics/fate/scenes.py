@@ -68,7 +68,7 @@ def _side_ends(drawing: Drawing, step: int) -> tuple[Index, Mask]:
 
 def _scene(drawing: Drawing, chosen: Index, pattern: Sequence[int]) -> Scene:
     top, top_swallows, bottom, bottom_swallows = (int(v) for v in pattern)
-    index = drawing.index[:, chosen].copy()
+    index = np.take(drawing.index, chosen, axis=1)
     loss = index.imag.copy()
     waves = [m for m in range(len(index)) if not drawing.plate[m] or m == drawing.film]
     waves += [top] * bool(top_swallows) + [bottom] * bool(bottom_swallows)
@@ -77,9 +77,9 @@ def _scene(drawing: Drawing, chosen: Index, pattern: Sequence[int]) -> Scene:
     layers_up, above = _side(drawing, top, bool(top_swallows), -1)
     layers_down, below = _side(drawing, bottom, bool(bottom_swallows), 1)
     phase = 2.0 * np.pi * drawing.thickness_nm[:, None] / drawing.wavelength_nm[chosen]
-    return Scene(
-        index, loss, phase, drawing.film, above, below, layers_up, layers_down, drawing.in_plane, drawing.moments
-    )
+    depths = tuple(np.abs(index * phase).max(axis=1).tolist())
+    sides = above, below, layers_up, layers_down
+    return Scene(index, loss, phase, drawing.film, *sides, drawing.in_plane, drawing.moments, depths)
 
 
 def _side(drawing: Drawing, outer: int, swallowing: bool, step: int) -> tuple[tuple[int, ...], Side]:

@@ -14,8 +14,8 @@ from optics.waves.elementary import turn, upper_root
 from optics.waves.lines import Resonator, find, integrate_with_lines, resonators
 from optics.waves.paths import Integral, Rows, integrate
 from optics.waves.plates import Meeting, Waves, meet
+from optics.waves.repeated import handed_out
 from optics.waves.scene import Scene, View
-from optics.waves.shelf import Kept, kept_for
 
 CHECKED = 1.0
 """Trust in the nested rules on paths whose sums must agree with each other: what one misses shows in the closure."""
@@ -29,12 +29,11 @@ class Settings:
     """How finely to integrate.
 
     ``tolerance`` bounds the error of a piece of a path, ``finer`` multiplies the order of every rule. The defaults
-    keep closure within 1e-7 and shares within 1e-6. ``threads`` share the wavelengths.
+    keep closure within 1e-7 and shares within 1e-6.
     """
 
     tolerance: float = 3e-8
     finer: int = 1
-    threads: int = 1
 
     @property
     def unchecked(self) -> float:
@@ -47,25 +46,49 @@ class Settings:
         return replace(self, tolerance=0.1 * self.tolerance, finer=2 * self.finer)
 
 
-def power_on_path(
-    view: View, points: Points, *, flights: bool, dips: bool = False, kept: Kept | None = None
-) -> Complex:
-    """Return the complex power density on a path and, with ``flights``, it times the first-flight absorption.
+Curve = Callable[[Rows, Real, Complex], Points]
+"""Takes rows, their curve parameters and the film's index; returns nodes."""
 
-    A path that ``dips`` below the real axis meets no cut of the half-spaces: the decaying root is the right one there.
-    ``kept`` is what these points have in common with those of other thicknesses.
-    """
-    film, q = view.film, points.q
-    kz, up, down = (kept or Kept()).get("halves", lambda: _halves_on_path(view, points, dips=dips))
-    density = source.density(source.cavity(film, q, kz, up, down))
+Halves = tuple[Complex, Complex, Complex]
+"""The film's normal wave number and the reflections of both halves: what its thickness does not touch."""
+
+
+def power_on_path(view: View, points: Points, *, flights: bool, halves: Halves | None = None) -> Complex:
+    """Return the complex power density on a path and, with ``flights``, it times the first-flight absorption."""
+    film = view.film
+    kz, up, down = halves or _halves_on_path(view, points)
+    density = source.density(source.cavity(film, points.q, kz, up, down))
     density *= points.slope
     if not flights:
         return density[None]
     return np.stack([density, density * source.first_flight(film.slant(kz), film.moments)])
 
 
-def _halves_on_path(view: View, points: Points, *, dips: bool) -> tuple[Complex, Complex, Complex]:
-    """Return the film's normal wave number and the reflections of both halves: what its thickness does not touch."""
+def _power_along(
+    scene: Scene, rows: Rows, u: Real, curve: Curve, *, flights: bool, dips: bool = False, start: Real | None = None
+) -> Real:
+    """Return the power density on rows of a curve as `power_on_path` does, halves computed once for twins."""
+    marks = () if start is None else (start[rows.owner],)
+    copies = scene.repeats(rows.owner, rows.start, rows.stop, *rows.shape, *marks)
+    if copies is None:
+        one = rows
+    else:
+        one = rows.take(copies[0])
+        u = u if len(u) == 1 else u[copies[0]]
+    view = scene.view(one.owner)
+    points = curve(one, u, view.film.index)
+    halves = _halves_on_path(view, points, dips=dips)
+    if copies is not None:
+        view = scene.view(rows.owner)
+        points, halves = handed_out((points, halves), copies[1])
+    return power_on_path(view, points, flights=flights, halves=halves).real
+
+
+def _halves_on_path(view: View, points: Points, *, dips: bool = False) -> Halves:
+    """Return both halves at the points of a path.
+
+    A path that ``dips`` below the real axis meets no cut of the half-spaces: the decaying root is the right one there.
+    """
     scene, film, q = view.scene, view.film, points.q
     kz = upper_root(points.short_of_film * (film.index + q))
     own = admittances(kz, film.eps)
@@ -189,29 +212,22 @@ def _rows(owner: Index, end: Real) -> Rows:
 
 def path_order(scene: Scene, settings: Settings) -> int:
     """Return the order of the rule on dips: phases through the group set the pace."""
-    return settings.finer * int(np.clip(8 * np.ceil(5.0 + depth_of(scene) / 24.0), 48, 256))
+    return settings.finer * int(np.clip(8 * np.ceil(5.0 + scene.depth / 24.0), 48, 256))
 
 
 def panel_order(scene: Scene) -> int:
     """Return the order of the rule on real-axis panels."""
-    return int(np.clip(8 * np.ceil(3.0 + depth_of(scene) / 16.0), 24, 128))
-
-
-def depth_of(scene: Scene) -> float:
-    """Return the largest phase through the group at normal incidence."""
-    layers = [scene.film, *scene.group]
-    return float(np.abs(scene.index[layers] * scene.phase[layers]).sum(axis=0).max())
+    return int(np.clip(8 * np.ceil(3.0 + scene.depth / 16.0), 24, 128))
 
 
 def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = None, flights: bool = False) -> Integral:
     """Integrate the power density below the real axis from ``start`` to ``end``."""
 
+    def curve(rows: Rows, u: Real, film: Complex) -> Points:
+        return curves.on_dip(rows, u, film, None if start is None else start[rows.owner, None])
+
     def density(rows: Rows, u: Real) -> Real:
-        view = scene.view(rows.owner)
-        first = None if start is None else start[rows.owner, None]
-        kept = kept_for(lambda: ("dip", scene.halves, u.shape), *rows.places, first)
-        points = kept.get("points", lambda: curves.on_dip(rows, u, view.film.index, first))
-        return power_on_path(view, points, flights=flights, dips=True, kept=kept).real
+        return _power_along(scene, rows, u, curve, flights=flights, dips=True, start=start)
 
     owner = np.arange(scene.wavelengths) if start is None else np.flatnonzero(end - start > 1e-12)
     if not len(owner):
@@ -230,10 +246,7 @@ def riser(scene: Scene, end: Real, settings: Settings, *, flights: bool = False)
     """Integrate the power density straight up from the real point ``end``; nothing to do where the film is clear."""
 
     def density(rows: Rows, u: Real) -> Real:
-        view = scene.view(rows.owner)
-        kept = kept_for(lambda: ("riser", scene.halves, u.shape), *rows.places)
-        points = kept.get("points", lambda: curves.on_riser(rows, u, view.film.index))
-        return power_on_path(view, points, flights=flights, kept=kept).real
+        return _power_along(scene, rows, u, curves.on_riser, flights=flights)
 
     owner = np.flatnonzero(scene.film_index.imag > 0.0)
     if not len(owner):
@@ -266,7 +279,7 @@ def open_zone(scene: Scene, settings: Settings) -> Integral:
 
 def leaky_lines_matter(scene: Scene, settings: Settings) -> bool:
     """Tell whether leaky lines may be sharp: many phases meet little loss, or a guide leaks through denser media."""
-    return settings.finer > 1 or len(guides_of(scene)) > 1 or depth_of(scene) > SHARP_FROM_DEPTH
+    return settings.finer > 1 or len(guides_of(scene)) > 1 or scene.depth > SHARP_FROM_DEPTH
 
 
 def bound_zone(scene: Scene, settings: Settings) -> Integral:

@@ -1,21 +1,23 @@
 """The answer for one point of a study, in plain numbers that go through files and between processes unchanged."""
 
+from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
 
 from optics.arrays import Real
-from optics.fate.account import ledger_of
+from optics.fate.account import ledgers_of, most_together
 from optics.fate.advice import advise
 from optics.fate.births import born_inside
 from optics.fate.drawing import drawing_of
 from optics.fate.ledger import SHARES, Ledger
+from optics.fate.scenes import Drawing
 from optics.fate.wave import Settings
 from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
 
-ONE_THREAD = Settings(threads=1)
+SETTINGS = Settings()
 RAY = "ray_"
 FIGURES = (
     *SHARES,
@@ -36,21 +38,38 @@ SPECTRAL = ("wavelength_nm", "births_per_nm", "birth_weight", "rate_factor", *SH
 Answer = dict[str, Any]
 
 
-def answer(stack: Stack, *, spectra: bool = False) -> Answer:
-    """Solve a stack and return `FIGURES` and `WORDS`, with ``spectra`` also `SPECTRAL` columns as lists.
+def side_by_side(stack: Stack) -> int:
+    """Return how many stacks like this one are solved together in little more memory than one."""
+    film, wavelength = stack.film, stack.light.wavelengths_nm
+    depth = (
+        0.0 if film.plate else 2.0 * np.pi * film.thickness_nm * np.abs(film.material.index(wavelength)) / wavelength
+    )
+    return most_together(len(wavelength), float(np.max(depth)))
 
-    The numbers are those of `optics.solve`, without its tables. One thread does the work: studies share the cores
-    between processes.
+
+def answers(stacks: Sequence[Stack], *, spectra: Sequence[bool] | None = None) -> list[Answer]:
+    """Solve stacks and return `FIGURES` and `WORDS` of each, with ``spectra`` also `SPECTRAL` columns as lists.
+
+    The numbers are those of `optics.solve`, without its tables. Stacks are best handed over together; see
+    `optics.fate.account.ledgers_of`.
     """
-    smooth = graded(stack)
-    drawing = drawing_of(smooth)
-    models = ("ray",) if stack.film.plate else ("wave", "ray")
-    ledgers = {model: ledger_of(drawing, ONE_THREAD, model=model) for model in models}
-    lead, ledger = next(iter(ledgers.items()))
-    born = born_inside(smooth, drawing, ledger, model=lead, settings=ONE_THREAD).per_nm
+    drawings = [drawing_of(graded(stack)) for stack in stacks]
+    waved = [number for number, stack in enumerate(stacks) if not stack.film.plate]
+    waves = dict(zip(waved, ledgers_of([drawings[number] for number in waved], SETTINGS, model="wave"), strict=True))
+    rays = ledgers_of(drawings, SETTINGS, model="ray")
+    kept = spectra or [False] * len(stacks)
+    return [
+        _answer(stack, drawing, waves.get(number), ray, spectra=asked)
+        for number, (stack, drawing, ray, asked) in enumerate(zip(stacks, drawings, rays, kept, strict=True))
+    ]
+
+
+def _answer(stack: Stack, drawing: Drawing, wave: Ledger | None, ray: Ledger, *, spectra: bool) -> Answer:
+    lead, ledger = ("wave", wave) if wave else ("ray", ray)
+    born = born_inside(stack, drawing, ledger, model=lead, settings=SETTINGS).per_nm
     steps = weights(drawing.wavelength_nm)
     figures = _averages(ledger, born * steps)
-    figures |= {f"{RAY}{name}": value for name, value in _averages(ledgers["ray"], born * steps).items()}
+    figures |= {f"{RAY}{name}": value for name, value in _averages(ray, born * steps).items()}
     figures |= {"numerical_error": ledger.error.max(), "largest_closure": np.abs(ledger.closure).max()}
     film = drawing.index[drawing.film]
     advised, _ = advise(drawing.wavelength_nm, born * steps, film, stack.film.thickness_nm)

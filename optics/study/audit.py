@@ -241,9 +241,7 @@ def _paths(result: Result) -> Iterator[Check]:
 
 
 def _doubled(stack: Stack, result: Result, settings: Settings) -> Iterator[Check]:
-    fine = replace(
-        Settings(), finer=2 * max(1, settings.finer), tolerance=0.1 * Settings().tolerance, threads=settings.threads
-    )
+    fine = replace(Settings(), finer=2 * max(1, settings.finer), tolerance=0.1 * Settings().tolerance)
     finer = _table(solve(stack, settings=fine))
     figure = max(float(np.abs(finer[name] - _table(result)[name]).max()) for name in (*SHARES, "rate_factor"))
     yield _judged(

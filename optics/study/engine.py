@@ -1,8 +1,8 @@
 """Where work runs: in this process, in local processes, on a cluster or on any executor; nothing else decides that.
 
-Work comes in points, numbered, and is handed out in chunks that take about a second, so that handing out stays far
-below 5 % and a stop loses little. A worker that dies takes its chunks with it; they are handed out again, and what
-kills worker after worker is named at the end.
+Work comes in points, numbered, some of which are best done together, and is handed out in chunks that take about a
+second, so that handing out stays far below 5 % and a stop loses little. A worker that dies takes its chunks with it;
+they are handed out again, and what kills worker after worker is named at the end.
 """
 
 import os
@@ -23,7 +23,9 @@ CHUNK_S = 1.0
 """How long a chunk shall take: handing one out costs some milliseconds, and a stop loses no more than this."""
 
 CHUNK_HERE_S = 0.4
-ATTEMPTS = 3
+ATTEMPTS = 4
+"""Times that a point is tried: in a chunk, with those it goes together with, and twice alone."""
+
 THREADS = (
     "OMP_NUM_THREADS",
     "OPENBLAS_NUM_THREADS",
@@ -35,6 +37,9 @@ THREADS = (
 
 Pack = Callable[[Sequence[int]], Any]
 """Turns points into what a worker needs for them; what it returns can be pickled."""
+
+Unit = tuple[int, ...]
+"""Points that are always done together, so that the last digits of their answers do not depend on what ran when."""
 
 Work = Callable[[Any], list[Any]]
 """A function of a module: takes what was packed and returns an answer a point."""
@@ -82,15 +87,19 @@ class UnfinishedError(Exception):
 
 @dataclass
 class _Chunk:
-    points: Sequence[int]
+    units: Sequence[Unit]
     attempts: int = 0
+
+    @property
+    def points(self) -> list[int]:
+        return [point for unit in self.units for point in unit]
 
 
 @dataclass
 class _Queue:
-    """Points that wait, chunks that came back without an answer, and chunks given up."""
+    """Units that wait, chunks that came back without an answer, and points given up."""
 
-    waiting: deque[int]
+    waiting: deque[Unit]
     slots: int
     chunk_s: float = CHUNK_S
     again: list[_Chunk] = field(default_factory=list)
@@ -101,14 +110,15 @@ class _Queue:
         return bool(self.waiting or self.again)
 
     def take(self) -> _Chunk:
-        """Return the next chunk: one point until the pace is known, and never so many that a worker is left idle."""
+        """Return the next chunk: one unit until the pace is known, and never so many that a worker is left idle."""
         if self.again:
             return self.again.pop()
-        size = max(1, int(self.chunk_s / self.point_s)) if self.point_s else 1
-        fair = max(1, len(self.waiting) // (2 * self.slots))
-        return _Chunk(
-            [self.waiting.popleft() for _ in range(min(size, fair if self.slots > 1 else size, len(self.waiting)))]
-        )
+        most = self.chunk_s / self.point_s if self.point_s else 1.0
+        fair = max(1, len(self.waiting) // (2 * self.slots)) if self.slots > 1 else len(self.waiting)
+        units = [self.waiting.popleft()]
+        while len(units) < fair and sum(map(len, units)) + len(self.waiting[0]) <= most:
+            units.append(self.waiting.popleft())
+        return _Chunk(units)
 
     def learn(self, seconds: float, points: int) -> None:
         """Take note of the pace; the newest counts half, since points differ."""
@@ -116,14 +126,18 @@ class _Queue:
         self.point_s = 0.5 * (self.point_s + pace) if self.point_s else pace
 
     def return_chunk(self, chunk: _Chunk) -> None:
-        """Hand the points of a chunk that found no answer out once more, each by itself, or give them up."""
-        if chunk.attempts + 1 < ATTEMPTS:
-            self.again += [_Chunk([point], chunk.attempts + 1) for point in chunk.points]
-        else:
+        """Hand a chunk that found no answer out once more, unit by unit, then point by point, or give it up."""
+        attempts = chunk.attempts + 1
+        if attempts >= ATTEMPTS:
             self.given_up += chunk.points
+            return
+        units = chunk.units if attempts == 1 else [(point,) for point in chunk.points]
+        self.again += [_Chunk([unit], attempts) for unit in units]
 
 
-def run(work: Work, pack: Pack, points: Sequence[int], place: Place) -> Iterator[tuple[Sequence[int], list[Any]]]:
+def run(
+    work: Work, pack: Pack, points: Sequence[int], place: Place, *, units: Sequence[Unit] = ()
+) -> Iterator[tuple[Sequence[int], list[Any]]]:
     """Yield points and their answers, a chunk at a time, in the order in which they are finished.
 
     Parameters
@@ -134,6 +148,8 @@ def run(work: Work, pack: Pack, points: Sequence[int], place: Place) -> Iterator
         What is to be done.
     place
         Where.
+    units
+        Points that go together; if none are given, each goes by itself.
 
     Raises
     ------
@@ -142,13 +158,16 @@ def run(work: Work, pack: Pack, points: Sequence[int], place: Place) -> Iterator
     InputError
         When a point is refused by the work itself.
     """
-    if place.workers == 1 and not place.cluster and place.executor is None:
-        return _here(work, pack, points)
-    return _elsewhere(work, pack, points, place)
+    wanted = set(points)
+    waiting = deque(unit for unit in units or [(point,) for point in points] if not wanted.isdisjoint(unit))
+    here = place.workers == 1 and not place.cluster and place.executor is None
+    for done, answers in _here(work, pack, waiting) if here else _elsewhere(work, pack, waiting, place):
+        kept = [(point, answer) for point, answer in zip(done, answers, strict=True) if point in wanted]
+        yield [point for point, _ in kept], [answer for _, answer in kept]
 
 
-def _here(work: Work, pack: Pack, points: Sequence[int]) -> Iterator[tuple[Sequence[int], list[Any]]]:
-    queue = _Queue(deque(points), slots=1, chunk_s=CHUNK_HERE_S)
+def _here(work: Work, pack: Pack, waiting: deque[Unit]) -> Iterator[tuple[Sequence[int], list[Any]]]:
+    queue = _Queue(waiting, slots=1, chunk_s=CHUNK_HERE_S)
     while queue:
         chunk = queue.take()
         seconds, answers = timed(work, pack(chunk.points))
@@ -163,10 +182,8 @@ def timed(work: Work, packed: Any) -> tuple[float, list[Any]]:
     return time.perf_counter() - start, answers
 
 
-def _elsewhere(
-    work: Work, pack: Pack, points: Sequence[int], place: Place
-) -> Iterator[tuple[Sequence[int], list[Any]]]:
-    queue = _Queue(deque(points), slots=max(place.workers, 1))
+def _elsewhere(work: Work, pack: Pack, waiting: deque[Unit], place: Place) -> Iterator[tuple[Sequence[int], list[Any]]]:
+    queue = _Queue(waiting, slots=max(place.workers, 1))
     reason = "their workers died"
     while queue:
         with _executor(place) as (executor, slots):
@@ -175,7 +192,8 @@ def _elsewhere(
         if place.executor is not None and queue:
             reason = "the executor broke down"
             break
-    missing = [*queue.given_up, *queue.waiting, *(point for chunk in queue.again for point in chunk.points)]
+    left = [_Chunk(queue.waiting), *queue.again]
+    missing = [*queue.given_up, *(point for chunk in left for point in chunk.points)]
     if missing:
         raise UnfinishedError(missing, reason)
 

@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 
+from optics.arrays import Real
 from optics.fate.ledger import SHARES
 from optics.fate.solve import Result
 from optics.stack import Stack
-from optics.study.answer import answer
+from optics.study.answer import answers
 from optics.study.keypath import changed, value_at, without_doubts
 from optics.tolerances import Tolerance
 
@@ -120,22 +121,12 @@ def input_uncertainty(result: Result) -> InputUncertainty:
     stack = without_doubts(result.stack)
     base = np.array([result.averages[name] for name in FIGURES])
     inputs = inputs_of(result.stack)
-    moved = [_moved(stack, each, base) for each in inputs]
-    return _summed(inputs, np.array(moved).reshape(len(inputs), len(FIGURES)))
+    moved = answers([changed(stack, i.key, i.value + step) for i in inputs for step in (i.sd, -i.sd)])
+    moves = np.array([[found[name] for name in FIGURES] for found in moved]).reshape(len(inputs), 2, len(FIGURES))
+    return _summed(inputs, np.sqrt(np.mean(np.square(moves - base), axis=1)))
 
 
-def _moved(
-    stack: Stack, each: Input, base: np.ndarray[Any, np.dtype[np.float64]]
-) -> np.ndarray[Any, np.dtype[np.float64]]:
-    moves = []
-    for step in (each.sd, -each.sd):
-        found = answer(changed(stack, each.key, each.value + step))
-        moves.append([found[name] for name in FIGURES] - base)
-    out: np.ndarray[Any, np.dtype[np.float64]] = np.sqrt(np.mean(np.square(moves), axis=0))
-    return out
-
-
-def _summed(inputs: Sequence[Input], moved: np.ndarray[Any, np.dtype[np.float64]]) -> InputUncertainty:
+def _summed(inputs: Sequence[Input], moved: Real) -> InputUncertainty:
     import pandas as pd
 
     heads: list[Mapping[str, object]] = [

@@ -9,7 +9,7 @@ from typing import Any, BinaryIO
 import numpy as np
 
 from optics.errors import InputError
-from optics.study.engine import Pack, Place, Work, run
+from optics.study.engine import Pack, Place, Unit, Work, run
 
 JOURNAL = "answers.jsonl"
 BASIS = "basis.json"
@@ -108,9 +108,17 @@ class Journal:
             self._at[point] = end
             end += len(line)
 
-    def fill(self, work: Work, pack: Pack, place: Place, progress: Callable[[int, int], None] | None = None) -> None:
-        """Work on every point without an answer and append the answers as they come."""
-        for points, answers in run(work, pack, self.missing(), place):
+    def fill(
+        self,
+        work: Work,
+        pack: Pack,
+        place: Place,
+        progress: Callable[[int, int], None] | None = None,
+        *,
+        units: Sequence[Unit] = (),
+    ) -> None:
+        """Work on every point without an answer, ``units`` together, and append the answers as they come."""
+        for points, answers in run(work, pack, self.missing(), place, units=units):
             self.append(points, answers)
             if progress:
                 progress(self.done, self.points)

@@ -124,7 +124,9 @@ def tolerance(
     draws = drawn_points(stack, samples=samples, seed=seed)
     count = len(draws.plan.points)
     found: dict[int, Answer] = {}
-    for at, answers in run(work, draws.plan.pack, range(count), Place(workers, cluster, executor)):
+    for at, answers in run(
+        work, draws.plan.pack, range(count), Place(workers, cluster, executor), units=draws.plan.units
+    ):
         found.update(zip(at, answers, strict=True))
         if progress:
             progress(len(found), count)

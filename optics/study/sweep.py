@@ -10,17 +10,19 @@ from typing import TYPE_CHECKING, Any
 
 from optics.errors import InputError
 from optics.stack import Stack
-from optics.study.answer import FIGURES, SPECTRAL, WORDS, Answer, answer
+from optics.study.answer import FIGURES, SPECTRAL, WORDS, Answer, answers, side_by_side
 from optics.study.axes import Points, from_cases, from_values
-from optics.study.engine import Place, run
+from optics.study.engine import Place, Unit, run
 from optics.study.keypath import all_changed, without_doubts
-from optics.waves.shelf import shelved
 
 if TYPE_CHECKING:
     import pandas as pd
 
 Packed = tuple[Stack, list[dict[str, Any]], list[bool]]
 """A stack, values by key path of some points, and whether to keep the wavelengths of each."""
+
+FEWEST_UNITS = 8
+"""Parts that a small study is cut into at least, for workers to share and for its progress to show."""
 
 Progress = Callable[[int, int], None]
 """Called with how many points are done and how many there are."""
@@ -34,6 +36,13 @@ class Plan:
     points: Points
     spectra: bool = False
     spectral: int | None = None
+
+    @property
+    def units(self) -> list[Unit]:
+        """Points that are solved side by side, all of the study: always the same ones, whatever is still to do."""
+        count = len(self.points)
+        size = min(side_by_side(self.stack), -(-count // FEWEST_UNITS))
+        return [tuple(range(first, min(first + size, count))) for first in range(0, count, size)]
 
     def pack(self, points: Sequence[int]) -> Packed:
         """Return what a worker needs for some points."""
@@ -107,8 +116,8 @@ def sweep(
     plan = Plan(stack, points, spectra)
     place = Place(workers, cluster, executor)
     found: dict[int, Answer] = {}
-    for at, answers in run(work, plan.pack, range(len(points)), place):
-        found.update(zip(at, answers, strict=True))
+    for at, got in run(work, plan.pack, range(len(points)), place, units=plan.units):
+        found.update(zip(at, got, strict=True))
         if progress:
             progress(len(found), len(points))
     return collected(plan, ((point, found[point]) for point in range(len(points))))
@@ -117,8 +126,7 @@ def sweep(
 def work(packed: Packed) -> list[Answer]:
     """Return the answers of some points; what a worker does."""
     stack, points, spectra = packed
-    with shelved():  # where only the film's thickness moves, the halves of the group stay
-        return [answer(all_changed(stack, values), spectra=kept) for values, kept in zip(points, spectra, strict=True)]
+    return answers([all_changed(stack, values) for values in points], spectra=spectra)
 
 
 def row(plan: Plan, point: int, found: Answer) -> dict[str, Any]:

@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
 
 import numpy as np
 
-from optics.arrays import Index, Real
+from optics.arrays import Real
 from optics.assumptions import assumptions
 from optics.errors import InputError
 from optics.fate import births
@@ -196,25 +195,11 @@ def _matrix(
 
 
 def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) -> Landed:
-    """Return what each wavelength's scene gives, wavelengths shared out among threads."""
-    count, slices = len(drawing.wavelength_nm), len(edges_nm) - 1
-    whole = Landed.empty(slices, count)
-    threads = max(1, min(settings.threads, count // 8))
-
-    def run(first: int) -> list[tuple[Index, Landed]]:
-        chosen = np.arange(first, count, threads)
-        part = replace(drawing, wavelength_nm=drawing.wavelength_nm[chosen], index=drawing.index[:, chosen])
-        out = []
-        for at, scene in scenes(part):
-            edges = edges_nm * (2.0 * np.pi / part.wavelength_nm[at])[:, None]
-            got = depthwave.land(scene, edges, settings) if model == "wave" else depthray.land(scene, edges)
-            out.append((chosen[at], got))
-        return out
-
-    with ThreadPoolExecutor(threads) as pool:
-        for part in pool.map(run, range(threads)):
-            for at, got in part:
-                whole.put(at, got)
+    """Return what each wavelength's scene gives."""
+    whole = Landed.empty(len(edges_nm) - 1, len(drawing.wavelength_nm))
+    for chosen, scene in scenes(drawing):
+        edges = edges_nm * (2.0 * np.pi / drawing.wavelength_nm[chosen])[:, None]
+        whole.put(chosen, depthwave.land(scene, edges, settings) if model == "wave" else depthray.land(scene, edges))
     return whole
 
 

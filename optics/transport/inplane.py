@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
@@ -140,31 +139,23 @@ def inplane(stack: Stack, *, model: str | None = None, settings: Settings | None
     born = births.born_inside(smooth, drawing, ledger, model=model, settings=settings).per_nm
     births_nm = born * ledger.rate_factor
     births_nm = births_nm / (births_nm @ weights(drawing.wavelength_nm))
-    parts = taken_in_plane(smooth, drawing, ledger, settings, model=model)
+    parts = taken_in_plane(smooth, drawing, ledger, model=model)
     uneven = (UNEVEN,) if stack.film.varies_nm else ()
     said = (*assumptions(stack), *CONVENTIONS, *uneven, *compact.ASSUMPTIONS)
     return replace(_tables(smooth, drawing, ledger, parts, births_nm, model), stack=stack, assumptions=said)
 
 
-def taken_in_plane(stack: Stack, drawing: Drawing, ledger: Ledger, settings: Settings, *, model: str) -> Parts:
+def taken_in_plane(stack: Stack, drawing: Drawing, ledger: Ledger, *, model: str) -> Parts:
     """Return the parts of the kernel, wavelength by wavelength, each with the amount that the ledger gives it."""
     radius = rings.edges_nm()
     count = len(drawing.wavelength_nm)
     film = drawing.film
     open_rays, bound_rays, held = (flights.nothing(len(radius), count) for _ in range(3))
-    with ThreadPoolExecutor(max(1, settings.threads)) as pool:
-        for chosen, scene in scenes(drawing):
-            at = radius[:, None] * (2.0 * np.pi / drawing.wavelength_nm[chosen])
-            ways = [
-                pool.submit(flights.flights, scene, at, bound=False),
-                pool.submit(flights.flights, scene, at, bound=True),
-                pool.submit(flights.returns, scene, at),
-                pool.submit(flights.held, scene, at, model=model),
-            ]
-            first, bound, back, later = (way.result() for way in ways)
-            _put(open_rays, chosen, first.plus(back))
-            _put(bound_rays, chosen, bound)
-            _put(held, chosen, later)
+    for chosen, scene in scenes(drawing):
+        at = radius[:, None] * (2.0 * np.pi / drawing.wavelength_nm[chosen])
+        _put(open_rays, chosen, flights.flights(scene, at, bound=False).plus(flights.returns(scene, at)))
+        _put(bound_rays, chosen, flights.flights(scene, at, bound=True))
+        _put(held, chosen, flights.held(scene, at, model=model))
     held = Taken(held.within / ledger.rate_factor, held.total / ledger.rate_factor)
     rays = open_rays.scaled(ledger.taken[0, film])
     if model == "ray":

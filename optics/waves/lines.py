@@ -35,9 +35,9 @@ SAME_LINE = 1e-3
 ECHO_FROM_PHASE = 2.5
 """Phase through a layer at normal incidence from which a sharp line fits between a mirror and a denser medium."""
 
-SECANTS = 4
-POLISHED = 1e-2
-"""Most steps towards a pole, and what may be missing before the last, in half widths: that step leaves its square."""
+SECANTS = 6
+POLISHED = 1e-5
+"""Most steps towards a pole, and what may be missing before the last, in half widths."""
 
 CLEARANCE = 2.5
 """Lines nearer to an end of their panel than this many half widths are not fitted: the ground there is not smooth."""
@@ -171,15 +171,21 @@ def _fit(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, 
     used = np.where(lines.fitted, lines.centre, 0.0)[panel, None, :], lines.width[panel, None, :]
     offset = (q[:, :, None] - used[0]) / used[1]
     seen = 1.0 / (1.0 + offset * offset)
-    seen = np.stack([_FIT @ seen, _FIT @ (offset * seen)], axis=3)  # (line, amplitude, line, amplitude)
+    seen = np.einsum("an,blnm->lamb", _FIT, np.stack([seen, offset * seen]))  # (line, amplitude, line, amplitude)
     count = lines.centre.shape[1]
     system = np.broadcast_to(np.eye(2 * count).reshape(count, 2, count, 2), (len(panels), count, 2, count, 2)).copy()
     system[panel, line] = np.where(lines.fitted[panel, None, :, None], seen, 0.0)
     given = np.zeros((len(panels), count, 2, len(near)))
-    given[panel, line] = np.moveaxis(near @ _FIT.T, 0, 2)
-    size = (len(panels), 2 * count)
-    found = np.linalg.solve(system.reshape(*size, 2 * count), given.reshape(*size, len(near)))
-    amplitudes = found.reshape(given.shape).transpose(2, 3, 0, 1)
+    given[panel, line] = np.einsum("qln,kn->lkq", near, _FIT)
+    found = np.zeros_like(given)
+    lined = np.isfinite(lines.centre).sum(axis=1)
+    for few in np.unique(lined[lined > 0]):  # a system of its own size: its digits are the same beside any other
+        at, size = np.flatnonzero(lined == few), 2 * few
+        each = np.linalg.solve(
+            system[at, :few, :, :few].reshape(len(at), size, size), given[at, :few].reshape(len(at), size, len(near))
+        )
+        found[at, :few] = each.reshape(len(at), few, 2, len(near))
+    amplitudes = found.transpose(2, 3, 0, 1)
     return amplitudes[0], amplitudes[1]
 
 
@@ -256,8 +262,7 @@ def find(scene: Scene, panels: Rows, candidates: Sequence[Resonator]) -> Lines:
 
 def _lines_of(scene: Scene, panels: Rows, resonator: Resonator) -> tuple[Index, Complex]:
     """Return the panels and poles of one resonator's lines."""
-    depth = np.abs(scene.index[list(resonator.layers)] * scene.phase[list(resonator.layers)]).sum(axis=0).max()
-    count = int(np.ceil(FEWEST_NODES + NODES_PER_PHASE * depth))
+    count = int(np.ceil(FEWEST_NODES + NODES_PER_PHASE * scene.depth_through(resonator.layers)))
     u = np.broadcast_to((np.arange(count) + 0.5) / count, (len(panels), count))
     grid = on_panel(panels, u, scene.film_index[panels.owner, None]).q
     trip = _round_trip(scene.view(panels.owner), grid + 0j, resonator)
@@ -280,13 +285,17 @@ def _secants(
     """Return poles, the step in q per unit of log X there, and log X just before the last step."""
     chosen = np.arange(len(which))
     (older, newer), (log_older, log_newer) = ends, logs
+    rough, per_log = np.ones(len(which), dtype=bool), np.zeros_like(older)
     for _ in range(SECANTS):
         step = log_newer - log_older
-        per_log = (newer - older) / np.where(step == 0.0, 1.0, step)
+        per_log = np.where(rough, (newer - older) / np.where(step == 0.0, 1.0, step), per_log)
         pole = newer - log_newer * per_log
-        older, log_older = newer, log_newer
-        newer, log_newer = pole, np.log(_round_trip(view, pole[:, None], resonator)[which, chosen, 0])
-        if not (np.abs(log_newer * per_log) > POLISHED * np.abs(newer.imag)).any():
+        log = np.log(_round_trip(view, pole[:, None], resonator)[which, chosen, 0])
+        # a line that is good enough stands still, whatever others still need
+        older, log_older = np.where(rough, newer, older), np.where(rough, log_newer, log_older)
+        newer, log_newer = np.where(rough, pole, newer), np.where(rough, log, log_newer)
+        rough &= np.abs(log_newer * per_log) > POLISHED * np.abs(newer.imag)
+        if not rough.any():
             break
     return newer - log_newer * per_log, per_log, log_newer
 
@@ -299,7 +308,8 @@ def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:
     trip = turn(view.phase[core], kz)
     piles = (resonator.layers[:place][::-1], resonator.above), (resonator.layers[place + 1 :], resonator.below)
     for layers, behind in piles:
-        trip = trip * _pair(view, q, layers, behind).reflection(own)
+        # written as a call: NumPy may turn a product with a temporary round, which changes its last digit
+        trip = np.multiply(trip, _pair(view, q, layers, behind).reflection(own))
     return trip
 
 

@@ -270,7 +270,8 @@ def _ahead(nudged: Guide, q: Complex, roots: tuple[Complex, Complex], times: flo
     for _ in range(2):  # poles of thick guides stand so close that one step of Newton's method is not straight enough
         at = np.sqrt(moved)
         value, slope = mismatch(nudged, at, outer_roots(nudged, at, roots))
-        moved = moved - value / slope
+        flat = slope == 0.0  # two poles that are one to the last digit
+        moved = moved - np.where(flat, 0.0, value) / np.where(flat, 1.0, slope)
     ahead: Complex = np.sqrt(q * q + (moved - q * q) * times)
     return ahead
 
@@ -299,7 +300,7 @@ def _newton(
     lost[open_rows] = True
     if len(open_rows):
         value, slope = mismatch(pile.at(open_rows), q[open_rows], (last[0][open_rows], last[1][open_rows]))
-        lost[open_rows] = ~(np.abs(value / slope) < 1e-9)
+        lost[open_rows] = ~(np.abs(value) < 1e-9 * np.abs(slope))
     return q, last, lost
 
 

@@ -4,7 +4,9 @@ Per polarisation and in-plane wave number every interface (coatings included) ha
 transmittance; multiple passes are summed as geometric series from the outermost interface inwards.
 """
 
+from collections.abc import Callable, Hashable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -12,39 +14,57 @@ from optics.arrays import Complex, Mask, Real
 from optics.waves.coherent import Mirror, Outlook, admittances, look, normal_on_axis, outlook_at, squared
 from optics.waves.curves import middle
 from optics.waves.elementary import turn, upper_root
+from optics.waves.repeated import Thing, handed_out
 from optics.waves.scene import Side, View
-from optics.waves.shelf import kept_for
 
 
 class Waves:
     """Admittances and layer phases of a view's media at real ``q``, each computed once when first asked for.
 
     ``short_of_film``, the film's index less ``q`` without cancellation, keeps digits next to the film's light line.
+    What the film's thickness does not touch is computed once for rows that differ in nothing else.
     """
 
     def __init__(self, view: View, q: Real, short_of_film: Complex | None = None) -> None:
         self.view, self.q = view, q
-        self.kept = kept_for(lambda: view.scene.halves, view.owner, q)
-        if short_of_film is not None:
-            film = view.film.index
-            self.kept.get(("kz", view.scene.film), lambda: upper_root(short_of_film * (film + q)))
-        self._film_turn: Complex | None = None
+        self._short_of_film = short_of_film
+        self._made: dict[Hashable, Any] = {}
+        self._copies = view.scene.repeats(view.owner, q[:, 0], q[:, -1])
+        if self._copies is not None:
+            one, _ = self._copies
+            short = None if short_of_film is None else short_of_film[one]
+            self._once = Waves(view.scene.view(view.owner[one]), q[one], short)
+
+    def shared(self, name: Hashable, make: Callable[["Waves"], Thing]) -> Thing:
+        """Return what ``make`` makes of these waves, whatever the film's thickness; made when it is first asked for."""
+        if name not in self._made:
+            if self._copies is None:
+                self._made[name] = make(self)
+            else:
+                self._made[name] = handed_out(self._once.shared(name, make), self._copies[1])
+        thing: Thing = self._made[name]
+        return thing
 
     def kz(self, medium: int) -> Complex:
         """Normal wave number of a medium."""
-        return self.kept.get(("kz", medium), lambda: normal_on_axis(self.view.eps[medium], self.q))
+        return self.shared(("kz", medium), lambda waves: waves._normal(medium))
+
+    def _normal(self, medium: int) -> Complex:
+        if self._short_of_film is None or medium != self.view.scene.film:
+            return normal_on_axis(self.view.eps[medium], self.q)
+        return upper_root(self._short_of_film * (self.view.film.index + self.q))
 
     def own(self, medium: int) -> Complex:
         """Admittance of a medium, (polarisation, row, node)."""
-        return self.kept.get(("own", medium), lambda: admittances(self.kz(medium), self.view.eps[medium]))
+        return self.shared(("own", medium), lambda waves: admittances(waves.kz(medium), waves.view.eps[medium]))
 
     def layer(self, medium: int) -> tuple[Complex, Complex]:
         """Admittance and exp(2 i kz d) of a thin layer."""
         if medium != self.view.scene.film:
-            return self.own(medium), self.kept.get(("turn", medium), lambda: self._turn(medium))
-        if self._film_turn is None:  # the one thing here that depends on the film's thickness
-            self._film_turn = self._turn(medium)
-        return self.own(medium), self._film_turn
+            return self.own(medium), self.shared(("turn", medium), lambda waves: waves._turn(medium))
+        if "film" not in self._made:  # the one thing here that depends on the film's thickness
+            self._made["film"] = self._turn(medium)
+        return self.own(medium), self._made["film"]
 
     def _turn(self, medium: int) -> Complex:
         return turn(self.view.phase[medium], self.kz(medium))
@@ -53,17 +73,18 @@ class Waves:
         """Look outwards through ``layers`` (nearest first) at the medium ``behind``."""
         film = self.view.scene.film
         if film not in layers:
-            return self.kept.get(
+            return self.shared(
                 ("look", layers, behind),
-                lambda: look([self.layer(j) for j in layers], outlook_at(self.own(behind))),
+                lambda waves: look([waves.layer(j) for j in layers], outlook_at(waves.own(behind))),
             )
         at = layers.index(film) + 1
         return look([self.layer(j) for j in layers[:at]], self.look(layers[at:], behind))
 
     def mirror(self, layers: tuple[int, ...], behind: int) -> Mirror:
         """Return what the film meets behind one of its faces: ``layers``, then the medium ``behind``."""
-        return self.kept.get(
-            ("mirror", layers, behind), lambda: self.look(layers, behind).mirror(self.own(self.view.scene.film))
+        return self.shared(
+            ("mirror", layers, behind),
+            lambda waves: waves.look(layers, behind).mirror(waves.own(waves.view.scene.film)),
         )
 
 
@@ -80,7 +101,7 @@ def meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Mee
     """Send light from the lossless medium ``origin`` through coherent ``layers`` to ``behind``."""
     if waves.view.scene.film in layers:
         return _meet(waves, origin, layers, behind)
-    return waves.kept.get(("meet", origin, layers, behind), lambda: _meet(waves, origin, layers, behind))
+    return waves.shared(("meet", origin, layers, behind), lambda one: _meet(one, origin, layers, behind))
 
 
 def _meet(waves: Waves, origin: int, layers: tuple[int, ...], behind: int) -> Meeting:
@@ -143,7 +164,7 @@ class Shell:
 
 def shell(waves: Waves, side: Side) -> Shell:
     """Fold the plates of ``side``, outermost first."""
-    return waves.kept.get(("shell", side), lambda: _shell(waves, side))
+    return waves.shared(("shell", side), lambda one: _shell(one, side))
 
 
 def _shell(waves: Waves, side: Side) -> Shell:

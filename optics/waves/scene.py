@@ -4,15 +4,16 @@ Media run from the outer medium above (position 0) to the one below. The film an
 the thin group; outside it stand plates, which carry intensities, with thin coatings between them.
 """
 
-from collections.abc import Hashable
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
 
 from optics.arrays import Complex, Index, Real
-from optics.waves.shelf import digest
 from optics.waves.source import Film, Moments
+
+DEPTH_STEP = 4.0
 
 
 @dataclass(frozen=True)
@@ -45,7 +46,9 @@ class Scene:
     """Arrays of a stack; ``index`` and ``phase`` are (medium, wavelength).
 
     ``index`` is what waves see: plates and outer media that pass light on enter with the real part; ``loss`` holds
-    the imaginary part that attenuates plates. ``phase`` is k0 d, zero for outer media.
+    the imaginary part that attenuates plates. ``phase`` is k0 d, zero for outer media. ``depths`` are the largest
+    phases through each medium, over all wavelengths that the scene was drawn for: they set the pace of every rule.
+    ``twins`` are numbers by which to know wavelengths that differ in the film's phase alone, None where there are none.
     """
 
     index: Complex
@@ -58,6 +61,8 @@ class Scene:
     layers_down: tuple[int, ...]
     in_plane: float
     moments: Moments
+    depths: tuple[float, ...]
+    twins: Index | None = None
 
     @property
     def media(self) -> int:
@@ -109,12 +114,28 @@ class Scene:
         highest: Real = np.max(real, axis=0)
         return highest
 
-    @cached_property
-    def halves(self) -> Hashable:
-        """A key of everything but the film's thickness: scenes that share it differ in nothing else."""
-        phase = self.phase.copy()
-        phase[self.film] = 0.0
-        return digest(self.index, self.loss, phase), self.film, self.sides, self.layers_up, self.layers_down
+    def depth_through(self, layers: Sequence[int]) -> float:
+        """Return the phase through layers at normal incidence, in steps: scenes much alike ask for equal nodes."""
+        return DEPTH_STEP * float(np.ceil(sum(self.depths[layer] for layer in layers) / DEPTH_STEP))
+
+    @property
+    def depth(self) -> float:
+        """Phase through the whole group."""
+        return self.depth_through((self.film, *self.group))
+
+    def repeats(self, owner: Index, *marks: Real) -> tuple[Index, Index] | None:
+        """Tell which rows differ from the one before in the film's phase alone.
+
+        ``marks`` are what tells rows of one wavelength apart, (row,). Returns the rows that do not, and for each row
+        which of these it repeats; None where no row repeats another.
+        """
+        if self.twins is None:
+            return None
+        fresh = np.ones(len(owner), dtype=bool)
+        fresh[1:] = np.any([mark[1:] != mark[:-1] for mark in (self.twins[owner], *marks)], axis=0)
+        if fresh.all():
+            return None
+        return np.flatnonzero(fresh), np.cumsum(fresh) - 1
 
     def view(self, rows: Index) -> "View":
         """Return the scene at chosen wavelengths, shaped to broadcast over nodes."""
@@ -122,7 +143,44 @@ class Scene:
 
     def at(self, which: Index) -> "Scene":
         """Return the scene at some of its wavelengths only."""
-        return replace(self, index=self.index[:, which], loss=self.loss[:, which], phase=self.phase[:, which])
+        return replace(
+            self,
+            index=np.take(self.index, which, axis=1),
+            loss=np.take(self.loss, which, axis=1),
+            phase=np.take(self.phase, which, axis=1),
+            twins=None if self.twins is None else self.twins[which],
+        )
+
+
+def side_by_side(scenes: Sequence[Scene]) -> tuple[Scene, list[Index]]:
+    """Return scenes of one structure as one, and where in it the wavelengths of each are.
+
+    Those that differ in the film's phase alone stand next to each other and are marked as twins.
+    """
+    first = scenes[0]
+    if len(scenes) == 1:
+        return first, [np.arange(first.wavelengths)]
+    known: dict[tuple[bytes, ...], int] = {}
+    twins: list[Index] = []
+    start = 0
+    for scene in scenes:
+        phase = scene.phase.copy()
+        phase[scene.film] = 0.0
+        key = (scene.index.tobytes(), scene.loss.tobytes(), phase.tobytes())
+        twins.append(known.setdefault(key, start) + np.arange(scene.wavelengths))
+        start += scene.wavelengths
+    marks = np.concatenate(twins)
+    order = np.argsort(marks, kind="stable")
+    place = np.empty_like(order)
+    place[order] = np.arange(len(order))
+    whole = replace(
+        first,
+        index=np.take(np.concatenate([scene.index for scene in scenes], axis=1), order, axis=1),
+        loss=np.take(np.concatenate([scene.loss for scene in scenes], axis=1), order, axis=1),
+        phase=np.take(np.concatenate([scene.phase for scene in scenes], axis=1), order, axis=1),
+        twins=marks[order] if len(known) < len(scenes) else None,
+    )
+    return whole, np.split(place, np.cumsum([scene.wavelengths for scene in scenes])[:-1])
 
 
 class View:

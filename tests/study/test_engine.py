@@ -68,11 +68,11 @@ def test_workers_leave_the_cores_to_each_other():
 def test_chunks_grow_until_handing_out_costs_next_to_nothing():
     from collections import deque
 
-    queue = _Queue(deque(range(100_000)), slots=2)
+    queue = _Queue(deque((point,) for point in range(100_000)), slots=2)
     assert len(queue.take().points) == 1
     queue.learn(0.01, 1)
     assert len(queue.take().points) == 100  # a second of work: some milliseconds of handing out are below 5 %
-    queue.waiting = deque(range(12))
+    queue.waiting = deque((point,) for point in range(12))
     assert len(queue.take().points) == 3  # nobody is left idle at the end
 
 
