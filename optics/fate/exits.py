@@ -84,6 +84,8 @@ def coupled(
     leaving: tuple[Real, Real], responses: Sequence[Response | None], returned: Sequence[Real | float]
 ) -> tuple[Real, Real]:
     """Solve the two-by-two system of both sides: all passes through the group and back."""
+    if not any(responses):
+        return leaving
     up, down = leaving
     above, below = (response or NO_RESPONSE for response in responses)
     self_up, self_down = 1.0 - above.back * returned[0], 1.0 - below.back * returned[1]

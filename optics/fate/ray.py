@@ -22,7 +22,7 @@ from optics.waves.plates import Meeting, Waves, meet
 from optics.waves.scene import Scene, View
 from optics.waves.source import first_flight
 
-ORDER = 32
+ORDER = 40
 """Order of the rule: without phases in the film there is little for it to follow."""
 
 

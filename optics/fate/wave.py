@@ -212,12 +212,12 @@ def _rows(owner: Index, end: Real) -> Rows:
 
 def path_order(scene: Scene, settings: Settings) -> int:
     """Return the order of the rule on dips: phases through the group set the pace."""
-    return settings.finer * int(np.clip(8 * np.ceil(5.0 + scene.depth / 24.0), 48, 256))
+    return settings.finer * int(np.clip(8 * np.ceil(7.0 + scene.depth / 24.0), 64, 256))
 
 
 def panel_order(scene: Scene) -> int:
     """Return the order of the rule on real-axis panels."""
-    return int(np.clip(8 * np.ceil(3.0 + scene.depth / 16.0), 24, 128))
+    return int(np.clip(8 * np.ceil(4.0 + scene.depth / 16.0), 24, 128))
 
 
 def dip(scene: Scene, end: Real, settings: Settings, *, start: Real | None = None, flights: bool = False) -> Integral:

@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from concurrent.futures import Executor
 from dataclasses import dataclass
+from functools import cached_property
+from itertools import groupby
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -18,8 +20,8 @@ from optics.study.keypath import all_changed, without_doubts
 if TYPE_CHECKING:
     import pandas as pd
 
-Packed = tuple[Stack, list[dict[str, Any]], list[bool]]
-"""A stack, values by key path of some points, and whether to keep the wavelengths of each."""
+Packed = tuple[Stack, list[list[tuple[dict[str, Any], bool]]]]
+"""A stack, and unit by unit the values of points by key path, and whether to keep the wavelengths of each."""
 
 FEWEST_UNITS = 8
 """Parts that a small study is cut into at least, for workers to share and for its progress to show."""
@@ -37,18 +39,25 @@ class Plan:
     spectra: bool = False
     spectral: int | None = None
 
+    @cached_property
+    def unit(self) -> int:
+        """How many points are solved side by side."""
+        return min(side_by_side(self.stack), -(-len(self.points) // FEWEST_UNITS))
+
     @property
     def units(self) -> list[Unit]:
-        """Points that are solved side by side, all of the study: always the same ones, whatever is still to do."""
+        """All points, those together that are solved side by side: always the same, whatever is still to do."""
         count = len(self.points)
-        size = min(side_by_side(self.stack), -(-count // FEWEST_UNITS))
-        return [tuple(range(first, min(first + size, count))) for first in range(0, count, size)]
+        return [tuple(range(at, min(at + self.unit, count))) for at in range(0, count, self.unit)]
 
     def pack(self, points: Sequence[int]) -> Packed:
         """Return what a worker needs for some points."""
         first = len(self.points) if self.spectral is None else self.spectral
-        kept = [self.spectra and point < first for point in points]
-        return without_doubts(self.stack), [self.points.values(point) for point in points], kept
+        units = [
+            [(self.points.values(point), self.spectra and point < first) for point in unit]
+            for _, unit in groupby(points, key=lambda point: point // self.unit)
+        ]
+        return without_doubts(self.stack), units
 
 
 @dataclass(frozen=True)
@@ -125,8 +134,12 @@ def sweep(
 
 def work(packed: Packed) -> list[Answer]:
     """Return the answers of some points; what a worker does."""
-    stack, points, spectra = packed
-    return answers([all_changed(stack, values) for values in points], spectra=spectra)
+    stack, units = packed
+    found: list[Answer] = []
+    for unit in units:
+        values, spectra = zip(*unit, strict=True)
+        found += answers([all_changed(stack, each) for each in values], spectra=spectra)
+    return found
 
 
 def row(plan: Plan, point: int, found: Answer) -> dict[str, Any]:

@@ -113,7 +113,7 @@ def _summed(scene: Scene, radius: Real, low: Real, high: Real, take: Take, order
         u = np.broadcast_to(nodes, (len(part), len(nodes)))
         points = curves.on_crowded_panel(part, u, scene.film_index[part.owner, None])
         waves = Waves(scene.view(part.owner), points.q, points.short_of_film)
-        within, total = take(waves, radius[:, part.owner], points.slope * weights[0])
+        within, total = take(waves, radius[:, part.owner], points.slope * weights[:, 0])
         np.add.at(out.within.T, part.owner, within.T)
         np.add.at(out.total, part.owner, total)
     return out

@@ -177,15 +177,9 @@ def _fit(value: Value, panels: Rows, lines: Lines, scene: Scene) -> tuple[Real, 
     system[panel, line] = np.where(lines.fitted[panel, None, :, None], seen, 0.0)
     given = np.zeros((len(panels), count, 2, len(near)))
     given[panel, line] = np.einsum("qln,kn->lkq", near, _FIT)
-    found = np.zeros_like(given)
-    lined = np.isfinite(lines.centre).sum(axis=1)
-    for few in np.unique(lined[lined > 0]):  # a system of its own size: its digits are the same beside any other
-        at, size = np.flatnonzero(lined == few), 2 * few
-        each = np.linalg.solve(
-            system[at, :few, :, :few].reshape(len(at), size, size), given[at, :few].reshape(len(at), size, len(near))
-        )
-        found[at, :few] = each.reshape(len(at), few, 2, len(near))
-    amplitudes = found.transpose(2, 3, 0, 1)
+    size = (len(panels), 2 * count)
+    found = np.linalg.solve(system.reshape(*size, 2 * count), given.reshape(*size, len(near)))
+    amplitudes = found.reshape(given.shape).transpose(2, 3, 0, 1)
     return amplitudes[0], amplitudes[1]
 
 
@@ -308,8 +302,7 @@ def _round_trip(view: View, q: Complex, resonator: Resonator) -> Complex:
     trip = turn(view.phase[core], kz)
     piles = (resonator.layers[:place][::-1], resonator.above), (resonator.layers[place + 1 :], resonator.below)
     for layers, behind in piles:
-        # written as a call: NumPy may turn a product with a temporary round, which changes its last digit
-        trip = np.multiply(trip, _pair(view, q, layers, behind).reflection(own))
+        trip = trip * _pair(view, q, layers, behind).reflection(own)
     return trip
 
 

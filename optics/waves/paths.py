@@ -24,7 +24,7 @@ HEAP_TO_KEEP = 24 << 20
 
 @cache
 def fejer(order: int) -> tuple[Real, Real]:
-    """Return nodes on (0, 1) and three rows of weights: Fejer's second rule and those of half and quarter order.
+    """Return nodes on (0, 1) and three columns of weights: Fejer's second rule and those of half and quarter order.
 
     Waldvogel, BIT 46, 195 (2006), eq. 2.3, mapped from (-1, 1). The rules are nested and none uses the end points,
     where a map and an integrand can meet as zero times infinity.
@@ -32,9 +32,9 @@ def fejer(order: int) -> tuple[Real, Real]:
     if order % 8:
         raise ValueError("the order of a nested rule is a multiple of eight")
     theta = np.pi * np.arange(1, order) / order
-    weights = np.zeros((3, order - 1))
-    for row, stride in enumerate((1, 2, 4)):
-        weights[row, stride - 1 :: stride] = _fejer_weights(theta[stride - 1 :: stride], order // stride)
+    weights = np.zeros((order - 1, 3))
+    for column, stride in enumerate((1, 2, 4)):
+        weights[stride - 1 :: stride, column] = _fejer_weights(theta[stride - 1 :: stride], order // stride)
     # 1 - cos loses digits near zero, where curves start at square-root ends
     nodes = np.sin(0.5 * theta) ** 2
     nodes.setflags(write=False)
@@ -175,7 +175,7 @@ def _refined(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
     blocks, values = [], []
     for part in _blocks(rows, rule.order):
         value = density(part, _at(part, nodes))
-        blocks.append(rule.judged(part, _summed(value, weights)))
+        blocks.append(rule.judged(part, value @ weights))
         values.append(value[:, blocks[-1][1] > rule.tolerance])
     sums, guess = np.concatenate([b[0] for b in blocks], axis=1), np.concatenate([b[1] for b in blocks])
     known = np.concatenate(values, axis=1)
@@ -188,7 +188,7 @@ def _refined(density: Density, rows: Rows, rule: _Rule) -> tuple[Real, Real]:
         fresh = [density(part, _at(part, nodes[::2])) for part in _blocks(again, order // 2)]
         both = np.empty((len(known), len(rough), order - 1))
         both[..., 1::2], both[..., ::2] = known, np.concatenate(fresh, axis=1)
-        sums[:, rough], guess[rough] = rule.judged(again, _summed(both, weights))
+        sums[:, rough], guess[rough] = rule.judged(again, both @ weights)
         still = guess[rough] > rule.tolerance
         rough, known = rough[still], both[:, still]
     return sums, guess
@@ -198,15 +198,6 @@ def _blocks(rows: Rows, nodes: int) -> Iterator[Rows]:
     step = max(1, BLOCK // nodes)
     for at in range(0, len(rows), step):
         yield rows.take(slice(at, at + step))
-
-
-def _summed(values: Real, weights: Real) -> Real:
-    """Return sums over nodes by each rule, (quantity, row, rule), the same whatever other rows there are.
-
-    A matrix product would take half the time, but the last digits of its sums depend on the size of the matrix.
-    """
-    sums: Real = np.einsum("qrn,kn->qrk", values, weights)
-    return sums
 
 
 def _at(rows: Rows, nodes: Real) -> Real:

@@ -29,7 +29,7 @@ def test_fejers_rule_is_exact_for_polynomials_below_its_order(order):
     """Waldvogel, BIT 46, 195 (2006): n - 1 nodes, exact to degree n - 2 at least."""
     nodes, weights = fejer(order)
     for degree in range(order - 1):
-        assert nodes**degree @ weights[0] == pytest.approx(1.0 / (degree + 1), abs=ROUNDING)
+        assert nodes**degree @ weights[:, 0] == pytest.approx(1.0 / (degree + 1), abs=ROUNDING)
 
 
 def test_fejers_rule_keeps_off_both_ends():
