@@ -16,7 +16,7 @@ from optics.waves.plates import Waves
 from optics.waves.scene import Scene
 
 ORDER = 16
-BLOCK = 300
+BLOCK = 1200
 
 
 def land(scene: Scene, edges: Real) -> Landed:

@@ -150,7 +150,7 @@ def _weights(film: Film, q: Real, kz: Complex, polarisation: int) -> tuple[Real,
     if polarisation == 0:
         return one, 0.0 * one, h * scale / size, loss, 0.0 * one
     send = h * scale / size
-    return q * q, size, send, loss / squared(film.eps), (2.0 * (1.0 - h) - h) * scale * q * q / size
+    return q * q, size, send, loss / squared(film.eps), (2.0 - 3.0 * h) * scale * q * q / size
 
 
 def _add_block(
