@@ -18,7 +18,7 @@ from optics.study.sweep import sweep
 
 ROOT = Path(__file__).resolve().parents[2]
 EXAMPLES = ("ch3nh3pbi3-on-glass/stack", "encapsulation/cover-glass")
-FASTER_THAN_SOLVES = 1.1  # what a sweep is sure to gain; README says how much it was
+FASTER_THAN_SOLVES = 1.5  # what a sweep is sure to gain; README says how much it was
 FASTER_WITH_TWO = 1.5
 OVERHEAD = 0.05
 MOST_MB = 400.0
@@ -26,16 +26,16 @@ THICKNESSES = [float(each) for each in range(300, 420)]
 
 
 def seconds(act):
-    start = time.process_time(), time.perf_counter()
+    start = time.perf_counter()
     act()
-    return time.process_time() - start[0], time.perf_counter() - start[1]
+    return time.perf_counter() - start
 
 
 @pytest.mark.parametrize("name", EXAMPLES)
 def test_a_sweep_is_faster_than_separate_solves(name):
     stack = optics.read_stack(ROOT / "examples" / f"{name}.toml")
-    separate, _ = seconds(lambda: [solve(stack.with_layer("film", thickness_nm=each)) for each in THICKNESSES])
-    together, _ = seconds(lambda: sweep(stack, {"film.thickness_nm": THICKNESSES}))
+    separate = seconds(lambda: [solve(stack.with_layer("film", thickness_nm=each)) for each in THICKNESSES])
+    together = seconds(lambda: sweep(stack, {"film.thickness_nm": THICKNESSES}))
     print(f"\n{name}: separate solves over sweep {separate / together:.2f}")  # noqa: T201
     assert separate / together > FASTER_THAN_SOLVES
 
@@ -43,8 +43,8 @@ def test_a_sweep_is_faster_than_separate_solves(name):
 def test_two_workers_are_faster_than_one():
     stack = optics.read_stack(ROOT / "examples" / f"{EXAMPLES[0]}.toml")
     many = {"film.thickness_nm": [float(each) for each in range(51, 1051)]}
-    _, one = seconds(lambda: sweep(stack, many))
-    _, two = seconds(lambda: sweep(stack, many, workers=2))
+    one = seconds(lambda: sweep(stack, many))
+    two = seconds(lambda: sweep(stack, many, workers=2))
     print(f"\none process over two {one / two:.2f}")  # noqa: T201
     assert one / two > FASTER_WITH_TWO
 
@@ -65,7 +65,7 @@ def test_handing_out_costs_next_to_nothing():
 
     stack = optics.read_stack(ROOT / "examples" / f"{EXAMPLES[0]}.toml")
     plan = Plan(stack, from_values(stack, {"film.thickness_nm": THICKNESSES}))
-    bare, _ = seconds(lambda: work(plan.pack(range(len(THICKNESSES)))))
-    handed, _ = seconds(lambda: list(run(work, plan.pack, range(len(THICKNESSES)), Place())))
+    bare = seconds(lambda: work(plan.pack(range(len(THICKNESSES)))))
+    handed = seconds(lambda: list(run(work, plan.pack, range(len(THICKNESSES)), Place())))
     print(f"\nwork handed out over work {handed / bare:.3f}")  # noqa: T201
     assert handed / bare < 1.0 + OVERHEAD + 0.1  # the pace of one machine wavers by a tenth
