@@ -255,6 +255,9 @@ def _executor(place: Place) -> Iterator[tuple[Executor, int]]:
         with one_thread_each():
             try:
                 pool = ProcessPoolExecutor(place.workers, mp_context=get_context("spawn"), initializer=_begin_worker)
+                # all start now: a process that starts while the pool breaks would be waited for in vain
+                for _ in range(place.workers):
+                    pool.submit(os.getpid)
                 yield pool, place.workers
             finally:
                 if pool is not None:

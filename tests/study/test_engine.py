@@ -59,6 +59,34 @@ def test_what_kills_worker_after_worker_is_named_and_the_rest_done():
     assert "points have no answer" in str(error.value)
 
 
+def test_units_stay_together_and_only_what_is_wanted_comes_back():
+    units = [tuple(range(at, at + 5)) for at in range(0, 20, 5)]
+    packed, found = [], {}
+
+    def pack(points):
+        packed.extend(points)
+        return list(points)
+
+    for at, answers in run(engine_work.squares, pack, [3, 4, 11], Place(), units=units):
+        found.update(zip(at, answers, strict=True))
+    assert packed == [*range(5), *range(10, 15)]
+    assert found == {3: 9, 4: 16, 11: 121}
+
+
+def test_a_point_that_kills_costs_none_of_those_it_goes_with():
+    units = [tuple(range(at, at + 5)) for at in range(0, 20, 5)]
+    found = {}
+
+    def gather():
+        for at, answers in run(engine_work.dies_always, list, range(20), WORKERS, units=units):
+            found.update(zip(at, answers, strict=True))
+
+    with pytest.raises(UnfinishedError) as error:
+        gather()
+    assert error.value.missing == (7,)
+    assert set(found) == set(range(20)) - {7}
+
+
 def test_workers_leave_the_cores_to_each_other():
     before = os.environ.get("OPENBLAS_NUM_THREADS")
     assert set(collected(engine_work.threads, WORKERS).values()) == {"1"}
