@@ -105,7 +105,7 @@ def _depth(stack: Stack) -> str:
 def _seen(stack: Stack) -> str:
     spectrum = stack.light.spectrum
     if spectrum.seen == "inside":
-        return 'the spectrum is the one born inside the film (seen = "inside")'
+        return 'the spectrum is the film material\'s own (seen = "inside"); births follow it times the rate factor'
     na = None if isinstance(spectrum, FromAbsorption) else spectrum.na
     part = "all light that gets out there (na not given)" if na is None else f"light within na = {na:g}"
     return (

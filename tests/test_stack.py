@@ -208,7 +208,7 @@ def test_what_is_taken_for_granted_is_said():
         'layer "cure", 8000 nm: a plate, without phases (phases = "ignore")',
         'layer "glass", 1.1 mm: a plate, without phases (over 20 um, phases not given)',
         "horizontal_share = 0.6667 (isotropic, the default); births spread evenly over the depth of the film",
-        'the spectrum is the one born inside the film (seen = "inside")',
+        'the spectrum is the film material\'s own (seen = "inside"); births follow it times the rate factor',
         "14 % of the Gaussian's births lie outside the light's 750 to 860 nm and are left out",
         "n and k between the rows of a table by monotone cubic interpolation: red, float-glass",
         "the same index at every wavelength: 1.5",

@@ -22,6 +22,7 @@ def compare(stacks: tuple[Path, ...], workers: int, output: Path | None, replace
     from optics.errors import InputError
     from optics.output.comparison import report, write_comparison
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.stackfile import read_stack
     from optics.study.compare import check_comparable
     from optics.study.compare import compare as compare_stacks
@@ -34,7 +35,8 @@ def compare(stacks: tuple[Path, ...], workers: int, output: Path | None, replace
     loaded = {name: read_stack(file) for name, file in zip(names, stacks, strict=True)}
     check_comparable(loaded)
     folder = output or stacks[0].with_name(f"{stacks[0].stem}-compared")
-    check_target(folder, replace=replace)
+    needed = [file for name, path in zip(names, stacks, strict=True) for file in files_of(loaded[name], path)]
+    check_target(folder, replace=replace, needed=needed)
     found = compare_stacks(loaded, workers=workers)
     write_comparison(found, folder, stack_files=stacks, title=", ".join(names), replace=replace)
     click.echo(report(found, folder=folder))

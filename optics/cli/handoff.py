@@ -33,6 +33,7 @@ def handoff(stack: Path, folder: Path | None, kind: str, slices: int, full: bool
     from optics.output.folder import check_target
     from optics.output.handoff import bundle_folder, report, write_handoff
     from optics.output.handoff_formats import check_format
+    from optics.output.inputs import files_of
     from optics.stackfile import read_stack
     from optics.stackfile.reading import stack_file_in
     from optics.transport.handover import hand_over
@@ -41,7 +42,7 @@ def handoff(stack: Path, folder: Path | None, kind: str, slices: int, full: bool
     folder = folder or bundle_folder(stack)
     stack = stack_file_in(stack)
     loaded = read_stack(stack)
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     handed = hand_over(loaded, slices=slices, full=full)
     write_handoff(handed, folder, kind=kind, stack_file=stack, full=full, replace=replace)
     click.echo(report(handed, folder, stack_file=stack))

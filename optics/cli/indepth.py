@@ -25,6 +25,7 @@ def indepth(
       photonfate indepth my-film/stack.toml --slices 20 --output my-film/depth
     """
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.transport import indepth_report, read_mesh, write_indepth
     from optics.stackfile import read_stack
     from optics.transport.depth import checked_edges
@@ -33,7 +34,7 @@ def indepth(
     loaded = read_stack(stack)
     edges = None if mesh is None else checked_edges(read_mesh(mesh), loaded, place=str(mesh))
     folder = output or stack.with_name(f"{stack.stem}-indepth")
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     found = travel(loaded, edges_nm=edges, slices=slices)
     write_indepth(found, folder, by_wavelength=by_wavelength, stack_file=stack, replace=replace)
     click.echo(indepth_report(found, folder))

@@ -18,13 +18,14 @@ def inplane(stack: Path, output: Path | None, replace: bool) -> None:
       photonfate inplane my-film/stack.toml --output my-film/plane
     """
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.transport import inplane_report, write_inplane
     from optics.stackfile import read_stack
     from optics.transport.inplane import inplane as travel
 
     loaded = read_stack(stack)
     folder = output or stack.with_name(f"{stack.stem}-inplane")
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     found = travel(loaded)
     write_inplane(found, folder, stack_file=stack, replace=replace)
     click.echo(inplane_report(found, folder))

@@ -20,13 +20,14 @@ def receivers(stack: Path, output: Path | None, replace: bool) -> None:
       photonfate receivers my-film/stack.toml --output my-film/who
     """
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.transport import receivers_report, write_receivers
     from optics.stackfile import read_stack
     from optics.transport.receivers import receivers as follow
 
     loaded = read_stack(stack)
     folder = output or stack.with_name(f"{stack.stem}-receivers")
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     found = follow(loaded)
     write_receivers(found, folder, stack_file=stack, replace=replace)
     click.echo(receivers_report(found, folder))

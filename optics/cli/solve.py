@@ -31,6 +31,7 @@ def solve(stack: Path, output: Path | None, measured: Path | None, laid_over: st
     from optics.fate.overlay import lay_over
     from optics.fate.solve import solve as solve_stack
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.report import report
     from optics.output.result import result_folder, write_result
     from optics.stackfile import read_stack
@@ -41,7 +42,7 @@ def solve(stack: Path, output: Path | None, measured: Path | None, laid_over: st
     folder = output or result_folder(stack)
     stack = stack_file_in(stack)
     loaded = read_stack(stack)
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     seen = None if measured is None else read_births(measured, place=str(measured))
     result = solve_stack(loaded)
     if seen is not None:

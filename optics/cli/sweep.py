@@ -42,6 +42,7 @@ def sweep(
     from optics.cli.progress import progress
     from optics.cli.study import go_on
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.sweeps import report, write_sweep
     from optics.stackfile import read_stack
     from optics.study.basis import basis
@@ -55,7 +56,7 @@ def sweep(
     stack = read_stack(study.stack_file)
     plan = Plan(stack, study.points(stack), study.spectra)
     folder = output or file.with_name(f"{file.stem}-sweep")
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(stack, study.stack_file, file))
     rests_on = basis(stack, stack_file=study.stack_file, points=plan.points, spectra=plan.spectra)
     with go_on(folder, rests_on, len(plan.points), restart=restart) as journal:
         journal.fill(work, plan.pack, Place(workers, cluster), progress(journal.done), units=plan.units)

@@ -38,6 +38,7 @@ def tolerance(
     from optics.cli.progress import progress
     from optics.cli.study import go_on
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.spreads import report, write_spread
     from optics.stackfile import read_stack
     from optics.study.basis import basis
@@ -48,7 +49,7 @@ def tolerance(
     loaded = read_stack(stack)
     draws = drawn_points(loaded, samples=samples, seed=seed)
     folder = output or stack.with_name(f"{stack.stem}-tolerance")
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     rests_on = basis(loaded, stack_file=stack, samples=samples, seed=seed)
     with go_on(folder, rests_on, len(draws.plan.points), restart=restart) as journal:
         journal.fill(work, draws.plan.pack, Place(workers, cluster), progress(journal.done), units=draws.plan.units)

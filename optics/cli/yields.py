@@ -37,13 +37,14 @@ def yields(
     from optics.fate.implied import default_reading, given, implied
     from optics.fate.sampled import sampled
     from optics.output.folder import check_target
+    from optics.output.inputs import files_of
     from optics.output.samples import sample_report, write_yields
     from optics.stackfile import read_stack
 
     known = given(internal=internal, external=external, sd=internal_sd or external_sd)
     loaded = read_stack(stack)
     folder = output or stack.with_name(f"{stack.stem}-yields")
-    check_target(folder, replace=replace)
+    check_target(folder, replace=replace, needed=files_of(loaded, stack))
     found = sampled(loaded)
     reading = reading or default_reading(found)
     rows = () if known is None else implied(found, known, reading=reading, temperature_K=kelvin)

@@ -2,7 +2,7 @@
 
 import os
 import shutil
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
@@ -10,7 +10,7 @@ from optics.errors import InputError
 from optics.output.record import touched
 
 
-def check_target(folder: Path, *, replace: bool) -> Path:
+def check_target(folder: Path, *, replace: bool, needed: Iterable[str | Path] = ()) -> Path:
     """Return the full path of a folder that may be written, before any work is done.
 
     Parameters
@@ -19,6 +19,8 @@ def check_target(folder: Path, *, replace: bool) -> Path:
         Where results shall go; the folder around it must exist.
     replace
         Whether to write over a folder that this tool did not write, or that was touched since.
+    needed
+        Files that the work rests on: a folder that holds one is never written over.
 
     Raises
     ------
@@ -32,6 +34,9 @@ def check_target(folder: Path, *, replace: bool) -> Path:
         raise InputError(f"{folder}: found a file, expected the name of a folder for the results")
     if full == full.parent or Path.cwd().is_relative_to(full):
         raise InputError(f"{folder}: the working directory lies in it; name another folder for the results")
+    for file in needed:
+        if Path(file).resolve().is_relative_to(full):
+            raise InputError(f"{folder}: {file} lies in it, which is needed; name another folder for the results")
     if full.is_dir() and any(full.iterdir()) and not replace:
         reason = touched(full)
         if reason:

@@ -172,7 +172,8 @@ def _births(stack: "Stack") -> str:
     else:
         shape = "a table" if isinstance(spectrum, SpectrumTable) else "as given"
     seen = "" if spectrum.seen == "inside" else f"as seen {spectrum.seen} and traced back to "
-    return f"The emission spectrum was {shape}, {seen}the film's own."
+    own = f"The emission spectrum was {shape}, {seen}the film material's own"
+    return f"{own}; births in the stack follow it times the rate factor."
 
 
 def _materials(stack: "Stack") -> Mapping[str, "Material"]:

@@ -22,10 +22,11 @@ LEADING = (
     "free_above",
     "free_below",
     "elsewhere",
+    "guided_elsewhere",
     "rate_factor",
-    "p_r_wide",
     "radiative_factor_wide",
     "inplane_median_um",
+    "p_r_wide",
     "p_e_wide",
     "ray_trapped",
 )

@@ -51,6 +51,11 @@ def copy_inputs(stack: Stack, folder: Path, *, stack_file: Path | None, taken: C
         copy.write_text(write_stack(moved, folder=folder), encoding="utf-8", newline="\n")
 
 
+def files_of(stack: Stack, *stack_files: Path) -> list[str]:
+    """Return every file that a stack rests on: where it was read from, and its tables."""
+    return [*map(str, stack_files), *tables_of(stack)]
+
+
 def tables_of(stack: Stack) -> dict[str, str]:
     """Return path and hash of every table that a stack was made from; cards of bundled materials are none."""
     materials = [material for _, material, _ in stack.media]
@@ -133,7 +138,7 @@ def _places_beside(tables: Collection[str], stack_file: Path | None, taken: Coll
     """Return where each table stands as seen from the stack file; None when one could not stand there in the copy."""
     if stack_file is None:
         return None
-    home = stack_file.parent.resolve()
+    home, text = stack_file.parent.resolve(), stack_file.read_text(encoding="utf-8", errors="replace")
     places = {}
     for path in tables:
         try:
@@ -142,7 +147,8 @@ def _places_beside(tables: Collection[str], stack_file: Path | None, taken: Coll
             if not _is_card(path):
                 return None
             place = Path(CABINET) / Path(path).name  # the user's own card, found by its name beside the copy
-        if place.parts[0] in taken or Path(path).is_absolute() != stack_file.parent.is_absolute():
+        named_in_full = any(name in text for name in (path, Path(path).as_posix(), path.replace("\\", "\\\\")))
+        if place.parts[0] in taken or (Path(path).is_absolute() and named_in_full):
             return None
         places[path] = place
     return places

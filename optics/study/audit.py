@@ -148,8 +148,9 @@ def _on_file(result: Result, on_file: Mapping[str, float] | None) -> Iterator[Ch
     if on_file is None:
         return
     figure = max((abs(result.averages[name] - on_file.get(name, np.inf)) for name in SHARES), default=0.0)
-    said = "largest difference of an averaged share from the result folder's; the stack or a table has changed since"
-    yield _judged("result on file", figure, ON_FILE, said)
+    said = "largest difference of an averaged share from the result folder's"
+    changed = "" if figure <= ON_FILE else "; the stack or a table has changed since"
+    yield _judged("result on file", figure, ON_FILE, said + changed)
 
 
 def _tables(stack: Stack, result: Result) -> Iterator[Check]:

@@ -42,8 +42,8 @@ class Receivers:
         The stack.
     table
         A row an emitting layer, and last one of all photons (source ``ALL``): ``HEAD``, a column ``to:<layer>`` for
-        every layer that emits or receives, ``elsewhere`` (other layers and absorbing outer media), and ``ENDS``; from
-        ``to:`` on, a row adds to one. Averages over the spectrum.
+        every layer that emits or receives, ``other_layers`` (the other layers and absorbing outer media, guided light
+        included), and ``ENDS``; from ``to:`` on, a row adds to one. Averages over the spectrum.
     by_wavelength
         The same wavelength by wavelength, after wavelength_nm, without births_share and without the last row.
     models
@@ -105,7 +105,7 @@ def _shares(stack: Stack, ledger: Ledger, names: list[str]) -> dict[str, Real]:
     out = {f"to:{name}": taken[place[name]] for name in names}
     others = np.ones(len(taken), dtype=bool)
     others[[place[name] for name in names]] = False
-    out["elsewhere"] = taken[others].sum(axis=0)
+    out["other_layers"] = taken[others].sum(axis=0)
     return out | {name: ledger.shares[name] for name in ENDS}
 
 

@@ -33,7 +33,7 @@ def two():
 
 def test_every_row_adds_to_one_and_the_last_is_the_mean_by_births(two):
     table = receivers(two).table.set_index("source")
-    columns = ["to:wide", "to:narrow", "to:cell", "elsewhere", *ENDS]
+    columns = ["to:wide", "to:narrow", "to:cell", "other_layers", *ENDS]
     assert table.index.tolist() == ["wide", "narrow", ALL]
     assert table[columns].sum(axis=1).to_numpy() == pytest.approx(np.ones(3), abs=1e-9)
     mean = 0.3 * table.loc["wide", columns] + 0.7 * table.loc["narrow", columns]
