@@ -8,6 +8,7 @@ from optics.arrays import Real
 from optics.media.bandtail import DEEPEST_FLOOR, Floor, find_floor, rows_of
 from optics.media.kramers import METHOD, Consistency, kramers_kronig
 from optics.media.material import Material
+from optics.units import absorption_per_cm
 
 __all__ = ["Finding", "Fitness", "examine", "floor_warning"]
 
@@ -35,6 +36,9 @@ NOT_TOGETHER = 0.05
 below 0.01 of the span; a k that is 20 % too large reaches 0.05."""
 
 LEAST_DIFFERENCE = 0.01
+WEAK_PER_CM = 10.0
+"""Absorption of a floor below which no film of micrometres could have shown it: common practice, no source."""
+
 ABSORBS_AT_RED_END = 0.2
 """With a larger k at the red end (metals, free carriers) what lies beyond it decides n: the table cannot be judged."""
 
@@ -272,6 +276,12 @@ def _tail(floor: Floor | None) -> Finding:
     if floor is None:
         return Finding("tail", "no floor found below an absorption edge")
     falls = f"falls by a factor e in {floor.decay_meV:.0f} meV" if np.isfinite(floor.decay_meV) else "does not fall"
+    if absorption_per_cm(floor.k, floor.onset_nm) < WEAK_PER_CM:
+        said = (
+            f"beyond {floor.onset_nm:.0f} nm k stops falling like a tail (k = {floor.k:.2g}; it {falls} from there on): "
+            "too weak for the fit of a thin film: another absorber, measured through a thick sample"
+        )
+        return Finding("tail", said, at_nm=(floor.onset_nm,))
     said = (
         f"beyond {floor.onset_nm:.0f} nm k stops falling like a tail (k = {floor.k:.2g}; it {falls} from there on): a "
         f"floor that a fit left, or another absorber; the edge falls fastest at {floor.steepest_nm:.0f} nm, a factor e "

@@ -133,6 +133,12 @@ def _warned(material: object, peak: float) -> str | None:
     return floor_warning("film", material, LIGHT, k, _births(peak))  # type: ignore[arg-type]
 
 
+def test_the_weak_absorption_of_a_glass_is_no_floor_of_a_fit():
+    found = fitness_of("float-glass")
+    assert found.floor is not None
+    assert found.fit
+
+
 def test_births_on_a_floor_are_warned_of_in_one_line():
     film = find("ch3nh3pbi3")
     said = _warned(film, 770.0)
