@@ -6,7 +6,7 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 
-from optics.arrays import Real
+from optics.arrays import Index, Real
 from optics.assumptions import assumptions
 from optics.errors import InputError
 from optics.fate import births
@@ -25,6 +25,11 @@ from optics.waves.source import uniform
 SLICES = 50
 MOST_SLICES = 400
 ROUNDING = 1e-12
+WORTH_SAYING = 0.01
+"""Share of a slice's light from which mending is told of."""
+
+TURNS = 500
+"""Most turns of scaling rows and columns to what they should add to."""
 
 CONVENTIONS = (
     "over the depth: births spread evenly in each slice; averages weigh wavelengths with the births in it, not slices",
@@ -140,7 +145,27 @@ def indepth(
     share = born * weights(drawing.wavelength_nm)
     found = {model: _matrix(drawing, edges * scale, ledgers[model], share, settings, model) for model in models}
     said = (*assumptions(stack), *CONVENTIONS, *((UNEVEN,) if stack.film.varies_nm else ()))
-    return InDepth(stack, edges, drawing.wavelength_nm, found.get("wave"), found["ray"], (), said)
+    warned = [line for model in models for line in _warnings(found[model], ledgers[model], model)]
+    return InDepth(stack, edges, drawing.wavelength_nm, found.get("wave"), found["ray"], tuple(warned), said)
+
+
+def _warnings(matrix: DepthMatrix, ledger: Ledger, model: str) -> list[str]:
+    """Say where slices had to be mended, and where the ledger's film share is below zero and no matrix can hold it."""
+    said = []
+    if matrix.mended > WORTH_SAYING:
+        said.append(
+            f"over the depth, {model}: some slices had {matrix.mended:.2g} of their light less than nothing left for "
+            "themselves (near field between thin slices or from denser neighbours); they were mended, and rows and "
+            "ends scaled in turns until even births give the ledger again"
+        )
+    film = ledger.shares["reabsorbed"] + ledger.shares["guided_reabsorbed"]
+    low = min(float(film.min()), float(ledger.rate_factor.min()))
+    if low < -ROUNDING:
+        said.append(
+            f"over the depth, {model}: at some wavelengths the ledger itself has a film share or a rate factor below "
+            f"zero (down to {low:.2g}): no matrix of shares adds up to that, and even births do not give it back there"
+        )
+    return said
 
 
 def checked_edges(edges: Real, stack: Stack, *, place: str = "mesh") -> Real:
@@ -177,7 +202,7 @@ def _matrix(
     matrix[clear] = 0.0
     own = power.T - ends.sum(axis=2) - matrix.sum(axis=2)
     ends, own = _unabsorbed(ends, own, clear, ledger)
-    mended = max(_mended(matrix, own, power), _closed(matrix, ends, power))
+    mended = max(_mended(matrix, own, power), _balanced(matrix, ends, power, width, ledger))
     spectrum = share @ power.T
     births_in = share[:, None] * power.T / spectrum
     matrix /= power.T[:, :, None]
@@ -228,18 +253,49 @@ def _unabsorbed(ends: Real, own: Real, clear: Real, ledger: Ledger) -> tuple[Rea
     return ends, own - rest
 
 
-def _closed(matrix: Real, ends: Real, power: Real) -> float:
-    """Close the rows in place where what was cut off at zero has opened them; return the largest share that moved."""
-    low = float((-ends.min(axis=2) / power.T).max())
-    np.maximum(ends, 0.0, out=ends)
-    film, other = matrix.sum(axis=2), ends.sum(axis=2)
-    off = power.T - film - other
-    # ends give or take what is missing; the film only where there is no end
-    part = np.where(other > 0.0, np.maximum(other + off, 0.0) / np.where(other > 0.0, other, 1.0), 1.0)
-    ends *= part[:, :, None]
-    rest = (power.T - ends.sum(axis=2)) / np.where(film > 0.0, film, 1.0)
-    matrix *= np.where(film > 0.0, rest, 1.0)[:, :, None]
-    return max(low, float(np.abs(off / power.T).max()), 0.0) if max(low, float(np.abs(off).max())) > ROUNDING else 0.0
+def _balanced(matrix: Real, ends: Real, power: Real, width: Real, ledger: Ledger) -> float:
+    """Let rows close and even births give the ledger again where cutting at zero has undone it, in place.
+
+    Births of a slice (row) and every end (column) take turns in being scaled to what they should add to (Deming &
+    Stephan 1940); the largest share that moved is returned. A slice that radiates less than nothing, as near field of
+    its neighbours can leave it, keeps that to itself.
+    """
+    low = float((-ends.min(axis=2) / np.abs(power.T)).max())
+    off = np.abs(power.T - matrix.sum(axis=2) - ends.sum(axis=2)).max(axis=1)
+    cut = np.flatnonzero((ends.min(axis=(1, 2)) < 0.0) | (off > ROUNDING) | (power.min(axis=0) <= 0.0))
+    if not len(cut):
+        return 0.0
+    births = width * power.T[cut]
+    film, other = np.maximum(matrix[cut], 0.0) * width[:, None], np.maximum(ends[cut], 0.0) * width[:, None]
+    dead = births <= 0.0
+    film[dead], other[dead] = 0.0, 0.0
+    wanted = _columns(ledger, cut) * ledger.rate_factor[cut, None]
+    wanted[:, -1] -= np.where(dead, births, 0.0).sum(axis=1)
+    live = np.where(dead, 0.0, births)
+    before = film.sum(axis=2), other.copy()
+    for _ in range(TURNS):
+        got = np.concatenate([other.sum(axis=1), film.sum(axis=(1, 2))[:, None]], axis=1)
+        scale = np.where(got > 0.0, np.maximum(wanted, 0.0) / np.where(got > 0.0, got, 1.0), 1.0)
+        other *= scale[:, None, :-1]
+        film *= scale[:, -1, None, None]
+        rows = film.sum(axis=2) + other.sum(axis=2)
+        scale_rows = np.where(rows > 0.0, live / np.where(rows > 0.0, rows, 1.0), 1.0)
+        other *= scale_rows[:, :, None]
+        film *= scale_rows[:, :, None]
+        if np.abs(scale_rows - 1.0).max() < ROUNDING:
+            break
+    moved = max(np.abs(film.sum(axis=2) - before[0]).max(), np.abs(other - before[1]).max())
+    row, slice_ = np.nonzero(dead)
+    film[row, slice_, slice_] = births[dead]
+    matrix[cut], ends[cut] = film / width[:, None], other / width[:, None]
+    share = float(moved / np.abs(births).max())
+    return max(low, share)
+
+
+def _columns(ledger: Ledger, at: Index) -> Real:
+    """Return the ledger's shares in the order of ``ENDS``, the film's last, (wavelength, end)."""
+    shares = [ledger.shares[name][at] for name in ENDS]
+    return np.array([*shares, ledger.shares["reabsorbed"][at] + ledger.shares["guided_reabsorbed"][at]]).T
 
 
 def _mended(matrix: Real, own: Real, power: Real) -> float:
@@ -247,7 +303,7 @@ def _mended(matrix: Real, own: Real, power: Real) -> float:
     slices = np.arange(own.shape[1])
     diagonal = matrix[:, slices, slices] + own
     low = diagonal < 0.0
-    worst = float((np.where(low, -diagonal, 0.0) / power.T).max())
+    worst = float((np.where(low, -diagonal, 0.0) / np.abs(power.T)).max())
     if low.any():
         upper = np.pad(matrix[:, slices[:-1], slices[1:]], ((0, 0), (0, 1)))
         lower = np.pad(matrix[:, slices[1:], slices[:-1]], ((0, 0), (1, 0)))

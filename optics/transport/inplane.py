@@ -18,9 +18,10 @@ from optics.fate.wave import Settings
 from optics.roughness import graded
 from optics.spectrum import weights
 from optics.stack import Stack
-from optics.transport import compact, flights, rings
+from optics.transport import compact, continuum, flights, rings
 from optics.transport.flights import Taken
 from optics.transport.guided import Guided, guided_modes, modes_table
+from optics.waves.modes import Modes
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -48,8 +49,17 @@ CONVENTIONS = (
     "in the plane: the sample is endless; light held in plates and taken back later stands apart (share_held)",
     "in the plane: rays give the shape of what the open zone takes, with births spread evenly; the ledger its amount",
     "in the plane: bound light decays mode by mode, exp(-2 Im(q) r); what no mode carries follows bound rays",
+    "in the plane: where the film has no bound rays (a neighbour is denser), what no mode carries is spread at each q "
+    "by the exponential of the field's own mean square distance (slope of the field in q, Parseval's theorem)",
+    "in the plane: what the ledger has below zero in one zone (near field of neighbours) comes off the other's share",
 )
 
+
+ROUNDING = 1e-13
+"""Shares below which nothing is missing."""
+
+WORTH_SAYING = 1e-5
+"""Share of the births from which light in no mode and no ray is told of."""
 
 UNEVEN = "in the plane: an uneven film's kernel has the shape of its mean thickness and the amounts of the whole spot"
 
@@ -112,6 +122,7 @@ class Parts:
     mode_shares: Real  # share of the births that the film takes from each mode, (mode,)
     guided_shares: Real  # share of the births in each mode, whoever takes it, (mode,)
     continuum: Real  # share of the births in the bound zone that no mode carries, (wavelength,)
+    unguided: Taken  # the part of ``guided`` that neither modes nor rays carry
 
 
 def inplane(stack: Stack, *, model: str | None = None, settings: Settings | None = None) -> InPlane:
@@ -157,13 +168,22 @@ def taken_in_plane(stack: Stack, drawing: Drawing, ledger: Ledger, *, model: str
         _put(bound_rays, chosen, flights.flights(scene, at, bound=True))
         _put(held, chosen, flights.held(scene, at, model=model))
     held = Taken(held.within / ledger.rate_factor, held.total / ledger.rate_factor)
-    rays = open_rays.scaled(ledger.taken[0, film])
+    free, bound = _zones(ledger.taken[0, film], ledger.taken[2, film])
+    rays = open_rays.scaled(free)
+    none = flights.nothing(len(radius), count)
     if model == "ray":
-        rays = rays.plus(bound_rays.scaled(ledger.taken[2, film]))
-        return Parts(
-            radius, rays, flights.nothing(len(radius), count), held, None, np.zeros(0), np.zeros(0), np.zeros(count)
-        )
+        rays = rays.plus(bound_rays.scaled(bound))
+        return Parts(radius, rays, none, held, None, np.zeros(0), np.zeros(0), np.zeros(count), none)
     return _with_modes(stack, drawing, ledger, rays, bound_rays, held)
+
+
+def _zones(free: Real, bound: Real) -> tuple[Real, Real]:
+    """Return what the film takes in the open and the bound zone; what one has below zero comes off the other.
+
+    Near field that leaves by a neighbour may bring one zone below zero; only where the sum is below zero is some left.
+    """
+    left = np.maximum(np.maximum(free, 0.0) + np.minimum(bound, 0.0), 0.0)
+    return left, free + bound - left
 
 
 def _put(whole: Taken, chosen: Index, part: Taken) -> None:
@@ -180,27 +200,53 @@ def _with_modes(stack: Stack, drawing: Drawing, ledger: Ledger, rays: Taken, bou
     share = modes.power / ledger.rate_factor[modes.wavelength]
     # lines that overlap may leave a mode less than nothing; no ring of a kernel holds that
     film_share = np.maximum(share, 0.0) * modes.taken[drawing.film]
-    bound = ledger.taken[2, drawing.film]
+    whole = ledger.taken[0, drawing.film] + ledger.taken[2, drawing.film]
+    bound = _zones(ledger.taken[0, drawing.film], ledger.taken[2, drawing.film])[1]
     found = modes.summed(film_share, count)
     # modes that overlap hold a little more than there is: they are cut to it
-    fit = np.where(found > bound, bound / np.where(found > 0.0, found, 1.0), 1.0)
+    fit = np.where(found > bound, np.maximum(bound, 0.0) / np.where(found > 0.0, found, 1.0), 1.0)
     film_share = film_share * fit[modes.wavelength]
     within = np.zeros((len(radius), count))
     rate = 4.0 * np.pi * modes.index.imag / drawing.wavelength_nm[modes.wavelength]
     reach = film_share * rings.within_of_exponential(rate, radius[:, None])
     for i, row in enumerate(reach):
         within[i] = modes.summed(row, count)
-    rest = bound_rays.scaled(np.maximum(bound - found, 0.0))
-    total = modes.summed(film_share, count)
-    # a bound zone without rays of its own (guided by neighbours alone) has modes alone: they take the rest too
-    lack = np.where(total > 0.0, np.maximum(bound - total - rest.total, 0.0) / np.where(total > 0.0, total, 1.0), 0.0)
-    grown = 1.0 + lack
-    taken = Taken(within * grown + rest.within, total * grown + rest.total)
+    carried = Taken(within, modes.summed(film_share, count))
+    carried = carried.plus(bound_rays.scaled(np.maximum(bound - found, 0.0)))
+    rest = _unguided(drawing, modes, whole - rays.total - carried.total)
+    taken = carried.plus(rest)
     zone = ledger.taken[2].sum(axis=0) + ledger.shares["guided_unfinished"]
     walls = [medium for medium, plate in enumerate(drawing.plate) if plate and medium != drawing.film]
-    carried = modes.summed(share * (1.0 - modes.taken[walls].sum(axis=0)), count)
-    film_share = film_share * grown[modes.wavelength]
-    return Parts(radius, rays, taken, held, guided, film_share, share, zone - carried)
+    in_modes = modes.summed(share * (1.0 - modes.taken[walls].sum(axis=0)), count)
+    return Parts(radius, rays, taken, held, guided, film_share, share, zone - in_modes, rest)
+
+
+def _unguided(drawing: Drawing, modes: Modes, amount: Real) -> Taken:
+    """Return ``amount``, what the film takes of light in no mode and no ray, (wavelength,), with its distances."""
+    radius = rings.edges_nm()
+    count = len(amount)
+    shape = flights.nothing(len(radius), count)
+    lacking = np.abs(amount) > ROUNDING
+    for chosen, scene in scenes(drawing):
+        some = np.flatnonzero(lacking[chosen])
+        if not len(some):
+            continue
+        place = np.full(count, -1, dtype=np.intp)
+        place[chosen[some]] = np.arange(len(some))
+        mine = modes.take(np.flatnonzero(place[modes.wavelength] >= 0))
+        part, mine = scene.at(some), replace(mine, wavelength=place[mine.wavelength])
+        at = radius[:, None] * (2.0 * np.pi / drawing.wavelength_nm[chosen[some]])
+        found = continuum.continuum(part, at, mine)
+        plain = continuum.along_the_plane(part, at)
+        _put(
+            shape,
+            chosen[some],
+            Taken(
+                np.where(found.total > 0.0, found.within, plain.within),
+                np.where(found.total > 0.0, found.total, plain.total),
+            ),
+        )
+    return shape.scaled(np.where(lacking, amount, 0.0))
 
 
 def _tables(stack: Stack, drawing: Drawing, ledger: Ledger, parts: Parts, births_nm: Real, model: str) -> InPlane:
@@ -226,8 +272,27 @@ def _tables(stack: Stack, drawing: Drawing, ledger: Ledger, parts: Parts, births
         compact=table,
         exponentials=_terms(terms),
         averages=_averages(parts, kernel, weight) | compact.averages(drawing, parts, table, spectrum, weight),
-        warnings=(RAY_WARNING,) if model == "ray" else (),
+        warnings=(RAY_WARNING,) if model == "ray" else _unguided_said(parts, weight),
     )
+
+
+def _unguided_said(parts: Parts, weight: Real) -> tuple[str, ...]:
+    """Say how much light neither modes nor rays carry, how far it was spread, and where a share is below zero."""
+    said = []
+    within, total = parts.unguided.within @ weight, float(parts.unguided.total @ weight)
+    if total > WORTH_SAYING:
+        half = rings.quantile(within, parts.radius_nm * 1e-3, 0.5)
+        said.append(
+            f"in the plane: {total:.4f} of the births are taken by the film as light that neither modes nor rays "
+            f"carry: spread by the slope of its field, half of it within {half:.3g} um, and counts as guided"
+        )
+    below = float(np.minimum(parts.rays.total + parts.guided.total, 0.0) @ weight)
+    if below < -WORTH_SAYING:
+        said.append(
+            f"in the plane: at some wavelengths neighbours' near field leaves the film less than nothing ({below:.2g} "
+            "of the births); rings below zero are that"
+        )
+    return tuple(said)
 
 
 def _kernel(drawing: Drawing, parts: Parts, weight: Real) -> pd.DataFrame:

@@ -91,7 +91,9 @@ def mismatch(pile: Guide, q: Complex, roots: tuple[Complex, Complex]) -> tuple[C
             other_slope * cosine + other * cosine_slope - field_slope * back - field * back_slope,
         )
         field, other = field * cosine + other * weight * sine, other * cosine - field * back
-        keep = 1.0 / (np.abs(field) + np.abs(other))
+        # a thick metal hides what lies above it: at a root of that alone nothing is left to the last digit
+        size = np.abs(field) + np.abs(other)
+        keep = 1.0 / np.where(size > 0.0, size, 1.0)
         field, other, field_slope, other_slope = field * keep, other * keep, field_slope * keep, other_slope * keep
     wanted = 1j * bottom / pile.weight[-1]
     wanted_slope = -0.5j / (bottom * pile.weight[-1])

@@ -28,6 +28,13 @@ STACKS = {
 }
 
 
+DENSE = {
+    "a rare film on a denser one": [(1.25 + 0.1j, 250), (3.4 + 0.1j, 18), (1.9, 160)],
+    "a dark film on a denser one": [(2.9 + 0.6j, 77), (3.55, 14)],
+}
+"""Stacks with near field between slices, or so much of it that a slice at the face radiates less than nothing."""
+
+
 def of_even_births(found, matrix):
     """Return what even births have taken back and the other ends, per wavelength."""
     births = np.diff(found.edges_nm)[:, None] * matrix.rate_by_wavelength
@@ -53,6 +60,32 @@ def test_even_births_reproduce_the_ledger_and_rows_add_to_one(media):
         # what was summed here agrees with the ledger before it was scaled to it; leaky lines by a metal are sharp
         metal = np.real(media[-1][0]) < 1.0
         assert matrix.scaled_by < (1e-2 if metal else 1e-4 if model == "wave" else 1e-6)
+
+
+@pytest.mark.parametrize("media", DENSE.values(), ids=DENSE.keys())
+@pytest.mark.parametrize("upright", [1 / 3, 1.0])
+def test_mended_slices_still_reproduce_the_ledger_and_are_told_of(media, upright):
+    found = indepth(stack_of(media, horizontal_share=1 - upright), slices=40)
+    drawing = drawn(found.wavelength_nm, [(1.0, 0), *media, (1.5, 0)], in_plane=1 - upright)
+    assert found.wave.mended > 0.01
+    assert any("mended" in line for line in found.warnings)
+    said = ledger(drawing)
+    film, ends = of_even_births(found, found.wave)
+    assert film == pytest.approx(said.shares["reabsorbed"] + said.shares["guided_reabsorbed"], abs=LEDGER)
+    assert ends[:, 2] == pytest.approx(said.shares["free_below"], abs=LEDGER)
+    assert ends[:, 3] == pytest.approx(said.shares["free_above"], abs=LEDGER)
+    rows = found.wave.by_wavelength.sum(axis=2) + found.wave.ends_by_wavelength.sum(axis=2)
+    assert rows == pytest.approx(1.0, abs=ROWS)
+    assert found.wave.by_wavelength.min() >= 0.0
+
+
+def test_a_ledger_below_zero_is_said_to_fit_no_matrix():
+    # ten nm of a rare dark film by denser neighbours: its near field leaves by them more than it radiates
+    media = [(1.4532 + 0.515j, 10.5), (3.4, 350)]
+    stack = stack_of(media, wavelengths_nm=[700.0])
+    said = ledger(drawn(700, [(1.0, 0), *media, (1.5, 0)]))
+    assert min(said.shares["reabsorbed"] + said.shares["guided_reabsorbed"]) < -0.01
+    assert any("below zero" in line for line in indepth(stack, slices=10).warnings)
 
 
 @pytest.mark.parametrize("model", ["wave", "ray"])

@@ -1,5 +1,7 @@
 """The kernel in the plane: totals, limits that have closed forms, and a Monte Carlo of rays."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from piles import drawn, ledger
@@ -7,9 +9,12 @@ from piles import scene_of as only_scene
 from scipy.integrate import quad
 from scipy.special import expn, k0
 
-from optics import Emission, Gaussian, Layer, Light, Outer, Stack, find_material
-from optics.transport import flights, rings
+from optics import Emission, Gaussian, Layer, Light, Outer, Stack, find_material, solve
+from optics.transport import continuum, flights, rings
 from optics.transport.inplane import inplane
+from optics.transport.nodes import Nodes, bound_nodes
+from optics.waves.curves import Points
+from optics.waves.modes import bound_modes
 
 LEDGER = 1e-6  # what the ledger itself is known to
 SIGMAS = 4.0  # of a seeded Monte Carlo; one in sixteen thousand draws would fail
@@ -39,8 +44,22 @@ def stack_of(media, *, above=1.0, below=1.5, wavelengths_nm=(760.0, 770.0, 780.0
         [(2.5 + 0.3j, 500), (0.2 + 4j, 80)],
         [(2.5, 500)],
         [(2.5 + 1e-3j, 60_000)],
+        [(1.2 + 0.02j, 300), (1.8, 100)],
+        [(1.2 + 0.02j, 300), (1.8 + 0.001j, 400)],
+        [(1.33 + 0.0003j, 40), (3.2 + 0.01j, 200), (1.52, 1.1e6)],
     ],
-    ids=["film", "on a plate", "by a denser neighbour", "below cut-off", "on a metal", "clear", "thick"],
+    ids=[
+        "film",
+        "on a plate",
+        "by a denser neighbour",
+        "below cut-off",
+        "on a metal",
+        "clear",
+        "thick",
+        "no ray and no mode",
+        "no ray, modes of a neighbour",
+        "no ray, sharp modes",
+    ],
 )
 @pytest.mark.parametrize("model", ["wave", "ray"])
 def test_rings_add_up_to_what_the_ledger_says_the_film_takes(media, model):
@@ -216,3 +235,81 @@ def test_the_diffusivity_is_that_of_flights_that_end_at_the_absorption_rate():
     length = table["diffusion_length_um"]
     assert table["diffusivity_cm2_per_s"].to_numpy() == pytest.approx((length**2 * rate * 1e4).to_numpy())
     assert table["diffusion_miss"].between(0.05, 0.3).all()  # one exponential against K0: far apart, and said so
+
+
+def contact_over_a_rare_film(thickness_nm=300.0):
+    """Return a film of index 1.2 under a contact of 1.8 on glass: no bound rays, and no mode at all."""
+    stack = stack_of([(1.8, 100.0), (1.2 + 0.02j, thickness_nm)])
+    contact, film = stack.layers
+    return replace(stack, layers=(replace(contact, emits=False), replace(film, emits=True)))
+
+
+def test_bound_light_that_neither_rays_nor_modes_carry_is_all_there_near_its_birth_and_told_of():
+    stack = contact_over_a_rare_film()
+    found, said = inplane(stack), solve(stack).averages
+    assert found.modes.empty
+    whole = said["reabsorbed"] + said["guided_reabsorbed"]
+    assert said["guided_reabsorbed"] > 0.01
+    assert found.averages["taken_back"] == pytest.approx(whole, abs=LEDGER)
+    assert found.averages["taken_back_guided"] > 0.01
+    guided = found.kernel["share_guided"].cumsum()
+    # it fades within the film over 1/(2 k0 sqrt(q^2 - n^2)), 46 to 68 nm, and comes from there: not from 3 um, 1/alpha
+    half_um = rings.quantile(guided.to_numpy(), found.kernel["radius_to_um"].to_numpy(), 0.5)
+    assert 0.03 < half_um < 0.2
+    (line,) = found.warnings
+    assert f"{found.averages['taken_back_guided']:.4f} of the births" in line
+    assert f"half of it within {half_um:.3g} um" in line
+
+
+def test_a_film_that_has_rays_and_modes_is_warned_of_nothing():
+    assert inplane(stack_of([(2.5 + 0.02j, 500)])).warnings == ()
+
+
+def one_row(q):
+    """Return nodes of the bound zone at given q, for one wavelength of an index."""
+    q = np.asarray(q, float)[None]
+    return lambda index: Nodes(
+        np.zeros(1, dtype=np.intp), Points(q, np.ones_like(q), index - q), np.ones_like(q), (0, 1), bound=True
+    )
+
+
+def test_without_interfaces_the_reach_of_a_fading_field_is_that_of_its_closed_form():
+    index, thickness, wavelength = 1.2 + 0.05j, 200.0, 760.0
+    scene = only_scene(drawn(wavelength, [(index, 0), (index, thickness), (index, 0)], in_plane=1.0))
+    q = np.array([1.4, 1.7, 2.5])
+    field = continuum.field_at(scene, one_row(q)(scene.film_index[0]))
+    phase = 2 * np.pi * thickness / wavelength
+    nodes, weights = np.polynomial.legendre.leggauss(continuum.DEPTHS)
+    depth, weight = 0.5 * phase * (1 + nodes), 0.5 * weights
+    gap = np.abs(np.subtract.outer(depth, depth))[..., None]
+    # s: G = exp(i kz g)/kz, dG/dq = -(q/kz)(i g - 1/kz) G; real half-spaces here see k of the film by 1e-3 alone
+    kz = np.sqrt(index**2 - q * q + 0j)
+    size = np.exp(1j * kz * gap) / kz
+    slope = -(q / kz) * (1j * gap - 1 / kz) * size
+    means = [np.einsum("i,j,ijq->q", weight, weight, np.abs(part) ** 2) for part in (size, slope)]
+    assert field.rate[0, 0] == pytest.approx(np.sqrt(2 * means[0] / means[1]), rel=2e-2)
+
+
+def test_the_mean_square_distance_over_a_guided_line_is_that_of_the_modes_exponential():
+    scene = only_scene(drawn(770, [(1.0, 0), (2.5 + 0.002j, 60), (1.5, 0)]))
+    modes = bound_modes(scene)
+    assert len(modes) == 1
+    nodes = [each for each in bound_nodes(scene) if each.polarisations == (0,)]
+    weight, square = 0.0, 0.0
+    for each in nodes:
+        field = continuum.field_at(scene, each)
+        near = np.abs(each.points.q - modes.index[0].real) < 0.05
+        taken = field.taken[0] * each.weight * near
+        weight, square = weight + taken.sum(), square + (taken * 2.0 / field.rate[0] ** 2).sum()
+    assert weight == pytest.approx((modes.power * modes.taken[scene.film])[0], rel=0.02)  # 0.05 cuts the line's wings
+    assert square / weight == pytest.approx(2.0 / (2.0 * modes.index[0].imag) ** 2, rel=0.03)
+
+
+def test_modes_are_left_out_of_the_continuum():
+    scene = only_scene(drawn(770, [(1.0, 0), (2.5 + 0.002j, 60), (1.5, 0)]))
+    radius = rings.edges_nm()[:, None] * 2 * np.pi / 770
+    modes = bound_modes(scene)
+    none = modes.take(np.zeros(0, dtype=np.intp))
+    with_line, without = (continuum.continuum(scene, radius, some).total[0] for some in (none, modes))
+    assert with_line > 0.3
+    assert without < 0.05 * with_line
