@@ -278,7 +278,7 @@ def _tail(floor: Floor | None) -> Finding:
     falls = f"falls by a factor e in {floor.decay_meV:.0f} meV" if np.isfinite(floor.decay_meV) else "does not fall"
     if absorption_per_cm(floor.k, floor.onset_nm) < WEAK_PER_CM:
         said = (
-            f"beyond {floor.onset_nm:.0f} nm k stops falling like a tail (k = {floor.k:.2g}; it {falls} from there on): "
+            f"beyond {floor.onset_nm:.0f} nm k stops falling like a tail (k = {floor.k:.2g}; it {falls} from there): "
             "too weak for the fit of a thin film: another absorber, measured through a thick sample"
         )
         return Finding("tail", said, at_nm=(floor.onset_nm,))

@@ -240,10 +240,10 @@ def _real_mismatch(pile: Guide, q: Real) -> Real:
     """Return the dispersion function of a lossless pile, real but for the scaling phase of its layers."""
     at = q.astype(complex)
     value, _ = mismatch(pile, at, outer_roots(pile, at))
-    scale = np.zeros_like(value)
-    for eps, phase in zip(pile.eps[1:-1], pile.phase[1:-1], strict=True):
-        scale = scale + 1j * np.sqrt(q * q - eps + 0j) * phase
-    out: Real = (value * np.exp(-1j * scale.real)).real
+    turned = np.zeros_like(q)
+    for eps, phase in zip(pile.eps[1:-1].real, pile.phase[1:-1], strict=True):
+        turned = turned + np.sqrt(np.maximum(eps - q * q, 0.0)) * phase
+    out: Real = (value * np.exp(-1j * turned)).real
     return out
 
 
