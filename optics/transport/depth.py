@@ -25,6 +25,13 @@ from optics.waves.source import uniform
 SLICES = 50
 MOST_SLICES = 400
 ROUNDING = 1e-12
+MISSED = 3e-5
+"""Share by which ends may miss the ledger's before they are computed again, finer."""
+
+ROUNDS = 3
+
+LAND = {"wave": depthwave.land, "ray": depthray.land}
+
 WORTH_SAYING = 0.01
 """Share of a slice's light from which mending is told of."""
 
@@ -194,8 +201,9 @@ def checked_edges(edges: Real, stack: Stack, *, place: str = "mesh") -> Real:
 def _matrix(
     drawing: Drawing, edges_nm: Real, ledger: Ledger, share: Real, settings: Settings, model: str
 ) -> DepthMatrix:
-    landing = _landed(drawing, edges_nm, settings, model)
     width = np.diff(edges_nm) / edges_nm[-1]
+    landing = _landed(drawing, edges_nm, settings, model)
+    _done_again(landing, drawing, edges_nm, settings, ledger, model)
     power, ends, scaled = _scaled(landing, width, ledger)
     clear = drawing.index[drawing.film].imag == 0.0
     matrix = landing.matrix
@@ -224,8 +232,35 @@ def _landed(drawing: Drawing, edges_nm: Real, settings: Settings, model: str) ->
     whole = Landed.empty(len(edges_nm) - 1, len(drawing.wavelength_nm))
     for chosen, scene in scenes(drawing):
         edges = edges_nm * (2.0 * np.pi / drawing.wavelength_nm[chosen])[:, None]
-        whole.put(chosen, depthwave.land(scene, edges, settings) if model == "wave" else depthray.land(scene, edges))
+        whole.put(chosen, LAND[model](scene, edges, settings))
     return whole
+
+
+def _done_again(
+    landing: Landed, drawing: Drawing, edges_nm: Real, settings: Settings, ledger: Ledger, model: str
+) -> None:
+    """Land light again, on more nodes, at wavelengths where the ends miss the ledger's: a line slipped through."""
+    width = np.diff(edges_nm) / edges_nm[-1]
+    for _ in range(ROUNDS):
+        miss = _missed(landing, width, ledger)
+        if miss.max() < MISSED:
+            break
+        settings = settings.strict
+        for chosen, scene in scenes(drawing):
+            some = np.flatnonzero(miss[chosen] >= MISSED)
+            if not len(some):
+                continue
+            at = chosen[some]
+            edges = edges_nm * (2.0 * np.pi / drawing.wavelength_nm[at])[:, None]
+            landing.put(at, LAND[model](scene.at(some), edges, settings))
+
+
+def _missed(landing: Landed, width: Real, ledger: Ledger) -> Real:
+    """Return by what share even births miss the ledger's ends at most, (wavelength,)."""
+    wanted = np.array([ledger.shares[name] for name in ENDS[:-1]])
+    got = np.einsum("i,wie->ew", width, landing.ends)[:-1]
+    out: Real = np.abs(got / ledger.rate_factor - wanted).max(axis=0)
+    return out
 
 
 def _scaled(landing: Landed, width: Real, ledger: Ledger) -> tuple[Real, Real, float]:
@@ -234,10 +269,9 @@ def _scaled(landing: Landed, width: Real, ledger: Ledger) -> tuple[Real, Real, f
     power = landing.power * (rate / (width @ landing.power))
     wanted = np.array([ledger.shares[name] for name in ENDS[:-1]]) * rate
     got = np.einsum("i,wie->ew", width, landing.ends)[:-1]
-    miss = float(np.abs((got - wanted) / rate).max())
     factor = np.ones((len(ENDS), len(rate)))
     factor[:-1] = np.where(got > 0.0, wanted / np.where(got > 0.0, got, 1.0), 1.0)
-    return power, landing.ends * factor.T[:, None, :], miss
+    return power, landing.ends * factor.T[:, None, :], float(_missed(landing, width, ledger).max())
 
 
 def _unabsorbed(ends: Real, own: Real, clear: Real, ledger: Ledger) -> tuple[Real, Real]:

@@ -9,6 +9,7 @@ from optics.arrays import Index, Real
 from optics.fate import ray
 from optics.fate.exits import Response, light_lines, split_panels
 from optics.fate.trips import Network
+from optics.fate.wave import Settings
 from optics.transport.landing import AT, ENDS, SEEN_FROM, Landed, Landing, gather, leave_group
 from optics.transport.slices import MOST_FADING, gauss
 from optics.waves import curves
@@ -19,13 +20,13 @@ ORDER = 16
 BLOCK = 1200
 
 
-def land(scene: Scene, edges: Real) -> Landed:
-    """Return where light from every slice lands, in units of the power radiated; ``edges`` as for waves."""
+def land(scene: Scene, edges: Real, settings: Settings) -> Landed:
+    """Return where light from every slice lands, in units of the power radiated; arguments are those for waves."""
     seen = ray.real_film(scene)
     out = Landing.empty(edges.shape[1] - 1, scene.wavelengths)
     out.power[:] = 1.0
     edge, end = ray.edge_of_open(seen), seen.film_index.real
-    nodes, weights = gauss(ORDER)
+    nodes, weights = gauss(settings.finer * ORDER)
     step = max(1, BLOCK // len(nodes))
     for low, high, bound in ((np.zeros_like(edge), edge, False), (edge, end, True)):
         rows = curves.panels(*split_panels(low, high, light_lines(seen)))
@@ -73,30 +74,53 @@ def _add(out: Landing, waves: Waves, edges: Real, owner: Index, weight: Real, *,
     responses = [ray.response(waves, rays, k) if s.plates and not bound else None for k, s in enumerate(scene.sides)]
     ends = _ends(waves, rays, responses, bound=bound)
     loop = ray.unclosed(rays.slant, rays.crossing, rays.above, rays.below)
-    dark = bool(rays.slant.any())
-    if dark:
-        both = (0.5 * rays.launched.sum(axis=0) * weight)[:, None]
-        with np.errstate(over="ignore"):  # in the triangles that mean nothing
-            gather(out.pairs, owner, np.matmul(both * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
-    for polarisation in (0, 1):
-        back = (rays.above.back[polarisation], rays.below.back[polarisation])
-        half = 0.5 * rays.launched[polarisation] * weight
-        each = half / loop[polarisation]
-        up = each[:, None] * (flights.reach_up + (rays.crossing * back[1])[:, None] * flights.reach_down)
-        down = each[:, None] * (flights.reach_down + (rays.crossing * back[0])[:, None] * flights.reach_up)
-        for arriving, amounts in zip((up, down), ends, strict=True):
-            gather(out.ends, owner, np.matmul(arriving, np.moveaxis(amounts[: len(ENDS), polarisation], 0, 2)))
-        if dark:
-            lands = [np.swapaxes(each, 1, 2) for each in (flights.lands_down, flights.lands_up)]
-            mirrored = np.matmul(up * back[0][:, None], lands[0]) + np.matmul(down * back[1][:, None], lands[1])
-            gather(out.returned, owner, mirrored)
-            for k in (0, 1):
-                coming = up * ends[0][SEEN_FROM[k], polarisation][:, None]
-                coming = coming + down * ends[1][SEEN_FROM[k], polarisation][:, None]
-                if coming.any():
-                    onward = (rays.crossing * back[1 - k])[:, :, None]
-                    where = lands[k] + onward * lands[1 - k]
-                    gather(out.returned, owner, np.matmul(coming, where / where.sum(axis=2, keepdims=True)))
+    launched = 0.5 * rays.launched * weight
+    onward = rays.crossing * rays.above.back, rays.crossing * rays.below.back  # (polarisation, row, node)
+    each = launched / loop
+    # what arrives above is each (reach_up + onward below reach_down), what arrives below the same turned over
+    above, below = (each, each * onward[1]), (each * onward[0], each)
+    spread = [
+        sum(
+            np.moveaxis(part * amount[: len(ENDS)], 0, -1).sum(axis=0) for part, amount in zip(parts, ends, strict=True)
+        )
+        for parts in zip(above, below, strict=True)
+    ]
+    gather(out.ends, owner, np.matmul(flights.reach_up, spread[0]) + np.matmul(flights.reach_down, spread[1]))
+    if not rays.slant.any():
+        return
+    both = launched.sum(axis=0)[:, None]
+    with np.errstate(over="ignore"):  # in the triangles that mean nothing
+        gather(out.pairs, owner, np.matmul(both * flights.leaves_down, np.swapaxes(flights.below, 1, 2)))
+    starts = [
+        first.sum(axis=0)[:, None] * flights.reach_up + second.sum(axis=0)[:, None] * flights.reach_down
+        for first, second in _sets_out(rays, onward, (above, below), ends)
+    ]
+    lands = np.concatenate([flights.lands_down, flights.lands_up], axis=2)
+    gather(out.returned, owner, np.matmul(np.concatenate(starts, axis=2), np.swapaxes(lands, 1, 2)))
+
+
+def _sets_out(
+    rays: ray.Traced, onward: tuple[Real, Real], arrives: tuple[tuple[Real, Real], ...], ends: tuple[Real, Real]
+) -> list[list[Real]]:
+    """Return what sets out from the upper and the lower face: shares of ``reach_up`` and ``reach_down`` each.
+
+    Faces send back what ``arrives``, and so do plates: what the film takes of the latter's lands on the way across and
+    back.
+    """
+    halves = rays.above, rays.below
+    out = [[part * half.back for part in parts] for parts, half in zip(arrives, halves, strict=True)]
+    for k in (0, 1):
+        seen = [
+            above * ends[0][SEEN_FROM[k]] + below * ends[1][SEEN_FROM[k]] for above, below in zip(*arrives, strict=True)
+        ]
+        if not any(part.any() for part in seen):
+            continue
+        whole = -np.expm1(-rays.slant) * (1.0 + onward[1 - k])
+        for i, part in enumerate(seen):
+            entering = part / np.where(whole > 0.0, whole, 1.0)
+            out[k][i] = out[k][i] + entering
+            out[1 - k][i] = out[1 - k][i] + entering * onward[1 - k]
+    return out
 
 
 def _ends(waves: Waves, rays: ray.Traced, responses: Sequence[Response | None], *, bound: bool) -> tuple[Real, Real]:

@@ -42,7 +42,7 @@ def land(scene: Scene, edges: Real, settings: Settings) -> Landed:
     """
     out = Landing.empty(edges.shape[1] - 1, scene.wavelengths)
     out.power[:] = _power(scene, edges, settings)
-    for zone in (open_nodes(scene, settings), bound_nodes(scene)):
+    for zone in (open_nodes(scene, settings), bound_nodes(scene, settings.finer)):
         for nodes in zone:
             _add(out, scene, edges, nodes)
     return out.landed(np.diff(edges, axis=1))

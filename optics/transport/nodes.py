@@ -50,7 +50,7 @@ def open_nodes(scene: Scene, settings: Settings) -> Iterator[Nodes]:
     order = settings.finer * max(16, wave.panel_order(scene) // 2)
     yield from _on_panels(scene, rows.take(~lined), order)
     if lined.any():
-        yield from _on_cells(scene, rows.take(lined), lines.centre[lined], lines.width[lined])
+        yield from _on_cells(scene, rows.take(lined), lines.centre[lined], lines.width[lined], settings.finer)
 
 
 def _echoing(scene: Scene) -> tuple[Resonator, ...]:
@@ -80,7 +80,7 @@ def _on_panels(scene: Scene, rows: Rows, order: int) -> Iterator[Nodes]:
         yield Nodes(part.owner, points, points.slope * weights, (0, 1), bound=False)
 
 
-def _on_cells(scene: Scene, rows: Rows, centre: Real, width: Real) -> Iterator[Nodes]:
+def _on_cells(scene: Scene, rows: Rows, centre: Real, width: Real, finer: int) -> Iterator[Nodes]:
     """Yield nodes of panels cut at lines, half a cell a row: from each line or end to the middle."""
     low, high = rows.shape[0], rows.shape[1]
     marks = np.hstack([low[:, None], np.where(np.isfinite(centre), centre, high[:, None]), high[:, None]])
@@ -95,7 +95,9 @@ def _on_cells(scene: Scene, rows: Rows, centre: Real, width: Real) -> Iterator[N
         if not len(which):
             continue
         q, weight = (
-            _about_lines(anchor[which], length[which], wide[which]) if sharp else _to_ends(anchor[which], length[which])
+            _about_lines(anchor[which], length[which], wide[which], finer)
+            if sharp
+            else _to_ends(anchor[which], length[which], finer)
         )
         step = max(1, BLOCK // q.shape[1])
         for first in range(0, len(which), step):
@@ -105,8 +107,11 @@ def _on_cells(scene: Scene, rows: Rows, centre: Real, width: Real) -> Iterator[N
             yield Nodes(mine, points, weight[part], (0, 1), bound=False)
 
 
-def bound_nodes(scene: Scene) -> Iterator[Nodes]:
-    """Yield nodes of the bound zone, crowded about every guided line with a sinh map, a row a wavelength."""
+def bound_nodes(scene: Scene, finer: int = 1) -> Iterator[Nodes]:
+    """Yield nodes of the bound zone, crowded about every guided line with a sinh map, a row a wavelength.
+
+    There are ``finer`` times as many of them as ought to do.
+    """
     owner, polarisation, anchor, length, width = _half_cells(scene)
     if not len(owner):
         return
@@ -116,9 +121,9 @@ def bound_nodes(scene: Scene) -> Iterator[Nodes]:
     for sharp in (False, True):
         which = np.flatnonzero((width > 0.0) == sharp)
         q, weight = (
-            _about_lines(anchor[which], length[which], width[which])
+            _about_lines(anchor[which], length[which], width[which], finer)
             if sharp
-            else _to_ends(anchor[which], length[which])
+            else _to_ends(anchor[which], length[which], finer)
         )
         marks.append(np.repeat(2 * owner[which] + polarisation[which], q.shape[1]))
         at.append(q.ravel())
@@ -136,20 +141,21 @@ def bound_nodes(scene: Scene) -> Iterator[Nodes]:
                 yield Nodes(mine, points, load, (mode,), bound=True)
 
 
-def _about_lines(line: Real, length: Real, width: Real) -> tuple[Real, Real]:
+def _about_lines(line: Real, length: Real, width: Real, finer: int) -> tuple[Real, Real]:
     """Return nodes and weights, (cell, node), from lines of half width ``width`` on, to a signed ``length`` away."""
     top = np.arcsinh(np.abs(length) / width)
     reach = float(top.max(initial=0.0))
-    nodes, weights = gauss(PER_LINE if reach < FEW_WIDTHS else 2 * PER_LINE if reach < MANY_WIDTHS else 3 * PER_LINE)
+    times = 1 if reach < FEW_WIDTHS else 2 if reach < MANY_WIDTHS else 3
+    nodes, weights = gauss(times * finer * PER_LINE)
     turn, wide = top[:, None] * nodes, width[:, None]
     return line[:, None] + np.sign(length)[:, None] * wide * np.sinh(turn), wide * top[:, None] * np.cosh(
         turn
     ) * weights
 
 
-def _to_ends(end: Real, length: Real) -> tuple[Real, Real]:
+def _to_ends(end: Real, length: Real, finer: int) -> tuple[Real, Real]:
     """Return nodes and weights, (cell, node), from ends of the zone on, where square roots may sit."""
-    nodes, weights = gauss(PER_END)
+    nodes, weights = gauss(finer * PER_END)
     reach = length[:, None]
     return end[:, None] + reach * nodes * nodes, np.abs(reach) * 2.0 * nodes * weights
 

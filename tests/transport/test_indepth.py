@@ -9,6 +9,7 @@ from piles import scene_of as only_scene
 from scipy.special import expn
 
 from optics import Emission, InputError
+from optics.fate.wave import Settings
 from optics.transport import depthray
 from optics.transport.depth import indepth
 from optics.transport.nodes import bulk_flux, landing_end
@@ -175,7 +176,7 @@ def test_grazing_light_is_followed_until_the_bulk_has_given_all_its_flux():
 
 def test_a_very_dark_film_keeps_its_neighbours_and_overflows_nowhere():
     scene = only_scene(drawn(500, [(1.0, 0), (2.5 + 1j, 30_000, "plate"), (1.5, 0)]))
-    landing = depthray.land(scene, scene.phase[scene.film][:, None] * np.linspace(0, 1, 31))
+    landing = depthray.land(scene, scene.phase[scene.film][:, None] * np.linspace(0, 1, 31), Settings())
     assert np.isfinite(landing.matrix).all()
     tau = 4 * np.pi * 1000 / 500
     assert landing.matrix[0, 10, 11] == pytest.approx(0.25 / tau, rel=1e-3)  # E3(0) = 1/2, half of it each way
