@@ -11,7 +11,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.arrays import Complex, Index, Real
+from optics.arrays import Complex, Real
 from optics.fate import wave
 from optics.fate.wave import Settings
 from optics.transport.landing import ENDS, SEEN_FROM, Landed, Landing, end_amounts, gather
@@ -110,11 +110,25 @@ def _add(out: Landing, scene: Scene, edges: Real, nodes: Nodes) -> None:
         ends = (ends[0] * photons, ends[1] * photons)
     strength = nodes.weight / squared(1.0 - mirrors[0] * mirrors[1] * turn(film.phase, kz))
     twice = np.exp(2j * film.phase * kz.real)
+    sums: Sums = {}
     for polarisation in nodes.polarisations:
         block = _Block(over, twice, *_weights(film, nodes.points.q, kz, polarisation))
         pair = (mirrors[0][polarisation], mirrors[1][polarisation])
         mine = (ends[0][:, polarisation], ends[1][:, polarisation])
-        _add_block(out, nodes.owner, block, pair, mine, strength[polarisation])
+        _add_block(sums, block, pair, mine, strength[polarisation])
+    for name, part in sums.items():
+        gather(getattr(out, name), nodes.owner, part)
+
+
+Sums = dict[str, Real]
+"""Parts of a `Landing`, row by row: gathered once, for both polarisations."""
+
+
+def _add_to(sums: Sums, name: str, part: Real) -> None:
+    if name in sums:
+        sums[name] += part
+    else:
+        sums[name] = part
 
 
 @dataclass(frozen=True)
@@ -154,8 +168,7 @@ def _weights(film: Film, q: Real, kz: Complex, polarisation: int) -> tuple[Real,
 
 
 def _add_block(
-    out: Landing,
-    owner: Index,
+    sums: Sums,
     block: _Block,
     mirrors: tuple[Complex, Complex],
     ends: tuple[Real, Real],
@@ -170,8 +183,8 @@ def _add_block(
     load = block.send * strength
     with np.errstate(over="ignore"):  # in the triangles that mean nothing
         pairs = np.matmul(up * (load * block.take)[:, None], np.swapaxes(down, 1, 2))
-    gather(out.pairs, owner, pairs)
-    _add_ends(out, owner, (up, down), (up, down), ends, load)
+    _add_to(sums, "pairs", pairs)
+    _add_ends(sums, (up, down), (up, down), ends, load)
     if block.upright.any():
         nothing = np.zeros_like(block.plain)
         more_up = block.of(mirrors[0], None, block.upright, nothing)
@@ -179,15 +192,14 @@ def _add_block(
         taken = (strength * block.take)[:, None]
         with np.errstate(over="ignore"):
             below = np.matmul(more_up * taken, np.swapaxes(down, 1, 2))
-            gather(out.pairs, owner, below)
+            _add_to(sums, "pairs", below)
             above = np.matmul(more_down * taken, np.swapaxes(up, 1, 2))
-            gather(out.above, owner, above - np.swapaxes(below, 1, 2))
-        _add_ends(out, owner, (more_up, more_down), (up, down), ends, strength)
+            _add_to(sums, "above", above - np.swapaxes(below, 1, 2))
+        _add_ends(sums, (more_up, more_down), (up, down), ends, strength)
 
 
 def _add_ends(
-    out: Landing,
-    owner: Index,
+    sums: Sums,
     sent: tuple[Real, Real],
     lands: tuple[Real, Real],
     ends: tuple[Real, Real],
@@ -198,9 +210,11 @@ def _add_ends(
     Births send the wave that is right below upwards, and the other one down.
     """
     for k in (0, 1):
-        gather(out.ends, owner, np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)] * load, 0, 2)))
+        _add_to(sums, "ends", np.matmul(sent[1 - k], np.moveaxis(ends[k][: len(ENDS)] * load, 0, 2)))
         back = [ends[way][SEEN_FROM[k]] * load for way in (0, 1)]
         if back[0].any() or back[1].any():
-            coming = sent[1] * back[0][:, None] + sent[0] * back[1][:, None]
-            where = lands[1 - k] / lands[1 - k].sum(axis=1, keepdims=True)  # light from above is right below
-            gather(out.returned, owner, np.matmul(coming, np.swapaxes(where, 1, 2)))
+            there = lands[1 - k]  # light from above is right below
+            part = 1.0 / there.sum(axis=1)
+            coming = sent[1] * (back[0] * part)[:, None]
+            coming += sent[0] * (back[1] * part)[:, None]
+            _add_to(sums, "returned", np.matmul(coming, np.swapaxes(there, 1, 2)))

@@ -25,8 +25,8 @@ ORDER = 24
 
 HELD_ORDER = 48
 
-BLOCK_ROWS = 24
-"""Wavelength panels done at a time, so that arrays over angle and radius stay in cache."""
+BLOCK_ROWS = 64
+"""Wavelength panels done at a time, few enough for arrays over angle and radius to stay in cache."""
 
 MOST = 60.0
 """Absorption lengths after which nothing is left to take."""
