@@ -132,14 +132,12 @@ class _Fields:
         self.down = down * np.exp(2j * kz * (thickness - depth))
 
     def pair(self, sloped: bool, landing: bool) -> Complex:
-        """Return u(a) v(b) for a above b and v(a) u(b) below, F or F'/kz of birth a and landing b."""
+        """Return u(a) v(b) for a above b and v(a) u(b) below, F or F'/kz of birth a and landing b, but for signs."""
         signs = (-1.0 if sloped else 1.0), (-1.0 if landing else 1.0)
         above = (1.0 + signs[0] * self.up)[:, None] * (1.0 + signs[1] * self.down)[None]
         below = (1.0 + signs[0] * self.down)[:, None] * (1.0 + signs[1] * self.up)[None]
         gap = self.depth[None] - self.depth[:, None]
-        # F' of a wave that runs up has the other sign
-        turned = np.where(gap >= 0.0, signs[0], signs[1])
-        out: Complex = turned * np.where(gap >= 0.0, above, below) * np.exp(1j * self.kz * np.abs(gap))
+        out: Complex = np.where(gap >= 0.0, above, below) * np.exp(1j * self.kz * np.abs(gap))
         return out
 
 

@@ -14,7 +14,7 @@ from optics.transport import continuum, flights, rings
 from optics.transport.inplane import inplane
 from optics.transport.nodes import Nodes, bound_nodes
 from optics.waves.curves import Points
-from optics.waves.modes import bound_modes
+from optics.waves.modes import bound_modes, find
 
 LEDGER = 1e-6  # what the ledger itself is known to
 SIGMAS = 4.0  # of a seeded Monte Carlo; one in sixteen thousand draws would fail
@@ -182,6 +182,26 @@ def test_a_monte_carlo_of_rays_agrees_with_the_kernel_of_a_thick_film():
         assert drawn_share == pytest.approx(row["cumulative"], abs=SIGMAS * error)
 
 
+def test_trips_held_in_plates_are_taken_at_whole_numbers_of_them():
+    one = np.ones((1, 1, 1))
+    radius = np.array([0.5, 1.5, 2.5, 40.5])[:, None] * 3.0
+    within, total = flights._by_trips(0.3 * one, 0.5 * one, 0.5 * one, 3.0 * one, radius)
+    assert within[:, 0] == pytest.approx([0.0, 0.3, 0.45, 0.6], abs=1e-11)
+    assert total == pytest.approx(0.6)
+
+
+def test_the_group_index_is_the_effective_ones_less_wavelength_times_its_slope():
+    stack = stack_of([(2.5 + 0.01j, 300)], wavelengths_nm=[770.0])
+    table = inplane(stack).modes
+    step = 1e-3
+    sides = [find(only_scene(drawn(770 + d, [(1.0, 0), (2.5 + 0.01j, 300), (1.5, 0)]))) for d in (-step, step)]
+    assert sides[0].polarisation.tolist() == sides[1].polarisation.tolist()
+    slope = (sides[1].index - sides[0].index).real / (2 * step)
+    expected = table["effective_index"].to_numpy() - 770 * slope
+    assert table["group_index"].to_numpy() == pytest.approx(expected, abs=1e-6)
+    assert (table["group_index"] > table["effective_index"] + 0.1).all()
+
+
 def test_an_exponential_in_radius_becomes_k0_on_a_line():
     distance = np.array([0.01, 0.1, 1.0, 3.0])
     share = rings.on_line_of_exponential(np.array(1.0), distance)
@@ -290,19 +310,40 @@ def test_without_interfaces_the_reach_of_a_fading_field_is_that_of_its_closed_fo
     assert field.rate[0, 0] == pytest.approx(np.sqrt(2 * means[0] / means[1]), rel=2e-2)
 
 
-def test_the_mean_square_distance_over_a_guided_line_is_that_of_the_modes_exponential():
-    scene = only_scene(drawn(770, [(1.0, 0), (2.5 + 0.002j, 60), (1.5, 0)]))
+@pytest.mark.parametrize("in_plane", [1.0, 2 / 3, 0.1])
+@pytest.mark.parametrize("polarisation", [0, 1])
+def test_over_a_guided_line_amount_and_mean_square_distance_are_those_of_the_mode(polarisation, in_plane):
+    scene = only_scene(drawn(770, [(1.0, 0), (2.5 + 0.002j, 130), (1.5, 0)], in_plane=in_plane))
     modes = bound_modes(scene)
-    assert len(modes) == 1
-    nodes = [each for each in bound_nodes(scene) if each.polarisations == (0,)]
+    assert modes.polarisation.tolist() == [0, 1]
+    line = modes.index[polarisation]
     weight, square = 0.0, 0.0
-    for each in nodes:
-        field = continuum.field_at(scene, each)
-        near = np.abs(each.points.q - modes.index[0].real) < 0.05
-        taken = field.taken[0] * each.weight * near
-        weight, square = weight + taken.sum(), square + (taken * 2.0 / field.rate[0] ** 2).sum()
-    assert weight == pytest.approx((modes.power * modes.taken[scene.film])[0], rel=0.02)  # 0.05 cuts the line's wings
-    assert square / weight == pytest.approx(2.0 / (2.0 * modes.index[0].imag) ** 2, rel=0.03)
+    for each in bound_nodes(scene):
+        if polarisation in each.polarisations:
+            field = continuum.field_at(scene, each)
+            near = np.abs(each.points.q - line.real) < 0.05
+            taken = field.taken[polarisation] * each.weight * near
+            weight, square = weight + taken.sum(), square + (taken * 2.0 / field.rate[polarisation] ** 2).sum()
+    amount = (modes.power * modes.taken[scene.film])[polarisation]
+    assert weight == pytest.approx(amount, rel=0.03)  # 0.05 cuts the line's wings
+    assert square / weight == pytest.approx(2.0 / (2.0 * line.imag) ** 2, rel=0.05)
+
+
+@pytest.mark.parametrize(("slant", "up", "down"), [(0.3, 0.9, 0.4), (2.0, 1.0, 1.0), (0.01, 0.2, 0.7)])
+def test_crossings_of_a_ray_are_the_sum_over_its_births_and_faces(slant, up, down):
+    passes = flights.Passes(np.array([[slant]]), np.array([[[up]]]), np.array([[[down]]]))
+    births = (np.arange(20_000) + 0.5) / 20_000
+    for path in (0.4, 0.995, 1.0, 1.7, 2.0, 3.3, 8.2):
+        expected = 0.0
+        for first, second in ((up, down), (down, up)):
+            power, made = np.ones_like(births), np.zeros_like(births)
+            for face in range(12):
+                ahead = np.minimum(births + face, path)  # what is left to the next face, from where the ray started
+                expected += 0.5 * (power * (np.exp(-slant * made) - np.exp(-slant * ahead))).mean()
+                made = ahead
+                power = power * (first if face % 2 == 0 else second)
+        within = passes.within(np.array([[[path]]]))[0, 0, 0, 0]
+        assert within == pytest.approx(expected, abs=1e-8)  # births on a grid of 20 000
 
 
 def test_modes_are_left_out_of_the_continuum():

@@ -98,19 +98,55 @@ def te_count(*, outer, film, phase):
 
 def test_a_hundred_random_guides_have_the_modes_that_scipy_finds():
     random = np.random.default_rng(20)
-    worst = 0.0
+    worst, compared = 0.0, [0, 0]
     for number in range(100):
         outer = tuple(random.uniform(1.0, 1.7, 2))
         film = complex(random.uniform(max(outer) + 0.2, 3.0), 0.0 if number % 2 else 10 ** random.uniform(-5, -1.5))
         thickness, wavelength = random.uniform(150, 900), random.uniform(400, 1000)
         found = find(scene_of([outer[0], film, outer[1]], [thickness], wavelength_nm=wavelength))
         for index, order, magnetic in zip(found.index, found.order, found.polarisation, strict=True):
-            if index.real - max(outer) < 0.02:
+            if film.imag and index.real - max(outer) < 0.02:
                 continue  # at its cut-off the textbook form has two roots side by side
+            if index.real - max(outer) < 1e-6:
+                continue  # a root at the very end of brentq's bracket
             phase = 2 * np.pi * thickness / wavelength
             direct = solved_directly(order, outer=outer, film=film, phase=phase, magnetic=bool(magnetic))
             worst = max(worst, abs(index - direct))
+            compared[film.imag > 0.0] += 1
     assert worst < DIRECT
+    assert min(compared) > 150  # of lossless and of lossy guides
+
+
+def transcendental(index, *, outer, film, phase, magnetic):
+    """Dispersion relation of a slab between any two media, written out with its two faces, for complex indices."""
+    kappa = np.sqrt(film**2 - index**2 + 0j)
+    weights = [medium**2 if magnetic else 1.0 for medium in (*outer, film)]
+    fall = [np.sqrt(index**2 - medium**2 + 0j) / weight for medium, weight in zip(outer, weights, strict=False)]
+    own = kappa / weights[2]
+    return np.sin(kappa * phase) * (own**2 - fall[0] * fall[1]) - own * (fall[0] + fall[1]) * np.cos(kappa * phase)
+
+
+def test_guides_between_lossy_media_solve_the_dispersion_relation_too():
+    random = np.random.default_rng(21)
+    worst, compared = 0.0, 0
+    for _ in range(40):
+        # absorbing within 20 um: clearer outer media are drawn without their k
+        outer = tuple(complex(random.uniform(1.0, 1.7), random.uniform(0.01, 0.05)) for _ in range(2))
+        film = complex(random.uniform(2.0, 3.0), 10 ** random.uniform(-5, -1))
+        thickness, wavelength = random.uniform(150, 900), random.uniform(400, 1000)
+        found = find(scene_of([outer[0], film, outer[1]], [thickness], wavelength_nm=wavelength))
+        phase = 2 * np.pi * thickness / wavelength
+        for index, magnetic in zip(found.index, found.polarisation, strict=True):
+            if index.real - max(outer, key=np.real).real < 0.02:
+                continue
+
+            def mismatch(at, outer=outer, film=film, phase=phase, magnetic=bool(magnetic)):
+                return transcendental(at, outer=outer, film=film, phase=phase, magnetic=magnetic)
+
+            direct = newton(mismatch, index * (1 + 1e-6), x1=index * (1 - 1e-6j), tol=1e-15, maxiter=200)
+            worst, compared = max(worst, abs(index - direct)), compared + 1
+    assert worst < DIRECT
+    assert compared > 100
 
 
 @pytest.mark.parametrize("thickness_nm", [100, 480, 2000, 7000, 20000])
@@ -155,6 +191,19 @@ def test_who_absorbs_a_mode_follows_from_how_its_index_moves_with_each_k():
     share = np.array(moved) / np.sum(moved, axis=0)
     # to first order in k: Im q is the sum of what each layer's k brings
     assert modes.taken[1:4] == pytest.approx(share, abs=3e-4)
+
+
+def test_an_absorbing_outer_medium_has_its_share_of_a_mode_too():
+    base, thickness = [1.0, 2.3 + 0.003j, 1.5 + 0.01j], [160]
+    modes = bound_modes(scene_of(base, thickness, wavelength_nm=700))
+    moved = []
+    for medium in (1, 2):
+        near = [base[i] + (1e-7j if i == medium else 0) for i in range(3)]
+        there = find(scene_of(near, thickness, wavelength_nm=700)).index
+        moved.append((there - modes.index).imag / 1e-7 * base[medium].imag)
+    share = np.array(moved) / np.sum(moved, axis=0)
+    assert share[1].min() > 0.05
+    assert modes.taken[1:3] == pytest.approx(share, abs=2e-3)  # to first order in k
 
 
 def test_light_guided_by_a_denser_neighbour_is_found_and_shared_out():
