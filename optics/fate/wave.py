@@ -319,5 +319,4 @@ def _on_axis(
         order=panel_order(scene),
         finer=settings.finer,
         tolerance=settings.tolerance,
-        trust=CHECKED,
     )

@@ -20,20 +20,28 @@ CLOSURE_MISSED = 6e-8
 SHARE_MISSED = 6e-7
 """Beyond these a wavelength is done again, finer: a sharp line slipped between the nodes."""
 
-ROUNDS = 3
+TALL = 3000.0
+"""Phase through the group times its layers from which one round must do: each takes thrice the time of the last."""
+
+ROUNDS, MOST_IN_VAIN = 3, 2
+"""Most rounds, and after how many that do not halve the error a wavelength is left as it is."""
 
 
 def account(scene: Scene, settings: Settings) -> Account:
     """Integrate everything, and again, finer, at the wavelengths where independent paths disagree."""
     whole = _once(scene, settings)
-    for _ in range(ROUNDS):
+    in_vain = np.zeros(scene.wavelengths, dtype=np.intp)
+    for _ in range(ROUNDS if scene.depth * (1 + len(scene.group)) < TALL else 1):
         power = np.abs(whole.power)
-        missed = np.flatnonzero((np.abs(whole.miss) > CLOSURE_MISSED * power) | (_error(whole) > SHARE_MISSED * power))
+        wrong = (np.abs(whole.miss) > CLOSURE_MISSED * power) | (_error(whole) > SHARE_MISSED * power)
+        missed = np.flatnonzero(wrong & (in_vain < MOST_IN_VAIN))
         if not len(missed):
             break
         settings = settings.strict
         again = _once(scene.at(missed), settings)
-        better = _error(again) < _error(whole)[missed]
+        before = _error(whole)[missed]
+        better = _error(again) < before
+        in_vain[missed] += _error(again) > 0.5 * before
         whole = replaced(whole, missed[better], again, better)
     return whole
 

@@ -48,6 +48,9 @@ def on_panel(rows: Rows, u: Real, film: Complex, left: Real | None = None) -> Po
     q = low + width * (sine * sine)
     short = np.empty(q.shape, dtype=complex)
     np.add(film.real - high, width * (cosine * cosine), out=short.real)
+    nearer = np.abs(film.real - low) < np.abs(film.real - high)
+    if nearer.any():  # the panel starts at the film's light line: count from there
+        short.real = np.where(nearer, (film.real - low) - width * (sine * sine), short.real)
     short.imag = film.imag
     return Points(q, (np.pi * width) * (sine * cosine), short)
 

@@ -23,6 +23,9 @@ FEWEST_NODES = 12.0
 NODES_PER_PHASE = 1.0
 """Grid nodes, and more per radian of phase through a resonator; a line takes pi: none hides between two nodes."""
 
+ROUNDING = 3e-15
+"""Of a pole's place: nearer no secant leads."""
+
 NARROWEST = 1e-12
 """Half width below which the flux of a line drowns in rounding; what such a line holds shows as error."""
 
@@ -107,7 +110,6 @@ def integrate_with_lines(
     order: int,
     finer: int,
     tolerance: float,
-    trust: float = 0.5,
     panel: Panel = on_panel,
 ) -> Integral:
     """Integrate ``value`` over real-axis panels with ``lines`` taken out and added in closed form.
@@ -133,7 +135,6 @@ def integrate_with_lines(
             wavelengths=scene.wavelengths,
             order=rule,
             tolerance=tolerance,
-            trust=trust,
         )
         for which, rule in ((cut, CELL_ORDER * finer), (~cut, order * finer))
         if which.any()
@@ -288,7 +289,7 @@ def _secants(
         # a line that is good enough stands still, whatever others still need
         older, log_older = np.where(rough, newer, older), np.where(rough, log_newer, log_older)
         newer, log_newer = np.where(rough, pole, newer), np.where(rough, log, log_newer)
-        rough &= np.abs(log_newer * per_log) > POLISHED * np.abs(newer.imag)
+        rough &= np.abs(log_newer * per_log) > np.maximum(POLISHED * np.abs(newer.imag), ROUNDING)
         if not rough.any():
             break
     return newer - log_newer * per_log, per_log, log_newer

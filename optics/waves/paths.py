@@ -116,16 +116,16 @@ def integrate(
     wavelengths: int,
     order: int,
     tolerance: float,
-    trust: float = 0.5,
+    trust: float = 0.0,
     halvings: int = 30,
 ) -> Integral:
     """Integrate ``density`` along every row; where nested rules disagree, double the order, then halve the row.
 
     With e1 the difference between the half and the quarter rule and e2 that between the full and the half rule, the
     error of a row is taken as e2 min(1, e2/e1)^trust. A rule that converges by a factor with every doubling errs by e2
-    times that factor, one that gains digits in proportion to its order by e2 times its square; less ``trust`` leaves
-    room for e2 being small by chance, where no other path tells. Rows that still disagree after ``halvings`` are
-    counted with what they have.
+    times that factor, one that gains digits in proportion to its order by e2 times its square; without ``trust`` there
+    is room for e1 and e2 being small by chance, where no other path tells. Rows that still disagree after ``halvings``
+    are counted with what they have.
     """
     _keep_heap()
     values: Real | None = None
