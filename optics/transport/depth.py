@@ -33,7 +33,7 @@ ROUNDS = 3
 LAND = {"wave": depthwave.land, "ray": depthray.land}
 
 WORTH_SAYING = 0.01
-"""Share of a slice's light from which mending is told of."""
+"""Share of a slice's light, or of births, from which mending and misses are told of."""
 
 TURNS = 500
 """Most turns of scaling rows and columns to what they should add to."""
@@ -157,13 +157,18 @@ def indepth(
 
 
 def _warnings(matrix: DepthMatrix, ledger: Ledger, model: str) -> list[str]:
-    """Say where slices had to be mended, and where the ledger's film share is below zero and no matrix can hold it."""
+    """Say where slices were mended, ends were far off, or the film has a share below zero, which no matrix holds."""
     said = []
     if matrix.mended > WORTH_SAYING:
         said.append(
             f"over the depth, {model}: some slices had {matrix.mended:.2g} of their light less than nothing left for "
             "themselves (near field between thin slices or from denser neighbours); they were mended, and rows and "
             "ends scaled in turns until even births give the ledger again"
+        )
+    if matrix.scaled_by > WORTH_SAYING:
+        said.append(
+            f"over the depth, {model}: ends missed the ledger by {matrix.scaled_by:.2g} of the births before they were "
+            "scaled to it: a sharp line was not resolved, and profiles over the slices are that uncertain"
         )
     film = ledger.shares["reabsorbed"] + ledger.shares["guided_reabsorbed"]
     low = min(float(film.min()), float(ledger.rate_factor.min()))

@@ -124,7 +124,11 @@ def bound_modes(scene: Scene) -> Modes:
 
 
 def find(scene: Scene) -> Found:
-    """Return the poles: counted without absorption, followed into it."""
+    """Return the poles: counted without absorption, followed into it.
+
+    Strong absorption brings more poles across the light line from below the cut-off (two in 20 um at k = 0.3, six in
+    7 um at k = 1); they fade to 1/e within a sixth of a wavelength, are not followed, and count as light in no mode.
+    """
     start = _lossless_modes(scene)
     index, lost = _followed(scene, start, _steps(scene))
     for again in range(1, ROUNDS + 1):

@@ -11,6 +11,7 @@ from scipy.special import expn, k0
 
 from optics import Emission, Gaussian, Layer, Light, Outer, Stack, find_material, solve
 from optics.transport import continuum, flights, rings
+from optics.transport.handover import _unkerneled
 from optics.transport.inplane import inplane
 from optics.transport.nodes import Nodes, bound_nodes
 from optics.waves.curves import Points
@@ -283,6 +284,15 @@ def test_bound_light_that_neither_rays_nor_modes_carry_is_all_there_near_its_bir
 
 def test_a_film_that_has_rays_and_modes_is_warned_of_nothing():
     assert inplane(stack_of([(2.5 + 0.02j, 500)])).warnings == ()
+
+
+def test_a_kernel_that_held_less_than_the_ledger_would_be_told_of_in_a_bundle():
+    stack = stack_of([(2.5 + 0.02j, 500)])
+    found, result = inplane(stack), solve(stack)
+    assert _unkerneled(result, found) == ()
+    short = replace(found, averages=found.averages | {"taken_back": found.averages["taken_back"] - 0.02})
+    (line,) = _unkerneled(result, short)
+    assert "kernel in the plane" in line
 
 
 def one_row(q):

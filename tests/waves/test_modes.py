@@ -1,5 +1,7 @@
 """Guided modes against textbooks, against the dispersion relation solved by scipy, and against sums they must meet."""
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from piles import drawn
@@ -157,6 +159,33 @@ def test_the_number_of_modes_is_right_up_to_twenty_micrometres(thickness_nm, fil
     count = len(indices(scene))
     # absorption moves the mode next to its cut-off across it; no other is lost, and none is found twice
     assert expected - 1 <= count <= expected if np.imag(film) else count == expected
+
+
+def te_zeros(film, phase, *, outer=(1.0, 1.5)):
+    """Count the zeros of the dispersion relation right of the cut that rises from the denser medium's light line."""
+    high, far = 2.2 * film.imag + 0.05, film.real + 0.4 + 0.6 * film.imag
+    side = np.linspace(0.0, 1.0, 30_000)[:-1]
+    left = max(outer) + 1e-9
+    corners = [left - 0.02j, far - 0.02j, far + 1j * high, left + 1j * high, left - 0.02j]
+    q = np.concatenate([a + (b - a) * side for a, b in pairwise(corners)])
+    kappa = np.sqrt(film**2 - q * q)
+    fall = [np.sqrt(q - medium) * np.sqrt(q + medium) for medium in outer]
+    value = np.sinc(kappa * phase / np.pi) * phase * (kappa**2 - fall[0] * fall[1])
+    value = (value - (fall[0] + fall[1]) * np.cos(kappa * phase)) * np.exp(-np.abs((kappa * phase).imag))
+    turns = np.angle(np.roll(value, -1) / value)
+    assert np.abs(turns).max() < 0.5  # fine enough to follow the phase
+    return round(turns.sum() / (2.0 * np.pi))
+
+
+@pytest.mark.parametrize(
+    ("film", "thickness_nm"),
+    [(2.5 + 0.02j, d) for d in (100, 480, 2000, 7000, 20000)]
+    + [(2.5 + 0.3j, d) for d in (100, 480, 2000, 7000)]
+    + [(2.5 + 1j, d) for d in (100, 480)],
+)
+def test_lossy_films_have_as_many_modes_as_the_argument_principle_counts(film, thickness_nm):
+    scene = scene_of([1.0, film, 1.5], [thickness_nm], wavelength_nm=770)
+    assert len(indices(scene)) == te_zeros(film, 2 * np.pi * thickness_nm / 770)
 
 
 @pytest.mark.parametrize("film", [2.5 + 0.003j, 2.5 + 0.05j, 2.5 + 0.2j])
