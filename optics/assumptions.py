@@ -43,11 +43,12 @@ def _plate(layer: Layer) -> str:
     why = f"over {limit}, phases not given" if layer.phases is None else f'phases = "{layer.phases}"'
     rays = "; it emits, so ray optics alone" if layer.plate and layer.emits else ""
     kind = "a plate, without phases" if layer.plate else "a thin layer, with phases"
-    return f"{layer_place(layer.name)}, {_length(layer.thickness_nm)}: {kind} ({why}){rays}"
+    return f"{layer_place(layer.name)}, {length_text(layer.thickness_nm)}: {kind} ({why}){rays}"
 
 
-def _length(nm: float) -> str:
-    if nm >= 1e6:
+def length_text(nm: float) -> str:
+    """Return a thickness [nm] in the unit that people write it in."""
+    if nm >= 1e5:
         return f"{nm / 1e6:.6g} mm"
     return f"{nm / 1e3:.6g} um" if nm >= 1e4 else f"{nm:.6g} nm"
 

@@ -106,7 +106,8 @@ def import_material(
     "--figure",
     is_flag=False,
     flag_value=BESIDE,
-    help=f"Draw n, k and the absorption with what was found into this file [without one: <name>{BESIDE}].",
+    help="Draw n, k and the absorption with what was found into this .png, .svg or .pdf file; --figure with no file "
+    f"after it draws <name>{BESIDE} [default: no figure].",
 )
 @click.option("--published", is_flag=True, help="FILE_OR_NAME is shelf/book/page of the open index database.")
 @reading

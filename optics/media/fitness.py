@@ -15,6 +15,7 @@ from optics.media.material import Material
 
 __all__ = ["fitness_of"]
 
+SAME_ROW = 1e-6  # relative, within which a row is taken for the end of a range
 SAMPLES = 401  # where a formula is looked at, evenly in wavelength
 
 
@@ -71,6 +72,8 @@ def _numbers(material: Material) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     if rows is None:
         wavelength = np.linspace(low, high, SAMPLES)
     else:
-        wavelength = rows[0][(rows[0] >= low) & (rows[0] <= high)]
+        inside = rows[0][(rows[0] >= low) & (rows[0] <= high)]
+        ends = [end for end in (low, high) if not np.isclose(inside, end, rtol=SAME_ROW, atol=0.0).any()]
+        wavelength = np.sort(np.concatenate([inside, ends]))  # where n has a grid of its own an end is a row of n alone
     index = material.index(wavelength)
     return wavelength, index.real, index.imag

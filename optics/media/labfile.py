@@ -157,7 +157,7 @@ def read_lab(path: Path, *, place: str, hints: Hints, wanted: str = "nk", signed
     signed
         Whether a negative k is let through, for somebody who looks into it.
     """
-    content = read_bytes(path, place=place)
+    content = read_bytes(path, place=place, kind="table (csv, txt, dat, tsv, xlsx or xlsm)")
     if is_workbook(path):
         from optics.media.workbook import cells_of
 

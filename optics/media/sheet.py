@@ -56,27 +56,30 @@ class Sheet:
         return self.values[:, self.columns.index(name)]
 
 
-def read_bytes(path: Path, *, place: str) -> bytes:
-    """The bytes of an ordinary file of at most `LIMIT_BYTES`, or InputError saying what is wrong with it."""
-    _refuse_unfit(_attempt(path.stat, path, place), place)
-    return _attempt(path.read_bytes, path, place)
+def read_bytes(path: Path, *, place: str, kind: str = "CSV file") -> bytes:
+    """The bytes of an ordinary file of at most `LIMIT_BYTES`, or InputError saying what is wrong with it.
+
+    ``kind`` is what messages expect.
+    """
+    _refuse_unfit(_attempt(path.stat, path, place, kind), place, kind)
+    return _attempt(path.read_bytes, path, place, kind)
 
 
-def _attempt(act: Callable[[], Result], path: Path, place: str) -> Result:
+def _attempt(act: Callable[[], Result], path: Path, place: str, kind: str) -> Result:
     try:
         return act()
     except (FileNotFoundError, NotADirectoryError):
         raise InputError(f"{place}: no such file; looked for {path.absolute()}") from None
     except (OSError, ValueError) as error:  # ValueError: a path with a null character
         reason = getattr(error, "strerror", None) or str(error)
-        raise InputError(f"{place}: cannot be read ({reason}), expected a readable CSV file") from None
+        raise InputError(f"{place}: cannot be read ({reason}), expected a readable {kind}") from None
 
 
-def _refuse_unfit(state: os.stat_result, place: str) -> None:
+def _refuse_unfit(state: os.stat_result, place: str, kind: str) -> None:
     if stat.S_ISDIR(state.st_mode):
-        raise InputError(f"{place}: found a directory, expected a CSV file")
+        raise InputError(f"{place}: found a directory, expected a {kind}")
     if not stat.S_ISREG(state.st_mode):
-        raise InputError(f"{place}: found a device or pipe, expected a CSV file")
+        raise InputError(f"{place}: found a device or pipe, expected a {kind}")
     if state.st_size > LIMIT_BYTES:
         size = f"{state.st_size / 1e6:.1f} MB"
         raise InputError(f"{place}: found {size}, expected at most {LIMIT_BYTES / 1e6:.0f} MB; thin the table out")

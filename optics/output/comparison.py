@@ -8,7 +8,7 @@ from optics.output.folder import writing
 from optics.output.inputs import inputs_of, settings_of
 from optics.output.record import write_record
 from optics.output.report import ROWS, stack_line
-from optics.output.tables import write_json, write_table
+from optics.output.tables import write_summary, write_table
 
 if TYPE_CHECKING:
     from optics.study.compare import Comparison
@@ -16,6 +16,7 @@ if TYPE_CHECKING:
 SUMMARY = "summary.json"
 SHOWN_CHANGES = 6  # lines of the "why" table on the screen, for each stack
 WORTH_A_LINE = 0.05  # percentage points
+ROUNDING = 1e-9  # percentage points that rounding alone may leave
 
 
 def write_comparison(
@@ -30,7 +31,7 @@ def write_comparison(
         write_table(found.differences.reset_index(), part / "differences.csv")
         write_table(found.by_wavelength, part / "differences_by_wavelength.csv")
         write_table(found.why, part / "why.csv")
-        write_json(_summary(found), part / SUMMARY)
+        write_summary(_summary(found), part / SUMMARY)
         for figure, name in (
             (ladder_figure(found.shares, title=title), "ladder"),
             (difference_figure(found.by_wavelength, title=title), "differences"),
@@ -73,8 +74,13 @@ def report(found: "Comparison", *, folder: Path | None = None) -> str:
 
 
 def _why(found: "Comparison", name: str) -> Iterator[str]:
-    yield f"Why {name} differs (percentage points, largest first):"
     rows = found.why[found.why["stack"] == name]
+    largest = float(rows["change_points"].abs().max()) if len(rows) else 0.0
+    if largest < WORTH_A_LINE:
+        same = max(largest, float(found.differences[name].abs().max())) < ROUNDING
+        yield f"{name} differs in nothing." if same else f"{name}: nothing differs by {WORTH_A_LINE} points or more."
+        return
+    yield f"Why {name} differs (percentage points, largest first):"
     for row in rows[rows["change_points"].abs() >= WORTH_A_LINE].head(SHOWN_CHANGES).to_dict("records"):
         what = row["layer"] if row["zone"] == "out" else f"taken by {row['layer']}, {row['zone']} light"
         yield f"  {row['change_points']:+7.2f}  {what}"

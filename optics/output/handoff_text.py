@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from textwrap import wrap
 from typing import TYPE_CHECKING
 
+from optics.assumptions import length_text
 from optics.output.handoff_columns import Number, Sheet
 from optics.output.handoff_formats import Contents
 from optics.output.numbers import decimals_for
@@ -113,8 +114,7 @@ def sketch(stack: "Stack") -> Iterator[str]:
 
 def length(layer: "Layer") -> str:
     """Return a layer's thickness as people write it."""
-    nm = layer.thickness_nm
-    return f"{nm / 1e6:g} mm" if nm >= 1e5 else f"{nm:g} nm"
+    return length_text(layer.thickness_nm)
 
 
 def _outer(outer: "Outer", side: str) -> str:

@@ -21,10 +21,11 @@ ORDER = ("births", "collected", "below", "above")  # from the bottom: dashes sho
 CURVES = {
     "births": ("born inside", "#3b1a4f", 2.2),
     "below": ("out below (dashed)", "#a86f00", 1.6),
-    "above": ("out above (dotted)", "#146c69", 1.6),
+    "above": ("out above (dotted)", "#146c69", 2.0),
     "collected": ("collected", "#c2452d", 1.6),
 }
-DASHED: dict[str, Any] = {"below": (0, (6, 2)), "above": (0, (2, 1.4)), "births": "-", "collected": "-"}
+DASHED: dict[str, Any] = {"below": (0, (6, 2)), "above": (0, (0.1, 1.9)), "births": "-", "collected": "-"}
+CAPS: dict[str, Any] = {"above": "round"}  # the shortest of dashes with round ends: dots
 GREY = "#777777"
 FRAME = (0.09, 0.12, 0.70, 0.74)  # left, bottom, width, height: names have their column on the right
 GAP = 0.055  # between names beside the plot, in heights of the plot
@@ -32,7 +33,7 @@ EDGE = 1.03  # where they begin, in widths of the plot
 
 
 def spectra_figure(spectra: "DataFrame", *, measured: "Measured | None" = None, title: str = "") -> Figure:
-    """Draw the shapes of what is born and of what gets out, each with its peak at 1, and a measurement over them.
+    """Draw the shapes of what is born and of what gets out, each with its peak at 1, and a measurement fitted to one.
 
     Parameters
     ----------
@@ -43,7 +44,8 @@ def spectra_figure(spectra: "DataFrame", *, measured: "Measured | None" = None, 
     title
         The stack's title.
     """
-    figure, axes = _blank(title, "each curve scaled to a peak of 1; names with the wavelength of the peak")
+    fitted = "" if measured is None else ", measured points to fit theirs"
+    figure, axes = _blank(title, f"each curve scaled to a peak of 1{fitted}; names with the wavelength of the peak")
     x = spectra["wavelength_nm"].to_numpy(dtype=float)
     names: list[tuple[str, str]] = []
     for key, (name, colour, width) in CURVES.items():
@@ -51,7 +53,10 @@ def spectra_figure(spectra: "DataFrame", *, measured: "Measured | None" = None, 
         if column not in spectra or not spectra[column].any():
             continue
         y = spectra[column].to_numpy(dtype=float)
-        axes.plot(x, y / y.max(), color=colour, linewidth=width, linestyle=DASHED[key], zorder=ORDER.index(key) + 2)
+        axes.plot(
+            x, y / y.max(), color=colour, linewidth=width, linestyle=DASHED[key], dash_capstyle=CAPS.get(key, "butt"),
+            zorder=ORDER.index(key) + 2,
+        )  # fmt: skip
         names.append((f"{name},\n{x[np.argmax(y)]:g} nm", colour))
     if measured is not None:
         top = spectra[f"{measured.curve}_per_nm"].max()
@@ -64,7 +69,7 @@ def spectra_figure(spectra: "DataFrame", *, measured: "Measured | None" = None, 
     axes.set_xlim(x[0], x[-1])
     axes.set_ylim(bottom=0.0)
     axes.set_xlabel("wavelength (nm)")
-    axes.set_ylabel("light per nm, peak = 1")
+    axes.set_ylabel("light per nm, peak = 1" if measured is None else "light per nm, peak of each curve = 1")
     return figure
 
 

@@ -30,3 +30,11 @@ ENDS = (
     End("free_below", "#f2c14b", DARK),
     End("free_above", "#fbeec0", DARK),
 )
+
+ON_WHITE = {end.column: end.colour for end in ENDS} | {
+    "trapped": "#2b3070",
+    "elsewhere": "#857872",
+    "free_below": "#a87800",
+    "free_above": "#8d7c3c",
+}
+"""What shares are drawn in where each has a panel of its own on white: pale colours are darkened, the hue is kept."""

@@ -73,23 +73,25 @@ def _ends(sampled: "Sampled", decimals: int) -> Iterator[str]:
 
 
 def yields_text(rows: Sequence["Implied"], known: "Given", *, temperature_K: float) -> Iterator[str]:
-    """Yield the table of what a yield implies, a line a reading."""
+    """Yield the table of what a yield implies, a line a reading; no +- where none was given, for that is not zero."""
     other = "external" if known.kind == "internal" else "internal"
     spread = f" +- {known.sd:g}" if known.sd else ""
     where = " in this stack" if known.kind == "internal" else ""
     yield f"{known.kind.capitalize()} yield {known.value:g}{spread}{where}"
-    heads = (other, "+-", "bulk", "recycled", "rate x", "life x", "mV", "largest")
+    heads = (other, *(("+-",) if known.sd else ()), "bulk", "recycled", "rate x", "life x", "mV", "largest")
     yield f"{'Reading':<14}" + "".join(f"{head:>{WIDTH}}" for head in heads)
     for row in rows:
         if row.values is None:
-            yield f"{row.reading.name:<14}{'more than this reading allows':>{7 * WIDTH}}{row.largest:>{WIDTH}.4f}"
+            room = (len(heads) - 1) * WIDTH
+            yield f"{row.reading.name:<14}{'more than this reading allows':>{room}}{row.largest:>{WIDTH}.4f}"
             continue
         v = row.values
         value = v.external if other == "external" else v.internal
-        cells = [f"{value:.4f}", f"{row.sd:.4f}" + ("*" if row.cut else ""), f"{v.bulk:.4f}", f"{v.recycled:.3f}"]
+        spread_of = [f"{row.sd:.4f}" + ("*" if row.cut else "")] if known.sd else []
+        cells = [f"{value:.4f}", *spread_of, f"{v.bulk:.4f}", f"{v.recycled:.3f}"]
         cells += [f"{v.radiative_factor:.4f}", f"{v.lifetime_factor:.3f}", f"{1e3 * v.voltage_V:.1f}"]
         yield f"{row.reading.name:<14}" + "".join(f"{cell:>{WIDTH}}" for cell in (*cells, f"{row.largest:.4f}"))
-    if any(row.cut for row in rows):
+    if known.sd and any(row.cut for row in rows):
         yield "* one standard deviation reaches past what is possible; the table yields.csv has where it is cut."
     yield "bulk: internal yield of the material in the bulk; recycled: times a photon is taken back per excitation;"
     yield "rate x: radiative coefficient over the bulk's; life x: lifetime over that without recycling;"

@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from optics.assumptions import length_text
 from optics.output.numbers import decimals_for
 from optics.output.readings import readings_text
 from optics.output.result import largest_closure
@@ -12,6 +13,7 @@ if TYPE_CHECKING:
     from optics.fate.solve import Result
     from optics.stack import Layer, Stack
 
+CELL = 12  # characters of a column at least
 ROWS = (
     ("trapped", "trapped"),
     ("reabsorbed", "  reabsorbed"),
@@ -77,9 +79,11 @@ def stack_line(stack: "Stack") -> str:
 
 
 def _layer(layer: "Layer") -> str:
-    thick = layer.thickness_nm >= 1e5
-    size = f"{layer.thickness_nm / 1e6:g} mm" if thick else f"{layer.thickness_nm:g} nm"
-    return f"{layer.name} {size}" + (" (emits)" if layer.emits else "") + (" (plate)" if layer.plate else "")
+    return (
+        f"{layer.name} {length_text(layer.thickness_nm)}"
+        + (" (emits)" if layer.emits else "")
+        + (" (plate)" if layer.plate else "")
+    )
 
 
 def heading(stack: "Stack") -> Iterator[str]:
@@ -107,10 +111,11 @@ def _table(result: "Result", uncertainty: Mapping[str, float]) -> Iterator[str]:
         columns.append(("by the tail", result.moved_by_tail, "+"))
     if uncertainty:
         columns.append(("inputs +-", uncertainty, ""))
-    yield "Share of photons born" + "".join(f"{name:>12}" for name, _, _ in columns)
+    widths = [max(CELL, len(name) + 2) for name, _, _ in columns]
+    yield "Share of photons born" + "".join(f"{c[0]:>{wide}}" for c, wide in zip(columns, widths, strict=True))
     for share, name in ROWS:
         cells = [_number(values.get(share), decimals, sign) for _, values, sign in columns]
-        yield f"{name:<21}" + "".join(f"{cell:>12}" for cell in cells)
+        yield f"{name:<21}" + "".join(f"{cell:>{wide}}" for cell, wide in zip(cells, widths, strict=True))
 
 
 def _depth(result: "Result") -> Iterator[str]:

@@ -12,7 +12,7 @@ from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
 from optics.output.numbers import decimals_for
 from optics.output.readings import ENDS_CSV, READINGS_CSV, readings_table, sample_summary
 from optics.output.record import RECORD, write_record
-from optics.output.tables import write_json, write_table
+from optics.output.tables import write_summary, write_table
 
 if TYPE_CHECKING:
     from optics.fate.solve import Result
@@ -77,7 +77,7 @@ def write_result(
             write_table(table, part / name)
         if inputs is not None:
             write_table(inputs.by_input, part / INPUTS)
-        write_json(summary(result, inputs), part / SUMMARY)
+        write_summary(summary(result, inputs), part / SUMMARY)
         figures = _draw(result, part)
         taken = (*tables, *figures, INPUTS, SUMMARY, RECORD, STACK_FILE)
         copy_inputs(result.stack, part, stack_file=source, taken=taken)

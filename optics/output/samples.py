@@ -1,7 +1,7 @@
 """The files of a sample, and what the screen shows of it: ends of held and guided light, readings, yields."""
 
 from collections.abc import Sequence
-from dataclasses import asdict
+from dataclasses import asdict, fields
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -11,7 +11,7 @@ from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
 from optics.output.readings import ENDS_CSV, READINGS_CSV, readings_table, readings_text, sample_summary, yields_text
 from optics.output.record import RECORD, write_record
 from optics.output.report import heading, listed
-from optics.output.tables import write_json, write_table
+from optics.output.tables import write_summary, write_table
 from optics.sample import sample_notes
 
 if TYPE_CHECKING:
@@ -51,16 +51,20 @@ def _defaults(sampled: "Sampled") -> tuple[str, ...]:
     return () if sampled.stack.sample is not None else sample_notes(sampled.sample, asked=False)
 
 
-def yields_table(rows: Sequence["Implied"]) -> "DataFrame":
-    """Return what a yield implies, a row a reading."""
+def yields_table(rows: Sequence["Implied"], known: "Given") -> "DataFrame":
+    """Return what a yield implies, a row a reading; no deviation is written where none was given."""
     import pandas as pd
 
+    from optics.fate.yields import Yields
+
+    blank = dict.fromkeys(field.name for field in fields(Yields))
     out = []
     for row in rows:
         values = {} if row.values is None else asdict(row.values)
         low, high = row.between
-        tail = {"sd": row.sd, "low": low, "high": high, "largest_external": row.largest}
-        out.append({"reading": row.reading.name} | values | tail)
+        told = {"sd": row.sd, "low": low, "high": high} if known.sd and values else {}
+        tail = dict.fromkeys(("sd", "low", "high")) | told | {"largest_external": row.largest}
+        out.append({"reading": row.reading.name} | blank | values | tail)
     return pd.DataFrame(out)
 
 
@@ -82,11 +86,11 @@ def write_yields(
     with writing(folder, replace=replace) as part:
         write_table(readings_table(sampled), part / READINGS_CSV)
         write_table(sampled.ends, part / ENDS_CSV)
-        if rows:
-            write_table(yields_table(rows), part / YIELDS_CSV)
+        if rows and known is not None:
+            write_table(yields_table(rows, known), part / YIELDS_CSV)
         asked = {"reading": reading, "temperature_K": temperature_K}
-        given = {} if known is None else {known.kind: known.value, "sd": known.sd}
-        write_json({"title": sampled.stack.title} | sample_summary(sampled) | {"given": given}, part / SUMMARY)
+        given = {} if known is None else {known.kind: known.value, "sd": known.sd or None}
+        write_summary({"title": sampled.stack.title} | sample_summary(sampled) | {"given": given}, part / SUMMARY)
         figure = yields_figure(sampled, rows, known, reading=reading)
         for name in FIGURES:
             save(figure, part / name)

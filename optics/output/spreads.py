@@ -8,7 +8,8 @@ from optics.output.folder import writing
 from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
 from optics.output.record import RECORD, write_record
 from optics.output.report import ROWS, stack_line
-from optics.output.tables import write_json, write_table
+from optics.output.tables import write_summary, write_table
+from optics.study.inputs import named
 
 if TYPE_CHECKING:
     from optics.stack import Stack
@@ -28,7 +29,7 @@ def write_spread(
         tables = (found.bands.reset_index(), found.by_wavelength, found.indices, found.alternatives)
         for table, name in zip(tables, TABLES, strict=True):
             write_table(table, part / name)
-        write_json(summary(found, stack), part / SUMMARY)
+        write_summary(summary(found, stack), part / SUMMARY)
         _draw(found, stack, part)
         copy_inputs(stack, part, stack_file=stack_file, taken=(*TABLES, *FIGURES, SUMMARY, RECORD, STACK_FILE))
         settings = settings_of(stack) | {"samples": found.samples, "seed": seed}
@@ -112,7 +113,7 @@ def _indices(found: "Spread") -> Iterator[str]:
     for share in ("trapped", "substrate", "cover", "free_below", "free_above"):
         rows = found.indices[found.indices["share"] == share].sort_values("total", ascending=False)
         parts = [
-            f"{row['input']} {row['total']:.2f} ({row['first_order']:.2f})"
+            f"{named(row['input'])} {row['total']:.2f} ({row['first_order']:.2f})"
             for row in rows.to_dict("records")
             if row["total"] >= WORTH_A_LINE
         ]
@@ -126,7 +127,9 @@ def _draw(found: "Spread", stack: "Stack", folder: Path) -> None:
 
     figures = {
         "bands": bands_figure(found.by_wavelength, title=stack.title),
-        "sensitivity": sensitivity_figure(found.indices, found.bands, title=stack.title),
+        "sensitivity": sensitivity_figure(
+            found.indices.assign(input=found.indices["input"].map(named)), found.bands, title=stack.title
+        ),
     }
     for name, figure in figures.items():
         for suffix in ("svg", "png"):

@@ -9,13 +9,14 @@ from optics.output.folder import writing
 from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
 from optics.output.record import RECORD, write_record
 from optics.output.report import stack_line
-from optics.output.tables import write_json
+from optics.output.tables import write_summary
 from optics.study.answer import SPECTRAL, Answer
 from optics.study.best import Best
 from optics.study.keypath import value_at
 from optics.study.sweep import Plan, row, spectral_rows
 
 if TYPE_CHECKING:
+    from matplotlib.figure import Figure
     from pandas import DataFrame
 
 SWEEP = "sweep.csv"
@@ -46,7 +47,7 @@ def write_sweep(
         rows = list(_written(plan, answers, part))
         table = pd.DataFrame(rows)
         found = [best(plan.points, table, goal) for goal in goals]
-        write_json(summary(plan, table, found), part / SUMMARY)
+        write_summary(summary(plan, table, found), part / SUMMARY)
         _draw(plan, table, found, part)
         taken = (SWEEP, SPECTRA, SUMMARY, *FIGURES, RECORD, STACK_FILE)
         copy_inputs(plan.stack, part, stack_file=stack_file, taken=taken)
@@ -167,11 +168,15 @@ def _cells(values: dict[str, Any]) -> list[Any]:
 
 def _draw(plan: Plan, table: "DataFrame", found: Sequence[Best], folder: Path) -> None:
     from optics.output.figures import save
-    from optics.output.studyfigures import sweep_figure
+    from optics.output.sweepfigures import cases_figure, sweep_figure
 
-    keys = ["point"] if plan.points.cases else list(plan.points.keys)
-    share = found[0].goal.column if found else None
-    figure = sweep_figure(table, keys, own=own_values(plan), title=plan.stack.title, share=share)
+    keys, own, title = list(plan.points.keys), own_values(plan), plan.stack.title
+    figure: Figure | None
+    if plan.points.cases:
+        figure = cases_figure(table, keys, own=own, title=title)
+    else:
+        share = found[0].goal.column if found else None
+        figure = sweep_figure(table, keys, own=own, title=title, share=share)
     if figure is not None:
         for name in FIGURES:
             save(figure, folder / name)

@@ -10,9 +10,10 @@ from optics.arrays import Real
 from optics.errors import InputError
 from optics.output.folder import writing
 from optics.output.inputs import STACK_FILE, copy_inputs, inputs_of, settings_of
+from optics.output.numbers import plain
 from optics.output.record import RECORD, write_record
 from optics.output.report import stack_line
-from optics.output.tables import write_json, write_table
+from optics.output.tables import write_summary, write_table
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -104,7 +105,7 @@ def _write(
     with writing(folder, replace=replace) as part:
         for name, table in tables.items():
             write_table(table, part / name)
-        write_json(summary, part / SUMMARY)
+        write_summary(summary, part / SUMMARY)
         if drawn is not None:
             for name in figures:
                 save(drawn, part / name)
@@ -148,17 +149,18 @@ def inplane_report(found: "InPlane", folder: Path) -> str:
         f"  by rays {said['taken_back_rays']:.4f}, guided {said['taken_back_guided']:.4f}",
         f"  and of light held in plates, were the sample endless, {said['taken_back_held']:.4f} more",
         f"  bound light in no mode: {said['bound_in_no_mode']:+.4f}",
-        f"Distance: mean {said['mean_um']:.3g} um, median {said['median_um']:.3g} um, 90 % within "
-        f"{said['within_90_um']:.3g} um, 99 % within {said['within_99_um']:.3g} um",
+        f"Distance: mean {plain(said['mean_um'])} um, median {plain(said['median_um'])} um, 90 % within "
+        f"{plain(said['within_90_um'])} um, 99 % within {plain(said['within_99_um'])} um",
     ]
     if "absorption_in_plane_per_cm" in said:
         lines.append(
-            f"Guided light: absorption in the plane {said['absorption_in_plane_per_cm']:.3g} /cm, group velocity "
-            f"{said['group_velocity_um_per_ps']:.3g} um/ps, absorption rate {said['absorption_rate_per_ps']:.3g} /ps"
+            f"Guided light: absorption in the plane {plain(said['absorption_in_plane_per_cm'])} /cm, "
+            f"group velocity {plain(said['group_velocity_um_per_ps'])} um/ps, "
+            f"absorption rate {plain(said['absorption_rate_per_ps'])} /ps"
         )
     if "diffusion_miss" in said:
         lines.append(
-            f"Diffusion picture: {said['diffusivity_cm2_per_s']:.3g} cm2/s; off the kernel by up to "
+            f"Diffusion picture: {plain(said['diffusivity_cm2_per_s'])} cm2/s; off the kernel by up to "
             f"{said['diffusion_miss']:.2f} of the guided share: "
             + ("take the kernel" if said["diffusion_miss"] > 0.05 else "it will do")
         )

@@ -1,15 +1,21 @@
 """Figures of transport: the kernel in the plane, the matrix over the depth."""
 
+from collections.abc import Sequence
+from itertools import product
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from matplotlib.figure import Figure
 
 if TYPE_CHECKING:
+    from matplotlib.lines import Line2D
+    from matplotlib.transforms import Bbox
+
     from optics.transport.depth import InDepth
     from optics.transport.inplane import InPlane
 
 SIZE = (7.2, 4.2)
+UPWARDS = (4, 10, 18, 28, 40, 56, 75, 100)  # how far above a peak its name may stand [points], the nearest first
 DARK, MIDDLE, LIGHT = "#1b3a4b", "#3e7cb1", "#81b29a"
 
 
@@ -21,6 +27,7 @@ def plane_figure(found: "InPlane") -> Figure:
     figure = Figure(figsize=SIZE, layout="constrained")
     axes = figure.subplots()
     top = 0.0
+    peaks: list[tuple[str, float, float, str]] = []
     for column, name, colour in (
         ("share_guided", "guided", DARK),
         ("share_rays", "rays", MIDDLE),
@@ -30,15 +37,7 @@ def plane_figure(found: "InPlane") -> Figure:
         if density.max() > 1e-6:
             axes.plot(middle, density, color=colour, lw=1.8)
             at = int(np.argmax(density))
-            late = middle[at] > middle[-1] / 300.0  # its name would run into the right axis
-            axes.annotate(
-                name,
-                (middle[at], density[at]),
-                (-6 if late else 6, 4),
-                ha="right" if late else "left",
-                textcoords="offset points",
-                color=colour,
-            )
+            peaks.append((name, float(middle[at]), float(density[at]), colour))
             top = max(top, float(density[at]))
     axes.set_xscale("log")
     axes.set_xlim(middle[0], middle[-1])
@@ -51,7 +50,28 @@ def plane_figure(found: "InPlane") -> Figure:
     right.set_ylabel("share taken back within the distance (dashed)")
     axes.set_title(found.stack.title or "Transport in the plane", fontsize=10)
     _plain(axes)
+    _name_peaks(axes, peaks, [*axes.lines, *right.lines])
     return figure
+
+
+def _name_peaks(axes: Any, peaks: "list[tuple[str, float, float, str]]", lines: "Sequence[Line2D]") -> None:
+    """Write the names of curves beside their peaks, where no line runs through them."""
+    axes.figure.draw_without_rendering()  # the layout is known from here on
+    paths = [line.get_transform().transform_path(line.get_path()) for line in lines]
+    frame = axes.get_window_extent()
+    placed: list[Bbox] = []
+    for name, x, y, colour in peaks:
+        text = axes.annotate(name, (x, y), (0, 0), textcoords="offset points", color=colour)
+        boxes = {}
+        for side, up in product(("left", "right", "center"), UPWARDS):
+            text.set(ha=side, position=({"left": 6, "right": -6, "center": 0}[side], up))
+            box = text.get_window_extent()
+            inside = frame.x0 <= box.x0 and box.x1 <= frame.x1 and frame.y0 <= box.y0 and box.y1 <= frame.y1
+            crossed = sum(path.intersects_bbox(box.padded(2), filled=False) for path in paths)
+            boxes[side, up] = (not inside, crossed + sum(box.overlaps(other) for other in placed), up)
+        side, up = min(boxes, key=lambda each: boxes[each])
+        text.set(ha=side, position=({"left": 6, "right": -6, "center": 0}[side], up))
+        placed.append(text.get_window_extent())
 
 
 def depth_figure(found: "InDepth") -> Figure:

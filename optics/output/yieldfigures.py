@@ -11,6 +11,7 @@ from matplotlib.figure import Figure
 from optics.fate.yields import external_yield
 from optics.output.figures import DPI, NOTE_CHARACTERS, SIZE_INCH, SMALL, TITLE_CHARACTERS
 from optics.output.labels import spread
+from optics.output.numbers import MOST_DECIMALS
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -21,7 +22,7 @@ if TYPE_CHECKING:
 # Apart in grey print and for every kind of colour vision: lightness falls from the first to the last.
 COLOURS = {"faces": "#c98a1b", "wide": "#2a8f86", "sphere": "#3b1a4f", "lost edges": "#8f4a3a"}
 SCRAMBLED = "#777777"
-FRAME = (0.09, 0.12, 0.68, 0.74)
+FRAME = (0.09, 0.12, 0.66, 0.74)
 GAP = 0.055  # between names beside the plot, in heights of the plot
 LEAST_TOP = 0.1
 
@@ -38,7 +39,7 @@ def yields_figure(sampled: "Sampled", rows: Sequence["Implied"], known: "Given |
     known
         That yield.
     reading
-        The reading in which it is followed with a strip; the others by thin lines.
+        The reading in which it is followed by thick lines and, with a deviation, a strip; the others by thin lines.
     """
     figure = Figure(figsize=SIZE_INCH, dpi=DPI)
     FigureCanvasAgg(figure)
@@ -91,15 +92,22 @@ def _write_names(axes: "Axes", names: Sequence[tuple[str, float, str]]) -> None:
     order = sorted(names, key=lambda each: each[1])
     low, high = axes.get_ylim()
     heights = spread([value for _, value, _ in order], gap=GAP * (high - low), low=low, high=high)
+    decimals = _decimals([value for _, value, _ in names])
     for (name, value, colour), height in zip(order, heights, strict=True):
         axes.plot([1.0, 1.02], [value, height], color=colour, linewidth=0.6, clip_on=False)
-        axes.text(1.03, height, f"{name}, up to {value:.3g}", color=colour, fontsize=SMALL, va="center")
+        axes.text(1.03, height, f"{name}, up to {value:.{decimals}f}", color=colour, fontsize=SMALL, va="center")
+
+
+def _decimals(values: Sequence[float]) -> int:
+    """Return how many decimals all values are shown with: three, or four where the smallest is below a tenth."""
+    return 3 if min(values) >= 0.1 else MOST_DECIMALS
 
 
 def _write_title(figure: Figure, sampled: "Sampled", known: "Given | None", reading: str) -> None:
     title = sampled.stack.title or "External yield against internal"
     sample = f"edge at {sampled.sample.to_edge_mm:g} mm; {sampled.model} optics"
     spread_text = f" +- {known.sd:g}" if known is not None and known.sd else ""
-    asked = "" if known is None else f"; {known.kind} {known.value:g}{spread_text} followed, strip: {reading}"
+    mark = "strip" if spread_text else "thick"
+    asked = "" if known is None else f"; {known.kind} {known.value:g}{spread_text} followed, {mark}: {reading}"
     figure.text(FRAME[0], 0.965, shorten(title, TITLE_CHARACTERS), fontsize=11, va="center", parse_math=False)
     figure.text(FRAME[0], 0.93, fill(sample + asked, NOTE_CHARACTERS), fontsize=SMALL, va="top", color="#444444")

@@ -38,19 +38,26 @@ class Input:
     stated: bool
 
     def __str__(self) -> str:
-        name = self.key.removesuffix("_offset").removesuffix("_scale") if self.relative or self.offset else self.key
-        size = f"{100 * self.sd:.3g} %" if self.relative else f"{self.sd:.3g}"
-        return f"{name} {size}" + ("" if self.stated else " (default)")
+        size = f"{100 * self.sd:.3g} %" if self.relative else f"{float(f'{self.sd:.3g}'):.12g}"
+        return f"{self.name} {size}" + ("" if self.stated else " (default)")
+
+    @property
+    def name(self) -> str:
+        """What it is called where people read: ``film.n`` for the key path ``film.n_offset``."""
+        return named(self.key)
 
     @property
     def relative(self) -> bool:
         """Whether it is a scale."""
         return self.key.endswith(".k_scale")
 
-    @property
-    def offset(self) -> bool:
-        """Whether it is an offset."""
-        return self.key.endswith(".n_offset")
+
+def named(key: str) -> str:
+    """Return what an input of this key path is called where people read."""
+    for ending in (".n_offset", ".k_scale"):
+        if key.endswith(ending):
+            return key.removesuffix(ending) + ending[:2]
+    return key
 
 
 @dataclass(frozen=True)
@@ -80,7 +87,7 @@ class InputUncertainty:
         rests = ", ".join(str(each) for each in self.inputs)
         return (
             f"inputs +-: {rests}; each moved alone by one standard deviation",
-            f"Most sensitive to {key}: it moves {share.replace('_', ' ')} the most",
+            f"Most sensitive to {named(key)}: it moves {share.replace('_', ' ')} the most",
         )
 
 

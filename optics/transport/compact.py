@@ -38,6 +38,8 @@ COLUMNS = (
 """Columns of the table of compact forms; guided quantities are not a number where no mode is."""
 
 DISTANCES_UM = (0.0, 1.0, 3.0, 10.0, 30.0, 100.0)
+NOTHING_LEFT = 1e-30
+"""Of the births' peak: less guided light is written as 0."""
 
 UM_PER_PS = c * 1e-6
 """Speed of light [um/ps]."""
@@ -108,7 +110,10 @@ def _miss(parts: Parts, length_um: Real) -> Real:
 
 
 def guided_spectrum(drawing: Drawing, parts: Parts, births_nm: Real) -> pd.DataFrame:
-    """Return the spectrum of guided light after some distances: per nm and per photon born."""
+    """Return the spectrum of guided light after some distances: per nm and per photon born.
+
+    What is below ``NOTHING_LEFT`` of the births' peak is 0: no photon is left.
+    """
     import pandas as pd
 
     columns = {"wavelength_nm": drawing.wavelength_nm, "births_per_nm": births_nm}
@@ -118,7 +123,8 @@ def guided_spectrum(drawing: Drawing, parts: Parts, births_nm: Real) -> pd.DataF
             modes = parts.modes.modes
             rate_um = 4e3 * np.pi * modes.index.imag / drawing.wavelength_nm[modes.wavelength]
             left = modes.summed(parts.guided_shares * np.exp(-rate_um * distance), len(births_nm))
-        columns[f"guided_per_nm_{distance:g}_um"] = births_nm * left
+        guided = births_nm * left
+        columns[f"guided_per_nm_{distance:g}_um"] = np.where(guided < NOTHING_LEFT * births_nm.max(), 0.0, guided)
     return pd.DataFrame(columns)
 
 

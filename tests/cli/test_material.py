@@ -1,6 +1,7 @@
 """A laboratory's tables on the command line: imported, checked, repaired, and carried with results."""
 
 import json
+import re
 import tomllib
 from pathlib import Path
 
@@ -129,6 +130,25 @@ def test_a_check_says_what_is_unfit_and_ends_with_one(tmp_path):
     again = run("material", "check", "ch3nh3pbi3", "--figure")
     assert again.exit_code == 2
     assert "exists and is kept" in again.stderr
+
+
+def test_a_check_covers_the_range_that_the_list_gives():
+    listed = next(line for line in run("material", "list").output.splitlines() if line.startswith("pedot-pss "))
+    checked = run("material", "check", "pedot-pss", "--to-nm", 1096)
+    assert checked.exit_code == 0
+    first, last = re.search(r"([\d.]+) to ([\d.]+) nm", listed).groups()
+    assert f"rows from {first} to {last} nm" in checked.output
+
+
+def test_a_directory_in_place_of_a_table_is_told_what_is_read(tmp_path):
+    done = run("material", "import", tmp_path, "--name", "xx")
+    assert done.exit_code == 2
+    assert "found a directory, expected a table (csv, txt, dat, tsv, xlsx or xlsm)" in done.output
+
+
+def test_the_help_of_a_check_says_that_no_figure_is_drawn_unless_asked_for():
+    said = " ".join(run("material", "check", "--help").output.split())
+    assert "--figure with no file after it draws <name>-check.png [default: no figure]" in said
 
 
 @pytest.mark.parametrize("kind", ["png", "svg", "pdf"])

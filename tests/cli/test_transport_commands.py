@@ -31,6 +31,9 @@ def test_inplane_writes_its_tables_and_shows_the_distances(project):
     assert kernel["cumulative"].iloc[-1] == pytest.approx(summary["averages"]["taken_back"], abs=1e-5)
     modes = pd.read_csv(folder / "modes.csv")
     assert modes["share"].groupby(modes["wavelength_nm"]).sum().between(0.5, 0.9).all()
+    guided = pd.read_csv(folder / "guided_spectrum.csv").drop(columns=["wavelength_nm"])
+    assert guided[guided > 0.0].min(axis=None) > 1e-30 * guided["births_per_nm"].max()
+    assert guided["guided_per_nm_0_um"].min() > 0.0
     names = {path.name for path in folder.iterdir()}
     assert {"compact.csv", "exponentials.csv", "guided_spectrum.csv", "inplane.svg", "inplane.png"} <= names
     assert run("inplane", project / "stack.toml").exit_code == 0  # an untouched folder is written anew

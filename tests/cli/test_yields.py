@@ -55,8 +55,19 @@ def test_an_internal_yield_gives_three_external_ones(stack_file, tmp_path):
     assert (readings[["p_r", "p_e", "p_a"]].sum(axis=1) - 1.0).abs().max() < 1e-9
     ends = pd.read_csv(folder / "ends.csv")
     assert ends.groupby("sample")["share"].sum().to_list() == pytest.approx([1.0, 1.0, 1.0], abs=1e-9)
-    assert json.loads((folder / "summary.json").read_text())["given"] == {"internal": 0.9, "sd": 0.0}
+    assert json.loads((folder / "summary.json").read_text())["given"] == {"internal": 0.9, "sd": None}
     assert (folder / "yields.svg").stat().st_size > 5000
+
+
+def test_an_uncertainty_that_was_not_given_is_no_zero(stack_file, tmp_path):
+    done = run(stack_file, "--external", "0.3")
+    head = next(line for line in done.output.splitlines() if line.startswith("Reading ") and "largest" in line)
+    assert "+-" not in head
+    table = pd.read_csv(tmp_path / "stack-yields/yields.csv")
+    assert table[["sd", "low", "high"]].isna().all(axis=None)
+    done = run(stack_file, "--external", "0.3", "--external-sd", "0.02")
+    assert " +- " in next(line for line in done.output.splitlines() if line.startswith("Reading ") and "mV" in line)
+    assert (pd.read_csv(tmp_path / "stack-yields/yields.csv")["sd"] > 0.0).all()
 
 
 def test_external_and_back_is_the_same_yield(stack_file, tmp_path):

@@ -151,7 +151,7 @@ def test_a_missing_file_is_named_with_the_place_looked_at(tmp_path: Path) -> Non
 def test_a_directory_is_refused(tmp_path: Path) -> None:
     (tmp_path / "film.csv").mkdir()
     path = tmp_path / "film.csv"
-    assert _faults(path) == (f"{path}: found a directory, expected a CSV file",)
+    assert _faults(path) == (f"{path}: found a directory, expected a table (csv, txt, dat, tsv, xlsx or xlsm)",)
 
 
 @pytest.mark.skipif(not hasattr(os, "mkfifo"), reason="no named pipes here")

@@ -11,7 +11,7 @@ from optics.errors import InputError
 from optics.output.folder import writing
 from optics.output.record import touched
 from optics.output.result import result_folder, write_result
-from optics.output.tables import write_json, write_table
+from optics.output.tables import write_json, write_summary, write_table
 from optics.stackfile import read_stack, write_stack
 
 FILES = {
@@ -73,6 +73,13 @@ def test_a_table_has_one_header_row_and_no_index(tmp_path):
 def test_numbers_that_json_does_not_know_become_null(tmp_path):
     write_json({"a": float("nan"), "b": (1.5, float("inf"))}, tmp_path / "a.json")
     assert json.loads((tmp_path / "a.json").read_text()) == {"a": None, "b": [1.5, None]}
+
+
+def test_numbers_of_summaries_have_twelve_digits(tmp_path):
+    write_summary({"rate_factor": 1.0 - 1e-16, "parts": [{"a": 1 / 3}], "count": 3, "fit": True}, tmp_path / "a.json")
+    found = json.loads((tmp_path / "a.json").read_text())
+    assert found == {"rate_factor": 1.0, "parts": [{"a": 0.333333333333}], "count": 3, "fit": True}
+    assert found["fit"] is True
 
 
 def test_the_summary_holds_averages_and_what_to_think_of_them(solved):

@@ -39,6 +39,22 @@ def test_every_curve_is_named_once_beside_the_plot(over):
     assert all(box.x0 >= 0 and box.x1 <= figure.bbox.width for box in found.values())
 
 
+def test_a_measurement_is_said_to_be_fitted_and_not_to_peak_at_one():
+    for over in (None, measured()):
+        figure = spectra_figure(made_result().spectra, measured=over)
+        axis = figure.axes[0].get_ylabel()
+        assert axis == ("light per nm, peak = 1" if over is None else "light per nm, peak of each curve = 1")
+        assert any("measured points to fit theirs" in text for text in words(figure)) is (over is not None)
+
+
+def test_what_is_called_dotted_is_dotted():
+    figure = spectra_figure(made_result().spectra)
+    dotted = [line for line in figure.axes[0].lines if line.get_dash_capstyle() == "round"]
+    assert len(dotted) == 1
+    _, (on, off) = dotted[0]._unscaled_dash_pattern
+    assert on < 0.2 < off
+
+
 def test_curves_without_light_are_left_out_and_the_others_peak_at_one():
     figure = spectra_figure(made_result({"reabsorbed": 0.9, "free_above": 0.1}).spectra)
     names = " ".join(words(figure))

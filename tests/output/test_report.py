@@ -1,13 +1,14 @@
 """The screen: no more digits than the error supports, trapped first, plain text."""
 
+import re
 from dataclasses import replace
 from pathlib import Path
 
 import pytest
-from made_results import made_result
+from made_results import made_result, made_stack
 
-from optics.output.numbers import decimals_for
-from optics.output.report import report
+from optics.output.numbers import decimals_for, plain
+from optics.output.report import report, stack_line
 
 
 @pytest.mark.parametrize(
@@ -59,6 +60,30 @@ def test_a_known_input_uncertainty_has_a_column_of_its_own():
     lines = report(made_result(), uncertainty={"trapped": 0.0123}).splitlines()
     row = next(line for line in lines if line.startswith("trapped"))
     assert row.split()[-1] == "0.0123"
+
+
+def test_no_heads_of_columns_run_together():
+    moved = {"trapped": -0.01, "free_above": 0.01}
+    lines = report(replace(made_result(), moved_by_tail=moved), uncertainty={"trapped": 0.1}).splitlines()
+    head = next(line for line in lines if line.startswith("Share of photons born"))
+    assert re.split(r" {2,}", head)[1:] == ["wave", "ray", "wave - ray", "by the tail", "inputs +-"]
+    row = next(line for line in lines if line.startswith("trapped"))
+    assert head.index("by the tail") + len("by the tail") == row.index("-0.0100") + len("-0.0100")
+
+
+@pytest.mark.parametrize(
+    ("nm", "said"), [(320.0, "320 nm"), (25e3, "25 um"), (60e3, "60 um"), (0.7e6, "0.7 mm"), (1.1e6, "1.1 mm")]
+)
+def test_thicknesses_have_the_unit_that_people_write(nm, said):
+    stack = made_stack()
+    layers = tuple(replace(layer, thickness_nm=nm, phases=None) for layer in stack.layers)
+    assert f"glass {said}" in stack_line(replace(stack, layers=layers))
+
+
+def test_numbers_are_plain_where_people_write_no_exponent():
+    assert [plain(each) for each in (1250.0, 6530.4, 591000.0, 77.1234, 0.02, 3.2e7)] == [
+        "1250", "6530", "591000", "77.1", "0.02", "3.2e+07",
+    ]  # fmt: skip
 
 
 def test_the_screen_is_plain_ascii():

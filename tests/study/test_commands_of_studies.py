@@ -110,6 +110,15 @@ def test_a_comparison_writes_its_tables_and_says_why(stack_file):
     assert run("compare", stack_file, other).exit_code == 2
 
 
+def test_a_comparison_of_stacks_that_do_not_differ_says_so_in_a_line(stack_file):
+    other = stack_file.with_name("same.toml")
+    other.write_text(STACK_FILE, encoding="utf-8")
+    done = run("compare", stack_file, other)
+    assert done.exit_code == 0, done.stderr
+    assert "same differs in nothing." in done.stdout.splitlines()
+    assert "Why" not in done.stdout
+
+
 def test_a_comparison_with_itself_is_refused(stack_file):
     done = run("compare", stack_file, stack_file)
     assert done.exit_code == 2
@@ -129,6 +138,8 @@ def test_a_tolerance_study_writes_bands_indices_and_other_tables(stack_file):
     assert len(pd.read_csv(folder / "alternatives.csv")) == 2
     for word in ("other tables", "Convergence", "film.n 0.02 (default)", "film.thickness_nm 10 (normal)"):
         assert word in done.stdout
+    assert "film.n_offset" not in done.stdout  # one name for what is given and what is found
+    assert "film.k_scale" not in done.stdout
 
 
 def test_samples_that_are_no_power_of_two_are_one_line(stack_file):
