@@ -1,4 +1,4 @@
-"""Modes beside metals, where nodes cannot be counted: all of them are found, and their power is that of the bound zone."""
+"""Modes beside metals, where nodes cannot be counted: all are found, and their power is that of the bound zone."""
 
 import numpy as np
 import pytest
