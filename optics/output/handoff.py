@@ -31,7 +31,7 @@ REFERENCES = "references.bib"
 LIMIT_BYTES = 5_000_000
 """Largest bundle unless all is asked for; the user's own tables come on top."""
 
-ROOM_BYTES = 4_500_000
+ROOM_BYTES = LIMIT_BYTES * 9 // 10
 """What tables may take of it, counted as text."""
 
 LARGE = ("mode_absorbers", "kernel_spectra", "depth_spectra")
