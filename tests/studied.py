@@ -47,3 +47,24 @@ name = "glass"
 material = "float-glass"
 thickness_mm = 1.1
 """
+
+FILM_ON_GLASS = """\
+title = "Glass and film"
+above = "air"
+below = "air"
+[light]
+wavelengths_nm = [760]
+[light.spectrum]
+kind = "gaussian"
+peak_nm = 760
+fwhm_nm = 40
+[[layer]]
+name = "film"
+material = { n = 2.5, k = 0.02 }
+thickness_nm = 500
+emits = true
+[[layer]]
+name = "glass"
+material = { n = 1.52 }
+thickness_mm = 1.1
+"""

@@ -5,35 +5,15 @@ import json
 import pandas as pd
 import pytest
 from click.testing import CliRunner
+from studied import FILM_ON_GLASS
 
 from optics.cli import main
-
-STACK = """\
-title = "Glass and film"
-above = "air"
-below = "air"
-[light]
-wavelengths_nm = [760]
-[light.spectrum]
-kind = "gaussian"
-peak_nm = 760
-fwhm_nm = 40
-[[layer]]
-name = "film"
-material = { n = 2.5, k = 0.02 }
-thickness_nm = 500
-emits = true
-[[layer]]
-name = "glass"
-material = { n = 1.52 }
-thickness_mm = 1.1
-"""
 
 
 @pytest.fixture
 def stack_file(tmp_path):
     path = tmp_path / "stack.toml"
-    path.write_text(STACK, encoding="utf-8")
+    path.write_text(FILM_ON_GLASS, encoding="utf-8")
     return path
 
 
@@ -81,7 +61,7 @@ def test_external_and_back_is_the_same_yield(stack_file, tmp_path):
 
 
 def test_a_sample_in_the_file_is_used_by_yields_and_by_solve(stack_file):
-    stack_file.write_text(STACK + '[sample]\nto_edge_mm = 5\nedges = "lost"\n', encoding="utf-8")
+    stack_file.write_text(FILM_ON_GLASS + '[sample]\nto_edge_mm = 5\nedges = "lost"\n', encoding="utf-8")
     done = run(stack_file)
     assert "edge at 5 mm" in done.output
     assert "lost edges" in done.output

@@ -2,31 +2,12 @@
 
 import pytest
 from matplotlib.text import Text
+from studied import FILM_ON_GLASS
 
 from optics.fate.implied import Given, implied
 from optics.fate.sampled import sampled
 from optics.output.yieldfigures import yields_figure
 from optics.stackfile import parse_stack
-
-STACK = """\
-above = "air"
-below = "air"
-[light]
-wavelengths_nm = [760]
-[light.spectrum]
-kind = "gaussian"
-peak_nm = 760
-fwhm_nm = 40
-[[layer]]
-name = "film"
-material = { n = 2.5, k = 0.02 }
-thickness_nm = 500
-emits = true
-[[layer]]
-name = "glass"
-material = { n = 1.52 }
-thickness_mm = 1.1
-"""
 
 
 def words(figure):
@@ -35,7 +16,7 @@ def words(figure):
 
 @pytest.fixture(scope="module")
 def found(tmp_path_factory):
-    return sampled(parse_stack(STACK, folder=tmp_path_factory.mktemp("yields")))
+    return sampled(parse_stack(FILM_ON_GLASS, folder=tmp_path_factory.mktemp("yields")))
 
 
 @pytest.mark.parametrize("sd", [0.0, 0.02])
