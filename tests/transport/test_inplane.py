@@ -258,6 +258,18 @@ def test_the_diffusivity_is_that_of_flights_that_end_at_the_absorption_rate():
     assert table["diffusion_miss"].between(0.05, 0.3).all()  # one exponential against K0: far apart, and said so
 
 
+def test_the_mean_group_velocity_is_that_of_the_mean_time_on_the_way():
+    found = inplane(stack_of([(2.5 + 0.02j, 500)]))
+    modes, table = found.modes, found.compact
+    delay = (modes["share"] * modes["group_index"]).groupby(modes["wavelength_nm"]).sum()
+    share = modes.groupby("wavelength_nm")["share"].sum()
+    velocity = 299.792458 / (delay / share).to_numpy()  # um/ps; the film is all that absorbs
+    assert table["group_velocity_um_per_ps"].to_numpy() == pytest.approx(velocity, rel=1e-9)
+    guided = solve(found.stack).table["birth_weight"].to_numpy() * table["guided_share"].to_numpy()
+    mean = guided.sum() / (guided / velocity).sum()
+    assert found.averages["group_velocity_um_per_ps"] == pytest.approx(mean, rel=1e-9)
+
+
 def contact_over_a_rare_film(thickness_nm=300.0):
     """Return a film of index 1.2 under a contact of 1.8 on glass: no bound rays, and no mode at all."""
     stack = stack_of([(1.8, 100.0), (1.2 + 0.02j, thickness_nm)])
