@@ -39,7 +39,7 @@ class Account:
     unfinished
         Where nothing in the group absorbs, so that guided light never ends.
     miss
-        Open-zone power plus bound-zone power, each on its own path, less ``power``.
+        Open-zone power plus bound-zone power, on other paths than that of ``power``, less ``power``.
     path_error, open_error, guided_error
         Estimated numerical errors, in units of the bulk power: of the power and the first flights (what ``miss``
         shows included), of the open zone, and of what is taken in the bound zone.

@@ -16,7 +16,7 @@ THINNEST_ZONE = 1e-12
 LINE_MISSED = 1e-7
 """Power that the real axis lacks against other paths, from which a line has been missed there."""
 
-CLOSURE_MISSED = 6e-8
+CLOSURE_MISSED = 4e-8
 SHARE_MISSED = 6e-7
 """Beyond these a wavelength is done again, finer: a sharp line slipped between the nodes."""
 

@@ -73,6 +73,19 @@ def test_shares_that_leave_are_the_mean_of_what_tmm_says_the_film_takes(seed):
         assert ends[end] == pytest.approx(taken, abs=INTEGRATED)
 
 
+@pytest.mark.parametrize("pairs", [9, 25, 400])
+def test_light_that_leaves_through_a_tall_mirror_is_what_tmm_says_the_film_takes(pairs):
+    """Thinner layers the more there are; a pile of hundreds neither overflows nor loses what passes it."""
+    thin = min(1.0, 12.0 / pairs)
+    mirror = [(2.3 + 1e-3j, 76 * thin), (1.45, 121 * thin)] * pairs
+    media = [(1.0, 0), *mirror, (2.4 + 0.02j, 180), *mirror[::-1], (1.5, 0)]
+    film = 1 + len(mirror)
+    scene = scene_of(drawn(700.0, media, film=film))
+    for end, place, seen in ((FREE_ABOVE, film, media), (FREE_BELOW, len(media) - 1 - film, media[::-1])):
+        q, _ = panel(0.0, seen[0][0], NODES)
+        np.testing.assert_allclose(end_at(scene, q, end), taken_times_weight(place, seen, 700.0, q), rtol=MATCHED)
+
+
 def plates_and_films(rng):
     """A film between thin layers and plates in air, as piles of `piles` and as lists for `tmm.inc_tmm`."""
 

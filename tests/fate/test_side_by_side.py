@@ -28,6 +28,7 @@ MIXED = [
     *(on_glass(thickness) for thickness in (90, 300, 310, 480, 2500)),
     on_glass(300, film=2.2),
     on_glass(300, contact=1.6),
+    on_glass(300, contact=1.85 + 0.03j),
     on_glass(300, in_plane=1.0),
     on_glass(310, moments=decay(2.0, from_below=False)),
     drawn(WAVELENGTH_NM, [(1.0, 0), (2.4 + 0.01j, 300), (0.05 + 4j, 0)]),

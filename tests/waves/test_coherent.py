@@ -5,7 +5,7 @@ import pytest
 from piles import meeting
 from tmm_pile import absorptances, solved
 
-from optics.waves.coherent import normal_inside, normal_on_axis, normal_outside
+from optics.waves.coherent import fold, look, normal_inside, normal_on_axis, normal_outside, outlook_at
 
 AS_TMM = 1e-10  # two programs' rounding, through a few layers
 METALS = (0.15 + 3.5j, 0.05 + 4.2j, 1.2 + 7.0j)
@@ -65,3 +65,14 @@ def test_the_normal_wave_number_of_a_half_space_has_its_cut_straight_above_its_i
     on_the_cut = normal_outside(index, np.array([[1.5 + 0.1j]])).item()
     just_right = normal_outside(index, np.array([[1.5 + 1e-9 + 0.1j]])).item()
     assert on_the_cut == pytest.approx(just_right, abs=1e-6)
+
+
+@pytest.mark.parametrize("pairs", [1, 8, 12, 500])
+def test_a_pile_is_folded_into_the_mirror_that_it_shows_when_looked_at(pairs):
+    dense, rare = (np.full((2, 1, 1), own, dtype=complex) for own in (2.3 + 0.01j, 1.4))
+    turns = [np.full((1, 1), np.exp(2j * phase)) for phase in (0.11 + 0.001j, 0.07)]
+    layers = [(dense, turns[0]), (rare, turns[1])] * pairs
+    own = np.full((2, 1, 1), 2.0 + 0.02j)
+    seen = look(layers, outlook_at(rare)).mirror(own)
+    np.testing.assert_allclose(fold(layers, rare).reflection(own), seen.reflection, rtol=1e-12)
+    assert np.all(np.abs(seen.reflection) < 1.0)
